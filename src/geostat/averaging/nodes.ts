@@ -1,0 +1,67 @@
+import { createBlupWorkspace, FieldSystem, predictField } from '../blup.js';
+import { type CovarianceFamily, correlationFunction } from '../covariance/families.js';
+import type { FieldGeometry } from '../field-data.js';
+import type { FieldFit } from '../fit-field.js';
+import { FieldLikelihood, type FieldParameters } from '../likelihood.js';
+import { parametersAt } from '../search-space.js';
+import { compressWeights } from './compress.js';
+import { posteriorGrid } from './posterior-grid.js';
+import { createProbes } from './probes.js';
+
+/** One node of the average over covariance parameters; a field's weights sum to 1. */
+export interface ParameterNode extends FieldParameters {
+  readonly weight: number;
+}
+
+/** Every node costs a factorisation and, in a grid, a further set of smooth functions. */
+export const MAX_NODES = 9;
+
+/**
+ * Nodes and weights that stand for the posterior of the covariance parameters: the dense rule of
+ * `posteriorGrid`, reduced to at most nine of its points so that the averages E û and E(v + û²), and so mean and
+ * variance of the mixture, are kept at probe places (their eight leading principal components exactly).
+ */
+export function parameterNodes(
+  geometry: FieldGeometry,
+  family: CovarianceFamily,
+  z: Float64Array,
+  errorVariance: Float64Array,
+  fit: FieldFit,
+): ParameterNode[] {
+  if (fit.space.axes.length === 0) return [{ ...fit.parameters, weight: 1 }];
+  const likelihood = new FieldLikelihood(geometry, correlationFunction(family), errorVariance);
+  const points = posteriorGrid(likelihood, z, fit, geometry.n);
+  const parameters = points.map((point) => parametersAt(fit.space, point.coordinates));
+  const { features, width } = probeFeatures(geometry, family, z, errorVariance, parameters);
+  const weights = Float64Array.from(points, (point) => point.weight);
+  return compressWeights(weights, features, width, MAX_NODES).map(({ index, weight }) => ({
+    ...parameters[index]!,
+    weight,
+  }));
+}
+
+/** û and v + û² at the probes for every parameter set: J × 2·probes, row-major. */
+function probeFeatures(
+  geometry: FieldGeometry,
+  family: CovarianceFamily,
+  z: Float64Array,
+  errorVariance: Float64Array,
+  parameters: readonly FieldParameters[],
+): { features: Float64Array; width: number } {
+  const probes = createProbes(geometry);
+  const width = 2 * probes.count;
+  const features = new Float64Array(parameters.length * width);
+  const mean = new Float64Array(probes.count);
+  const variance = new Float64Array(probes.count);
+  const workspace = createBlupWorkspace(geometry.n, geometry.p);
+  parameters.forEach((set, row) => {
+    const system = new FieldSystem(geometry, family, set, errorVariance);
+    const data = [system.solveData(z)];
+    predictField(system, probes.positionsKm, probes.trendRows, probes.count, data, [mean], variance, workspace);
+    for (let k = 0; k < probes.count; k++) {
+      features[row * width + k] = mean[k]!;
+      features[row * width + probes.count + k] = variance[k]! + set.nugget + mean[k]! ** 2;
+    }
+  });
+  return { features, width };
+}

@@ -1,0 +1,244 @@
+import {
+  choleskyInPlace,
+  crossProduct,
+  solveLowerInPlace,
+  solveLowerManyInPlace,
+  solveLowerTransposedInPlace,
+} from '../kernels/index.js';
+import { type CovarianceFamily, correlationFunction } from './covariance/families.js';
+import type { FieldGeometry } from './field-data.js';
+import type { FieldParameters } from './likelihood.js';
+import { distanceKm } from './positions.js';
+
+/** Places handled together: 64 columns of 1,000 stations (512 kB) stay in the second-level cache. */
+export const PLACES_PER_BLOCK = 64;
+
+/**
+ * One field at one set of parameters, factorised once for any number of places: the best linear unbiased
+ * predictor with the trend's own uncertainty (Goldberger 1962, J. Am. Stat. Assoc. 57:369–375).
+ *
+ * û(x) = f·β̂ + cᵀw with w = V⁻¹(z − Fβ̂); variance of the signal sill − cᵀV⁻¹c + r'(FᵀV⁻¹F)⁻¹r, r = f − FᵀV⁻¹c.
+ * c holds signal covariances only: the nugget belongs to a station's own place, not to a neighbour's.
+ */
+export class FieldSystem {
+  readonly parameters: FieldParameters;
+  readonly #geometry: FieldGeometry;
+  readonly #family: CovarianceFamily;
+  readonly #factor: Float64Array;
+  readonly #whitenedTrend: Float64Array;
+  readonly #trendFactor: Float64Array;
+
+  /** @throws MATRIX_NOT_POSITIVE_DEFINITE */
+  constructor(
+    geometry: FieldGeometry,
+    family: CovarianceFamily,
+    parameters: FieldParameters,
+    errorVariance: Float64Array,
+  ) {
+    const { n, p, distancesKm, trend } = geometry;
+    const rho = correlationFunction(family).correlation;
+    const factor = new Float64Array(n * n);
+    for (let i = 0; i < n; i++) {
+      for (let j = 0; j < i; j++) {
+        factor[i * n + j] = parameters.sill * rho(distancesKm[i * n + j]! / parameters.rangeKm);
+      }
+      factor[i * n + i] = parameters.sill + parameters.nugget + errorVariance[i]!;
+    }
+    choleskyInPlace(factor, n);
+    this.#whitenedTrend = Float64Array.from(trend);
+    solveLowerManyInPlace(factor, n, this.#whitenedTrend, p);
+    this.#trendFactor = new Float64Array(p * p);
+    crossProduct(this.#whitenedTrend, p, this.#whitenedTrend, p, n, this.#trendFactor);
+    choleskyInPlace(this.#trendFactor, p);
+    this.parameters = parameters;
+    this.#geometry = geometry;
+    this.#family = family;
+    this.#factor = factor;
+  }
+
+  /** GLS coefficients β̂ (p) and weights w = V⁻¹(z − Fβ̂) (n) of one set of values. */
+  solveData(z: Float64Array): FieldData {
+    const { n, p } = this.#geometry;
+    const weights = Float64Array.from(z);
+    solveLowerInPlace(this.#factor, n, weights);
+    const coefficients = new Float64Array(p);
+    crossProduct(this.#whitenedTrend, p, weights, 1, n, coefficients);
+    solveLowerInPlace(this.#trendFactor, p, coefficients);
+    solveLowerTransposedInPlace(this.#trendFactor, p, coefficients);
+    for (let i = 0; i < n; i++) {
+      for (let c = 0; c < p; c++) weights[i]! -= this.#whitenedTrend[i * p + c]! * coefficients[c]!;
+    }
+    solveLowerTransposedInPlace(this.#factor, n, weights);
+    return { coefficients, weights };
+  }
+
+  /** Covariance (FᵀV⁻¹F)⁻¹ of β̂, p × p row-major. */
+  coefficientCovariance(): Float64Array {
+    const { p } = this.#geometry;
+    const out = new Float64Array(p * p);
+    for (let c = 0; c < p; c++) {
+      const unit = new Float64Array(p);
+      unit[c] = 1;
+      solveLowerInPlace(this.#trendFactor, p, unit);
+      solveLowerTransposedInPlace(this.#trendFactor, p, unit);
+      for (let r = 0; r < p; r++) out[r * p + c] = unit[r]!;
+    }
+    return out;
+  }
+
+  /**
+   * Signal covariances of up to PLACES_PER_BLOCK places with the stations: n × count, row-major.
+   * @param places  positions, km (3 numbers a place from index `first`)
+   */
+  covariances(places: Float64Array, first: number, count: number, out: Float64Array): void {
+    const { n, positionsKm, metric } = this.#geometry;
+    const { sill, rangeKm } = this.parameters;
+    const rho = correlationFunction(this.#family).correlation;
+    for (let i = 0; i < n; i++) {
+      for (let j = 0; j < count; j++) {
+        out[i * count + j] =
+          sill * rho(distanceKm(positionsKm, i, places, first + j, metric) / rangeKm);
+      }
+    }
+  }
+
+  /**
+   * Replaces covariances C (n × count) by L⁻¹C and writes, for each place, R = f − FᵀV⁻¹c whitened by the trend's
+   * factor (count × p), so that the variance is a sum of squares. Both parts of the kriging variance follow.
+   */
+  reduce(c: Float64Array, count: number, trendRows: Float64Array, firstRow: number, out: Float64Array): void {
+    const { n, p } = this.#geometry;
+    solveLowerManyInPlace(this.#factor, n, c, count);
+    const w = this.#whitenedTrend;
+    const g = this.#trendFactor;
+    for (let j = 0; j < count; j++) {
+      for (let a = 0; a < p; a++) out[j * p + a] = trendRows[(firstRow + j) * p + a]!;
+    }
+    for (let i = 0; i < n; i++) {
+      for (let j = 0; j < count; j++) {
+        const value = c[i * count + j]!;
+        for (let a = 0; a < p; a++) out[j * p + a]! -= w[i * p + a]! * value;
+      }
+    }
+    for (let j = 0; j < count; j++) {
+      for (let a = 0; a < p; a++) {
+        let value = out[j * p + a]!;
+        for (let b = 0; b < a; b++) value -= g[a * p + b]! * out[j * p + b]!;
+        out[j * p + a] = value / g[a * p + a]!;
+      }
+    }
+  }
+
+  get stationCount(): number {
+    return this.#geometry.n;
+  }
+
+  get trendCount(): number {
+    return this.#geometry.p;
+  }
+
+  get geometry(): FieldGeometry {
+    return this.#geometry;
+  }
+
+  get family(): CovarianceFamily {
+    return this.#family;
+  }
+
+  /** Kriging weights λ (n) of one place: û = λᵀz (for explanations). */
+  krigingWeights(place: Float64Array, trendRow: Float64Array): Float64Array {
+    const { n, p } = this.#geometry;
+    const c = new Float64Array(n);
+    const r = new Float64Array(p);
+    this.covariances(place, 0, 1, c);
+    this.reduce(c, 1, trendRow, 0, r);
+    // λ = V⁻¹c + V⁻¹F(FᵀV⁻¹F)⁻¹r: solve the trend part back, add, then through Lᵀ.
+    solveLowerTransposedInPlace(this.#trendFactor, p, r);
+    for (let i = 0; i < n; i++) {
+      for (let a = 0; a < p; a++) c[i]! += this.#whitenedTrend[i * p + a]! * r[a]!;
+    }
+    solveLowerTransposedInPlace(this.#factor, n, c);
+    return c;
+  }
+}
+
+export interface FieldData {
+  readonly coefficients: Float64Array;
+  readonly weights: Float64Array;
+}
+
+/** Scratch of `predictField`, one per thread. */
+export interface BlupWorkspace {
+  readonly covariances: Float64Array;
+  readonly reduced: Float64Array;
+}
+
+export function createBlupWorkspace(stationCount: number, trendCount: number): BlupWorkspace {
+  return {
+    covariances: new Float64Array(stationCount * PLACES_PER_BLOCK),
+    reduced: new Float64Array(PLACES_PER_BLOCK * trendCount),
+  };
+}
+
+/**
+ * Means of several data sets and the one signal variance at each place.
+ *
+ * @param places     count × 3 positions, km
+ * @param trendRows  count × p
+ * @param data       data sets solved by `system.solveData` (the field's own, and a second one for the turn)
+ * @param means      one Float64Array(count) a data set, written
+ * @param variance   Float64Array(count) of signal variances (no nugget), written; never below 0
+ */
+export function predictField(
+  system: FieldSystem,
+  places: Float64Array,
+  trendRows: Float64Array,
+  count: number,
+  data: readonly FieldData[],
+  means: readonly Float64Array[],
+  variance: Float64Array,
+  workspace: BlupWorkspace,
+): void {
+  const n = system.stationCount;
+  const p = system.trendCount;
+  const { covariances, reduced } = workspace;
+  for (let first = 0; first < count; first += PLACES_PER_BLOCK) {
+    const block = Math.min(PLACES_PER_BLOCK, count - first);
+    system.covariances(places, first, block, covariances);
+    for (let d = 0; d < data.length; d++) {
+      writeMeans(covariances, n, p, block, trendRows, first, data[d]!, means[d]!);
+    }
+    system.reduce(covariances, block, trendRows, first, reduced);
+    for (let j = 0; j < block; j++) variance[first + j] = system.parameters.sill;
+    for (let i = 0; i < n; i++) {
+      for (let j = 0; j < block; j++) variance[first + j]! -= covariances[i * block + j]! ** 2;
+    }
+    for (let j = 0; j < block; j++) {
+      // The explained part can exceed the sill by rounding at a station without nugget.
+      let value = Math.max(0, variance[first + j]!);
+      for (let a = 0; a < p; a++) value += reduced[j * p + a]! ** 2;
+      variance[first + j] = value;
+    }
+  }
+}
+
+function writeMeans(
+  covariances: Float64Array,
+  n: number,
+  p: number,
+  block: number,
+  trendRows: Float64Array,
+  first: number,
+  { coefficients, weights }: FieldData,
+  mean: Float64Array,
+): void {
+  for (let j = 0; j < block; j++) {
+    let value = 0;
+    for (let a = 0; a < p; a++) value += trendRows[(first + j) * p + a]! * coefficients[a]!;
+    mean[first + j] = value;
+  }
+  for (let i = 0; i < n; i++) {
+    const weight = weights[i]!;
+    for (let j = 0; j < block; j++) mean[first + j]! += covariances[i * block + j]! * weight;
+  }
+}

@@ -1,0 +1,115 @@
+import { Matrix, SingularValueDecomposition, solve } from 'ml-matrix';
+import { RainprintError } from '../errors.js';
+import { distanceKm, type Metric } from './positions.js';
+
+/**
+ * What stays the same while covariance parameters and data values change: places, distances, trend.
+ * n places, p trend columns.
+ */
+export interface FieldGeometry {
+  readonly n: number;
+  readonly p: number;
+  /** n × 3, km. */
+  readonly positionsKm: Float64Array;
+  readonly metric: Metric;
+  /** n × p, row-major. */
+  readonly trend: Float64Array;
+  /** n × n, row-major, lower triangle filled, km. */
+  readonly distancesKm: Float64Array;
+  readonly smallestSpacingKm: number;
+  readonly diameterKm: number;
+  /** ln|FᵀF|. */
+  readonly logDetFtF: number;
+}
+
+/**
+ * Largest condition number of the trend after scaling each column to unit length: beyond it, coefficients keep
+ * fewer than half of a double's digits and a term is called collinear.
+ */
+const MAX_TREND_CONDITION = 1e7;
+
+/**
+ * @throws STATIONS_TOO_FEW (n < p + 2), TREND_COLLINEAR, STATIONS_COINCIDENT (all places the same)
+ */
+export function createGeometry(
+  positionsKm: Float64Array,
+  trend: Float64Array,
+  p: number,
+  metric: Metric = 'euclidean',
+): FieldGeometry {
+  const n = positionsKm.length / 3;
+  if (n < p + 2) {
+    throw new RainprintError(
+      'STATIONS_TOO_FEW',
+      `${n} stations cannot carry a trend of ${p} coefficients and a variance: at least ${p + 2} are needed`,
+      { stations: n, needed: p + 2 },
+    );
+  }
+  const distancesKm = new Float64Array(n * n);
+  let smallestSpacingKm = Number.POSITIVE_INFINITY;
+  let diameterKm = 0;
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j < i; j++) {
+      const h = distanceKm(positionsKm, i, positionsKm, j, metric);
+      distancesKm[i * n + j] = h;
+      if (h > 0 && h < smallestSpacingKm) smallestSpacingKm = h;
+      if (h > diameterKm) diameterKm = h;
+    }
+  }
+  if (!(diameterKm > 0)) {
+    throw new RainprintError('STATIONS_COINCIDENT', `all ${n} stations stand at the same place`, { stations: n });
+  }
+  const condition = scaledCondition(trend, n, p);
+  if (!(condition <= MAX_TREND_CONDITION)) {
+    throw new RainprintError(
+      'TREND_COLLINEAR',
+      `the trend's ${p} columns are collinear over these stations (condition ${condition.toExponential(1)}, at most ` +
+        `${MAX_TREND_CONDITION.toExponential(0)}): use fewer terms`,
+      { condition, columns: p },
+    );
+  }
+  const f = new Matrix(toRows(trend, n, p));
+  const logDetFtF = 2 * logAbsDiagonalOfR(f);
+  return { n, p, positionsKm, metric, trend, distancesKm, smallestSpacingKm, diameterKm, logDetFtF };
+}
+
+/** Ratio of the largest to the smallest singular value of F with its columns scaled to unit length. */
+export function scaledCondition(trend: Float64Array, n: number, p: number): number {
+  const scaled = new Matrix(toRows(trend, n, p));
+  for (let c = 0; c < p; c++) {
+    const norm = Math.hypot(...scaled.getColumn(c));
+    if (!(norm > 0)) return Number.POSITIVE_INFINITY;
+    scaled.mulColumn(c, 1 / norm);
+  }
+  const singular = new SingularValueDecomposition(scaled).diagonal;
+  const smallest = singular[singular.length - 1]!;
+  return smallest > 0 ? singular[0]! / smallest : Number.POSITIVE_INFINITY;
+}
+
+function logAbsDiagonalOfR(f: Matrix): number {
+  // ln|FᵀF| = 2 Σ ln σ_i(F), from singular values: FᵀF itself would lose half the digits.
+  return new SingularValueDecomposition(f).diagonal.reduce((sum, s) => sum + Math.log(s), 0);
+}
+
+/** Ordinary least squares of z on the trend: coefficients and residual variance with n − p degrees of freedom. */
+export function ordinaryLeastSquares(
+  geometry: Pick<FieldGeometry, 'n' | 'p' | 'trend'>,
+  z: Float64Array,
+): { coefficients: number[]; residuals: Float64Array; residualVariance: number } {
+  const { n, p, trend } = geometry;
+  const f = new Matrix(toRows(trend, n, p));
+  const coefficients = solve(f, Matrix.columnVector(z), true).to1DArray();
+  const residuals = new Float64Array(n);
+  let squares = 0;
+  for (let i = 0; i < n; i++) {
+    let fitted = 0;
+    for (let c = 0; c < p; c++) fitted += trend[i * p + c]! * coefficients[c]!;
+    residuals[i] = z[i]! - fitted;
+    squares += residuals[i]! ** 2;
+  }
+  return { coefficients, residuals, residualVariance: squares / (n - p) };
+}
+
+function toRows(flat: Float64Array, rows: number, columns: number): number[][] {
+  return Array.from({ length: rows }, (_, r) => Array.from(flat.subarray(r * columns, (r + 1) * columns)));
+}

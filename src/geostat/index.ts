@@ -1,0 +1,32 @@
+export {
+  type BlupWorkspace,
+  createBlupWorkspace,
+  type FieldData,
+  FieldSystem,
+  PLACES_PER_BLOCK,
+  predictField,
+} from './blup.js';
+export { MAX_NODES, type ParameterNode, parameterNodes } from './averaging/nodes.js';
+export {
+  COVARIANCE_FAMILIES,
+  type CovarianceFamily,
+  correlation,
+  correlationFunction,
+  practicalRangeKm,
+} from './covariance/families.js';
+export { createGeometry, type FieldGeometry, ordinaryLeastSquares, scaledCondition } from './field-data.js';
+export { type FieldFit, type FieldFitOptions, fitField } from './fit-field.js';
+export { predictFieldJointly, weightedAverage } from './joint.js';
+export { leaveGroupOutField, leaveOneOutField } from './leave-one-out.js';
+export { type Criterion, FieldLikelihood, type FieldParameters } from './likelihood.js';
+export {
+  arcFromChordKm,
+  chordKm,
+  distanceKm,
+  EARTH_RADIUS_KM,
+  greatCircleKm,
+  type Metric,
+  positionsOnSphereKm,
+  writePositionKm,
+} from './positions.js';
+export type { FixedParameters } from './search-space.js';

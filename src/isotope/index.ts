@@ -1,0 +1,1 @@
+export { dExcess, dExcessSd, dExcessVariance } from './d-excess.js';
