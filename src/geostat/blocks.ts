@@ -60,7 +60,10 @@ function alongLongestAxis(positionsKm: Float64Array, places: readonly number[]):
   }
   const direction = longestAxis(spread);
   const projected = new Map(
-    places.map((place) => [place, direction.reduce((sum, part, axis) => sum + part * offset(place, axis), 0)]),
+    places.map((place) => [
+      place,
+      direction.reduce((sum, part, axis) => sum + part * offset(place, axis), 0),
+    ]),
   );
   const ordered = [...places].sort((a, b) => comparePlaces(positionsKm, a, b));
   return ordered.sort((a, b) => projected.get(a)! - projected.get(b)!);

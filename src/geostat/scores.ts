@@ -68,6 +68,7 @@ export function pitGaussian(observed: number, mean: number, variance: number): n
 /** Negative log density in nats; −Infinity or Infinity where the variance is 0. */
 export function logScoreGaussian(observed: number, mean: number, variance: number): number {
   const z = standardisedError(observed, mean, variance);
+  if (variance === 0) return z === 0 ? Number.NEGATIVE_INFINITY : Number.POSITIVE_INFINITY;
   return 0.5 * (LOG_TWO_PI + Math.log(variance) + z * z);
 }
 
