@@ -119,7 +119,12 @@ export function checkRecords(name: string): CheckValue[] {
   return found;
 }
 
-/** Largest difference a record's tolerance allows from `expected`. */
+/**
+ * Largest difference a record allows from `expected`: its tolerance, but never less than half a unit of the tenth
+ * significant digit, to which the outputs are printed.
+ */
 export function allowed(record: CheckValue, expected: number): number {
-  return record.tolerance.abs ?? record.tolerance.rel! * Math.abs(expected);
+  const tolerance = record.tolerance.abs ?? record.tolerance.rel! * Math.abs(expected);
+  if (expected === 0) return tolerance;
+  return Math.max(tolerance, 0.5 * 10 ** (Math.floor(Math.log10(Math.abs(expected))) - 9));
 }
