@@ -60,6 +60,24 @@ export const ERROR_CODES = {
   ISOSCAPE_DAMAGED: 'input',
   ISOSCAPE_OLDER: 'input',
   ISOSCAPE_NEWER: 'input',
+  // raster
+  RASTER_NOT_TIFF: 'input',
+  RASTER_TRUNCATED: 'input',
+  RASTER_DAMAGED: 'input',
+  RASTER_BANDS: 'input',
+  CRS_MISSING: 'input',
+  CRS_UNSUPPORTED: 'input',
+  TRANSFORM_MISSING: 'input',
+  TRANSFORM_ROTATED: 'input',
+  ELEVATION_UNIT: 'input',
+  ELEVATION_EMPTY: 'input',
+  ELEVATION_IMPLAUSIBLE: 'input',
+  ELEVATION_TOO_FINE: 'input',
+  GRID_TOO_LARGE: 'input',
+  // jobs
+  BOUNDS_INVALID: 'input',
+  CELL_INVALID: 'input',
+  GRID_EMPTY: 'input',
 } as const satisfies Record<string, 'input' | 'fault'>;
 
 export type ErrorCode = keyof typeof ERROR_CODES;

@@ -1,0 +1,174 @@
+import { createHash } from 'node:crypto';
+import { createReadStream } from 'node:fs';
+import { open, stat } from 'node:fs/promises';
+import { basename } from 'node:path';
+import { fromFile, type GeoTIFF, type GeoTIFFImage } from 'geotiff';
+import { RainprintError } from '../errors.js';
+import type { NorthUpTransform } from './geo-keys.js';
+import { type GeoKeys, type RasterCrs, rasterCrs } from './raster-crs.js';
+import { northUpTransform } from './raster-transform.js';
+
+/** An open one-band raster whose place on the Earth is known and whose bytes are all there. */
+export interface RasterFile {
+  readonly path: string;
+  /** File name and the first 12 digits of the SHA-256 of its bytes. */
+  readonly source: string;
+  readonly width: number;
+  readonly height: number;
+  readonly transform: NorthUpTransform;
+  readonly crs: RasterCrs;
+  readonly nodata: number | null;
+  /** Stored value × scale + offset is the value meant. */
+  readonly scale: number;
+  readonly offset: number;
+  /** As the file spells it, lower case; empty where it does not say. */
+  readonly unit: string;
+  readonly image: GeoTIFFImage;
+  /** Compressed size of each tile or strip; 0 where the file leaves one out because it is all nodata. */
+  readonly byteCounts: ArrayLike<number>;
+  close(): Promise<void>;
+}
+
+/**
+ * Opens a GeoTIFF of one band. Throws FILE_NOT_FOUND, FILE_NOT_READABLE, RASTER_NOT_TIFF, RASTER_TRUNCATED,
+ * RASTER_BANDS, CRS_MISSING, CRS_UNSUPPORTED, TRANSFORM_MISSING, TRANSFORM_ROTATED.
+ */
+export async function openRaster(path: string): Promise<RasterFile> {
+  const sizeBytes = await checkTiff(path);
+  let tiff: GeoTIFF | undefined;
+  try {
+    tiff = await fromFile(path);
+    const image = await tiff.getImage(0);
+    const opened = tiff;
+    return await describe(path, sizeBytes, image, async () => {
+      await opened.close();
+    });
+  } catch (error) {
+    await tiff?.close();
+    throw error instanceof RainprintError ? error : damaged(path, error);
+  }
+}
+
+async function describe(
+  path: string,
+  sizeBytes: number,
+  image: GeoTIFFImage,
+  close: () => Promise<void>,
+): Promise<RasterFile> {
+  const bandCount = image.getSamplesPerPixel();
+  if (bandCount !== 1) {
+    throw new RainprintError(
+      'RASTER_BANDS',
+      `${path} has ${bandCount} bands, one is expected; pick it: gdal_translate -b 1 in.tif out.tif`,
+      { path, bandCount },
+    );
+  }
+  const directory = image.fileDirectory;
+  const keys = image.getGeoKeys() as GeoKeys | null;
+  const load = async (tag: 'ModelPixelScale' | 'ModelTiepoint' | 'ModelTransformation') =>
+    directory.hasTag(tag) ? ((await directory.loadValue(tag)) as ArrayLike<number>) : undefined;
+  const transform = northUpTransform(
+    {
+      pixelScale: await load('ModelPixelScale'),
+      tiepoint: await load('ModelTiepoint'),
+      transformation: await load('ModelTransformation'),
+      pixelIsPoint: keys?.GTRasterTypeGeoKey === 2,
+    },
+    path,
+  );
+  const crs = rasterCrs(keys, path);
+  if (crs.kind === 'geographic') checkDegrees(transform, image.getHeight(), path);
+  const byteCounts = await checkBlocks(image, sizeBytes, path);
+  const items = ((await image.getGDALMetadata(0)) ?? {}) as Record<string, unknown>;
+  return {
+    path,
+    source: `${basename(path)} sha256:${(await sha256(path)).slice(0, 12)}`,
+    width: image.getWidth(),
+    height: image.getHeight(),
+    transform,
+    crs,
+    nodata: image.getGDALNoData(),
+    scale: items.SCALE === undefined ? 1 : Number(items.SCALE),
+    offset: items.OFFSET === undefined ? 0 : Number(items.OFFSET),
+    unit: String(items.UNITTYPE ?? '').toLowerCase(),
+    image,
+    byteCounts,
+    close,
+  };
+}
+
+/** TIFF 6.0 section 2 and BigTIFF: byte order, then 42 or 43. */
+async function checkTiff(path: string): Promise<number> {
+  const bytes = Buffer.alloc(4);
+  let sizeBytes: number;
+  try {
+    sizeBytes = (await stat(path)).size;
+    const file = await open(path, 'r');
+    await file.read(bytes, 0, 4, 0).finally(() => file.close());
+  } catch (error) {
+    const cause = (error as NodeJS.ErrnoException).code ?? 'unknown';
+    const code = cause === 'ENOENT' || cause === 'ENOTDIR' ? 'FILE_NOT_FOUND' : 'FILE_NOT_READABLE';
+    throw new RainprintError(code, `cannot read the raster ${path}: ${(error as Error).message}`, {
+      path,
+      cause,
+    });
+  }
+  const mark = bytes.toString('latin1');
+  if (!['II*\0', 'MM\0*', 'II+\0', 'MM\0+'].includes(mark)) {
+    throw new RainprintError(
+      'RASTER_NOT_TIFF',
+      `${path} is no GeoTIFF (a TIFF starts with II or MM and 42 or 43); convert it: gdal_translate -of GTiff IN out.tif`,
+      { path },
+    );
+  }
+  return sizeBytes;
+}
+
+/** Every tile or strip must lie inside the file: an uncompressed one cut short would be read as zeros. */
+async function checkBlocks(image: GeoTIFFImage, sizeBytes: number, path: string): Promise<ArrayLike<number>> {
+  const directory = image.fileDirectory;
+  const [offsetTag, countTag] = image.isTiled
+    ? (['TileOffsets', 'TileByteCounts'] as const)
+    : (['StripOffsets', 'StripByteCounts'] as const);
+  if (!directory.hasTag(offsetTag) || !directory.hasTag(countTag)) throw damaged(path, 'it lists no data');
+  const offsets = Array.from((await directory.loadValue(offsetTag)) as ArrayLike<number>, Number);
+  const counts = Array.from((await directory.loadValue(countTag)) as ArrayLike<number>, Number);
+  const end = offsets.reduce((far, offset, k) => Math.max(far, offset + counts[k]!), 0);
+  if (!(end <= sizeBytes)) {
+    throw new RainprintError(
+      'RASTER_TRUNCATED',
+      `${path} is cut short: its data end at byte ${end}, the file at ${sizeBytes}; copy or download it again`,
+      { path, expectedBytes: end, sizeBytes },
+    );
+  }
+  return counts;
+}
+
+/** Metres labelled as degrees are a common slip, and would be read as a place far off the Earth. */
+function checkDegrees(transform: NorthUpTransform, height: number, path: string): void {
+  const { originX, originY, cellHeight } = transform;
+  const southY = originY - height * cellHeight;
+  // Cells centred on the poles or on 180° hang half a cell over.
+  const slack = cellHeight;
+  if (originY <= 90 + slack && southY >= -90 - slack && Math.abs(originX) <= 360 + slack) return;
+  throw new RainprintError(
+    'CRS_UNSUPPORTED',
+    `${path} says it is in degrees, but reaches latitude ${originY} to ${southY} from longitude ${originX}; give it the CRS it is in: gdal_translate -a_srs EPSG:CODE in.tif out.tif`,
+    { path, north: originY, south: southY },
+  );
+}
+
+async function sha256(path: string): Promise<string> {
+  const hash = createHash('sha256');
+  for await (const chunk of createReadStream(path)) hash.update(chunk as Buffer);
+  return hash.digest('hex');
+}
+
+export function damaged(path: string, cause: unknown): RainprintError {
+  const reason = cause instanceof Error ? cause.message : String(cause);
+  return new RainprintError(
+    'RASTER_DAMAGED',
+    `${path} cannot be decoded (${reason}); check it with gdalinfo -checksum, or write it anew with gdal_translate`,
+    { path, reason },
+  );
+}
