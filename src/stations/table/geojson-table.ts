@@ -176,7 +176,7 @@ async function* featureRows(
     const [lon, lat, height] = feature.position;
     const place = [lon, lat, height].map((value) => (value === undefined ? '' : String(value)));
     const cells = [...keys.map((key) => cellOf(feature.properties[key])), ...place, feature.id];
-    yield { line: index + 1, cells, problem: feature.problem };
+    yield { line: index + 1, cells, problem: feature.problem, properties: feature.properties };
   }
 }
 

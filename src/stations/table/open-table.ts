@@ -17,6 +17,8 @@ export interface TableRow {
   readonly cells: readonly string[];
   /** Why the row cannot be read at all (width, geometry); null for a sound row. */
   readonly problem: RowProblem | null;
+  /** GeoJSON only: the feature's properties with their own types. */
+  readonly properties?: Readonly<Record<string, unknown>>;
 }
 
 export interface RowProblem {
