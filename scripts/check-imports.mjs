@@ -13,7 +13,8 @@ const MAY_IMPORT = {
   stations: ['isotope'],
   isoscape: ['geostat', 'stations', 'isotope', 'kernels'],
   report: ['isoscape', 'geostat', 'stations', 'isotope'],
-  cli: ['report', 'isoscape', 'geostat', 'stations', 'raster', 'isotope'],
+  jobs: ['isoscape', 'geostat', 'stations', 'raster', 'isotope'],
+  cli: ['jobs', 'report', 'isoscape', 'geostat', 'stations', 'raster', 'isotope'],
 };
 const PURE = new Set(['kernels', 'isotope', 'geostat', 'isoscape']);
 const IMPORT = /(?:from|import)\s*\(?\s*['"]([^'"]+)['"]/g;

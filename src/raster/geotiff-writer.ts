@@ -35,6 +35,8 @@ export interface WriteOptions {
 export type RowSource = (firstRow: number, rowCount: number) => BandRows | Promise<BandRows>;
 
 const HEADER_SIZE_BYTES = 8;
+/** zlib works in libuv's threads, of which there are four. */
+const TILES_AT_ONCE = 4;
 /** Classic TIFF counts bytes in 32 bits. */
 const MAX_FILE_SIZE_BYTES = 2 ** 32 - 1;
 
@@ -66,14 +68,14 @@ async function writeBody(
   let end = HEADER_SIZE_BYTES + encodeHead(spec, tileOffsets, tileByteCounts).length;
   for (let tileRow = 0; tileRow < down; tileRow++) {
     options.signal?.throwIfAborted();
-    const tiles = await encodeTileRow(spec, readRows, tileRow, across, options.deflateLevel ?? 6);
-    for (const [tileColumn, tile] of tiles.entries()) {
-      const k = tileRow * across + tileColumn;
+    let k = tileRow * across;
+    for await (const tile of encodeTileRow(spec, readRows, tileRow, across, options.deflateLevel ?? 6)) {
       if (end + tile.length > MAX_FILE_SIZE_BYTES) throw tooLarge();
       tileOffsets[k] = end;
       tileByteCounts[k] = tile.length;
       await file.write(tile, 0, tile.length, end);
       end += tile.length;
+      k++;
     }
   }
   options.signal?.throwIfAborted();
@@ -82,24 +84,26 @@ async function writeBody(
   await file.write(head, 0, head.length, 0);
 }
 
-async function encodeTileRow(
+/** The tiles of one row, from left to right, some being compressed at the same time. */
+async function* encodeTileRow(
   spec: GeoTiffSpec,
   readRows: RowSource,
   tileRow: number,
   across: number,
   deflateLevel: number,
-): Promise<Buffer[]> {
+): AsyncGenerator<Buffer> {
   const { sampleType, tileSizePx, width, nodata } = spec;
   const firstRow = tileRow * tileSizePx;
   const rowCount = Math.min(tileSizePx, spec.height - firstRow);
   const rows = await readRows(firstRow, rowCount);
   checkRows(rows, spec, rowCount);
-  const columns = Array.from({ length: across }, (_, k) => k * tileSizePx);
-  return Promise.all(
-    columns.map((firstColumn) =>
-      encodeTile(rows, { sampleType, tileSizePx, width, rowCount, firstColumn, nodata, deflateLevel }),
-    ),
-  );
+  const cut = { sampleType, tileSizePx, width, rowCount, nodata, deflateLevel };
+  for (let first = 0; first < across; first += TILES_AT_ONCE) {
+    const columns = Array.from({ length: Math.min(TILES_AT_ONCE, across - first) }, (_, k) => first + k);
+    yield* await Promise.all(
+      columns.map((column) => encodeTile(rows, { ...cut, firstColumn: column * tileSizePx })),
+    );
+  }
 }
 
 function encodeHead(spec: GeoTiffSpec, tileOffsets: Uint32Array, tileByteCounts: Uint32Array): Buffer {

@@ -1,0 +1,155 @@
+import { setImmediate as nextTurn } from 'node:timers/promises';
+import { RainprintError } from '../errors.js';
+import { createPlaces, createPredictions, type Places, type Predictions } from '../isoscape/places.js';
+import { type ElevationCells, type ElevationGrid, type LonLatGrid, writeGeoTiff } from '../raster/index.js';
+import type { IsotopeChoice } from '../stations/index.js';
+import { gridBands, writeBandCell } from './grid-bands.js';
+import type { GridPlan } from './grid-plan.js';
+
+/** The one door to the model: fills `out` for flat columns of places. */
+export type PlacePredictor = (places: Places, out: Predictions) => void;
+
+export interface GridRequest {
+  readonly plan: GridPlan;
+  readonly isotopes: IsotopeChoice;
+  readonly predict: PlacePredictor;
+  /** Places predicted between two looks at progress and cancelling. */
+  readonly placesPerTurn: number;
+  readonly elevation: ElevationGrid;
+  /** Items about the whole file: where it comes from. */
+  readonly items: Readonly<Record<string, string>>;
+  readonly software: string;
+}
+
+export interface GridRun {
+  readonly signal?: AbortSignal;
+  readonly onProgress?: (cellsDone: number, cellCount: number) => void;
+}
+
+export interface GridResult {
+  readonly width: number;
+  readonly height: number;
+  /** Cells that are land and have a prediction. */
+  readonly landCells: number;
+}
+
+export const GRID_NODATA = -9999;
+const TILE_SIZE_PX = 256;
+/** Elevations are read for about this many cells at once. */
+const ELEVATION_CELLS = 65_536;
+
+/**
+ * Predicts at the centre of every cell of land, at the cell's elevation, and writes the bands to `path`; cells without
+ * elevation are nodata. Throws GRID_EMPTY where no cell has one; an aborted signal rejects with its reason. In both
+ * cases, as on any failure, no file is left.
+ */
+export async function makeGrid(path: string, request: GridRequest, run: GridRun = {}): Promise<GridResult> {
+  const { plan, isotopes, elevation } = request;
+  const bands = gridBands(isotopes);
+  const cellCount = plan.width * plan.height;
+  let landCells = 0;
+  const fillRows = async (firstRow: number, rowCount: number): Promise<Float32Array[]> => {
+    const rows = bands.map(() => new Float32Array(plan.width * rowCount).fill(Number.NaN));
+    for (const block of rowBlocks(firstRow, rowCount, plan.width)) {
+      const part = {
+        ...plan,
+        height: block.rowCount,
+        northDeg: plan.northDeg - block.firstRow * plan.cellDeg,
+      };
+      const cells = await elevation.sampleGrid(part);
+      const start = (block.firstRow - firstRow) * plan.width;
+      const onCells = (done: number) => run.onProgress?.(block.firstRow * plan.width + done, cellCount);
+      landCells += await fillBlock(request, part, cells, rows, start, onCells, run.signal);
+    }
+    if (firstRow + rowCount === plan.height && landCells === 0) throw gridEmpty(elevation.source);
+    return rows;
+  };
+  await writeGeoTiff(
+    path,
+    {
+      width: plan.width,
+      height: plan.height,
+      sampleType: 'float32',
+      tileSizePx: TILE_SIZE_PX,
+      crs: 'EPSG:4326',
+      transform: {
+        originX: plan.westDeg,
+        originY: plan.northDeg,
+        cellWidth: plan.cellDeg,
+        cellHeight: plan.cellDeg,
+      },
+      pixelIs: 'area',
+      nodata: GRID_NODATA,
+      bands,
+      items: request.items,
+      software: request.software,
+    },
+    fillRows,
+    run.signal === undefined ? {} : { signal: run.signal },
+  );
+  return { width: plan.width, height: plan.height, landCells };
+}
+
+/** Predicts the land cells of some whole rows and writes them into the bands from `start` on; returns their number. */
+async function fillBlock(
+  request: GridRequest,
+  grid: LonLatGrid,
+  cells: ElevationCells,
+  bands: readonly Float32Array[],
+  start: number,
+  onCells: (done: number) => void,
+  signal: AbortSignal | undefined,
+): Promise<number> {
+  const land = landIndices(cells);
+  for (let first = 0; first < land.length; first += request.placesPerTurn) {
+    signal?.throwIfAborted();
+    const some = land.subarray(first, first + request.placesPerTurn);
+    const predictions = createPredictions(some.length);
+    request.predict(placesOf(grid, cells, some), predictions);
+    for (let i = 0; i < some.length; i++) {
+      writeBandCell(request.isotopes, predictions, i, bands, start + some[i]!);
+    }
+    onCells(some[some.length - 1]! + 1);
+    await nextTurn(); // lets signals and the terminal in
+  }
+  signal?.throwIfAborted();
+  onCells(grid.width * grid.height);
+  return land.length;
+}
+
+function landIndices(cells: ElevationCells): Uint32Array {
+  const out = new Uint32Array(cells.elevationM.length);
+  let count = 0;
+  cells.elevationM.forEach((elevationM, k) => {
+    if (!Number.isNaN(elevationM)) out[count++] = k;
+  });
+  return out.subarray(0, count);
+}
+
+/** Cell centres; longitudes past 180 come back to the usual range. */
+function placesOf(grid: LonLatGrid, cells: ElevationCells, land: Uint32Array): Places {
+  const places = createPlaces(land.length);
+  land.forEach((k, i) => {
+    const lonDeg = grid.westDeg + ((k % grid.width) + 0.5) * grid.cellDeg;
+    places.lonDeg[i] = lonDeg >= 180 ? lonDeg - 360 : lonDeg;
+    places.latDeg[i] = grid.northDeg - (Math.floor(k / grid.width) + 0.5) * grid.cellDeg;
+    places.elevationM[i] = cells.elevationM[k]!;
+    places.elevationVarM2[i] = cells.varianceM2[k]!;
+  });
+  return places;
+}
+
+function* rowBlocks(firstRow: number, rowCount: number, width: number) {
+  const step = Math.max(1, Math.floor(ELEVATION_CELLS / width));
+  for (let row = firstRow; row < firstRow + rowCount; row += step) {
+    yield { firstRow: row, rowCount: Math.min(step, firstRow + rowCount - row) };
+  }
+}
+
+function gridEmpty(source: string): RainprintError {
+  return new RainprintError(
+    'GRID_EMPTY',
+    `no cell of the grid has an elevation: ${source} has only sea there, or does not reach it; check --bounds (W,S,E,N) and --elevation`,
+    { source },
+  );
+}
