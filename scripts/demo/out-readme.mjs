@@ -1,0 +1,28 @@
+import { INVENTED } from './elevation-file.mjs';
+import { LAND_NAME } from './names.mjs';
+
+/** The README of the output folder: what each file is, and that all of it is invented. */
+export function outReadme(seed, comparison) {
+  return `# Output of \`npm run demo\` (seed ${seed})
+
+**${INVENTED}** Land, names, stations, records, sites and truth are drawn by \`scripts/demo/\`; do not use any of it as data.
+
+| file | what it is |
+| --- | --- |
+| invented-records.csv | monthly records of the invented stations, three planted mistakes included |
+| invented-sites.csv | sixty invented field sites; six lack an elevation |
+| invented-elevation.tif | elevation of ${LAND_NAME}, EPSG:4326, 0.05°, metres |
+| invented-truth.csv | the expected long-term amount-weighted means at the sites, which nobody would know of a real land |
+| check.json | what \`rainprint check\` found |
+| isoscape.json | the fitted isoscape |
+| validation.html | report of \`rainprint validate\` |
+| sites.csv | predictions at the sites (beside it what would re-run them) |
+| grid.tif | predictions over the land, seven bands |
+| comparison.json | the table below |
+
+The truth is not of the model's kind: its elevation effect bends at 1500 m and turns round in the rain shadow, its axes
+in the dual-isotope plane drift from west to east, its fields are not stationary, its tails are heavier than Gaussian.
+
+${comparison}
+`;
+}
