@@ -18,23 +18,33 @@ import { ROOT, runVerb, typed } from './verb.mjs';
 import { createWorld, DEMO_SEED } from './world.mjs';
 
 const LEVEL = 0.9;
-const startMs = performance.now();
-const { seed, folder } = readCall();
-const file = (name) => typed(join(folder, name));
 
-say(`Rainprint demo, seed ${seed}. ${INVENTED}`);
-mkdirSync(folder, { recursive: true });
-const world = createWorld(seed);
-await writeInputs();
-checkPlanted();
-runVerb(['fit', file('invented-records.csv'), '-o', file('isoscape.json')]);
-runVerb(['validate', file('isoscape.json'), '--report', file('validation.html')]);
-predictSites();
-predictGrid();
-compare();
-say(
-  `Everything is in ${typed(folder)}/, and all of it is invented. ${((performance.now() - startMs) / 1000).toFixed(1)} s.`,
-);
+try {
+  await runDemo(readCall());
+} catch (error) {
+  process.stderr.write(`demo: ${error.message}\n`);
+  process.exitCode = 1;
+}
+
+async function runDemo({ seed, folder }) {
+  const startMs = performance.now();
+  say(`Rainprint demo, seed ${seed}. ${INVENTED}`);
+  mkdirSync(folder, { recursive: true });
+  const world = createWorld(seed);
+  const file = (name) => typed(join(folder, name));
+  await writeInputs(world, folder);
+  checkPlanted(world, folder, file);
+  runVerb(['fit', file('invented-records.csv'), '-o', file('isoscape.json')]);
+  runVerb(['validate', file('isoscape.json'), '--report', file('validation.html')]);
+  const elevation = ['--elevation', file('invented-elevation.tif')];
+  predictSites(folder, file, elevation);
+  const { westDeg, southDeg, eastDeg, northDeg } = BOUNDS;
+  const bounds = `--bounds=${[westDeg, southDeg, eastDeg, northDeg].join(',')}`;
+  runVerb(['grid', file('isoscape.json'), bounds, '--cell', '0.1', ...elevation, '-o', file('grid.tif')]);
+  compare(world, folder);
+  const seconds = ((performance.now() - startMs) / 1000).toFixed(1);
+  say(`Everything is in ${typed(folder)}/, and all of it is invented. ${seconds} s.`);
+}
 
 function readCall() {
   const options = { seed: { type: 'string' }, out: { type: 'string' } };
@@ -45,7 +55,7 @@ function readCall() {
   return { seed: Number(asked), folder: resolve(ROOT, values.out ?? 'grids/out') };
 }
 
-async function writeInputs() {
+async function writeInputs(world, folder) {
   const write = (name, text) => writeFileSync(join(folder, name), text);
   write('invented-records.csv', recordTable(world.rows));
   write('invented-sites.csv', siteTable(world.sites));
@@ -58,7 +68,7 @@ async function writeInputs() {
 }
 
 /** Runs check for people, then for machines, and holds the second against what was planted. */
-function checkPlanted() {
+function checkPlanted(world, folder, file) {
   runVerb(['check', file('invented-records.csv')], { lines: 30 });
   const report = runVerb(['check', file('invented-records.csv'), '--json'], { quiet: true });
   writeFileSync(join(folder, 'check.json'), report);
@@ -68,8 +78,7 @@ function checkPlanted() {
   if (mistakes.some(({ found }) => found === null)) throw new Error('check missed a planted mistake');
 }
 
-function predictSites() {
-  const elevation = ['--elevation', file('invented-elevation.tif')];
+function predictSites(folder, file, elevation) {
   const level = ['--level', String(LEVEL)];
   rmSync(join(folder, 'sites.csv'), { force: true }); // so that an old one is never read for a new one
   runVerb([
@@ -85,15 +94,8 @@ function predictSites() {
   say(lines.slice(0, 4).join('\n'));
 }
 
-function predictGrid() {
-  const { westDeg, southDeg, eastDeg, northDeg } = BOUNDS;
-  const bounds = `--bounds=${[westDeg, southDeg, eastDeg, northDeg].join(',')}`;
-  const elevation = ['--elevation', file('invented-elevation.tif')];
-  runVerb(['grid', file('isoscape.json'), bounds, '--cell', '0.1', ...elevation, '-o', file('grid.tif')]);
-}
-
 /** What only an invented land allows: the predictions as written, against the truth. */
-function compare() {
+function compare(world, folder) {
   const rows = parse(readFileSync(join(folder, 'sites.csv'), 'utf8'), { columns: true, bom: true });
   const byId = new Map(rows.map((row) => [row.site_id, numbersOf(row)]));
   const predictions = world.sites.map((site) => byId.get(site.id));
@@ -104,9 +106,9 @@ function compare() {
   const table = comparisonTable(scores, LEVEL);
   writeFileSync(
     join(folder, 'comparison.json'),
-    `${JSON.stringify({ note: INVENTED, seed, level: LEVEL, scores }, null, 2)}\n`,
+    `${JSON.stringify({ note: INVENTED, seed: world.seed, level: LEVEL, scores }, null, 2)}\n`,
   );
-  writeFileSync(join(folder, 'README.md'), outReadme(seed, table));
+  writeFileSync(join(folder, 'README.md'), outReadme(world.seed, table));
   say(`The ${world.sites.length} sites against the truth (known, since it is invented):\n\n${table}`);
 }
 
