@@ -1,2 +1,15 @@
+export { type AmountWeightedMeans, amountWeightedMeans, yearCoverage } from './amount-weighted.js';
+export * from './bounds.js';
+export { parseDate, parseMonth, parseYear, type RecordDate } from './calendar.js';
+export { KEPT_PER_REASON, type ReasonSummary } from './issue-log.js';
 export * from './network.js';
+export type { ReadNetworkOptions } from './options.js';
+export { type PooledWithin, poolWithin } from './pooled-within.js';
+export { readNetwork } from './read-network.js';
+export { type IssueReason, type IssueSeverity, REASON_CODES, REASONS, type StationIssue } from './reasons.js';
+export { type CheckReport, MIN_STATIONS, summarizeWithin, type WithinSummary } from './report.js';
+export { isSameSeason, isWholeYear, parseSeason, parseYears, WHOLE_YEAR, type YearRange } from './season.js';
+export { STATION_PLACE, STATION_VOCABULARY, type StationMeaning } from './station-vocabulary.js';
 export * from './table/index.js';
+export { shown, withoutControls } from './text-shown.js';
+export { effectiveRecords, type GroupSums, WithinSums } from './within-sums.js';

@@ -1,0 +1,80 @@
+import { type IssueReason, type IssueSeverity, REASON_CODES, REASONS, type StationIssue } from './reasons.js';
+
+/** So many issues of each reason are kept; all are counted and go to the sink. */
+export const KEPT_PER_REASON = 50;
+const LONGEST_VALUE = 80;
+
+/** How often a reason occurred, what it means, and its first rows. */
+export interface ReasonSummary {
+  readonly reasonCode: IssueReason;
+  readonly meaning: string;
+  readonly leftOut: number;
+  readonly flagged: number;
+  readonly first: readonly StationIssue[];
+}
+
+/** Collects issues in bounded memory. */
+export class IssueLog {
+  readonly #tallies = new Map<IssueReason, { leftOut: number; flagged: number; first: StationIssue[] }>();
+  leftOut = 0;
+  flagged = 0;
+
+  constructor(private readonly sink: ((issue: StationIssue) => void) | undefined) {}
+
+  /** Adds an issue; severity is the reason's own unless given. */
+  add(
+    reasonCode: IssueReason,
+    at: {
+      line: number;
+      column?: string;
+      value?: string | number;
+      stationId: string;
+      severity?: IssueSeverity;
+    },
+    message: string,
+  ): void {
+    const severity = at.severity ?? REASONS[reasonCode][0];
+    const issue: StationIssue = {
+      line: at.line,
+      column: at.column ?? '',
+      value: String(at.value ?? '').slice(0, LONGEST_VALUE),
+      reasonCode,
+      severity,
+      message,
+      stationId: at.stationId.slice(0, LONGEST_VALUE),
+    };
+    const tally = this.#tally(reasonCode);
+    if (severity === 'left-out') {
+      tally.leftOut++;
+      this.leftOut++;
+    } else {
+      tally.flagged++;
+      this.flagged++;
+    }
+    if (tally.first.length < KEPT_PER_REASON) tally.first.push(issue);
+    this.sink?.(issue);
+  }
+
+  count(reasonCode: IssueReason): number {
+    const tally = this.#tallies.get(reasonCode);
+    return tally === undefined ? 0 : tally.leftOut + tally.flagged;
+  }
+
+  /** In the order of the list of reasons; only those that occurred. */
+  summaries(): ReasonSummary[] {
+    return REASON_CODES.filter((code) => this.#tallies.has(code)).map((reasonCode) => ({
+      reasonCode,
+      meaning: REASONS[reasonCode][1],
+      ...this.#tally(reasonCode),
+    }));
+  }
+
+  #tally(reasonCode: IssueReason) {
+    let tally = this.#tallies.get(reasonCode);
+    if (tally === undefined) {
+      tally = { leftOut: 0, flagged: 0, first: [] };
+      this.#tallies.set(reasonCode, tally);
+    }
+    return tally;
+  }
+}
