@@ -96,8 +96,7 @@ export class FieldSystem {
     const rho = correlationFunction(this.#family).correlation;
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < count; j++) {
-        out[i * count + j] =
-          sill * rho(distanceKm(positionsKm, i, places, first + j, metric) / rangeKm);
+        out[i * count + j] = sill * rho(distanceKm(positionsKm, i, places, first + j, metric) / rangeKm);
       }
     }
   }

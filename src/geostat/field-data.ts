@@ -23,10 +23,10 @@ export interface FieldGeometry {
 }
 
 /**
- * Largest condition number of the trend after scaling each column to unit length: beyond it, coefficients keep
- * fewer than half of a double's digits and a term is called collinear.
+ * Largest condition number of the trend after scaling each column to unit length. The normal equations square it:
+ * beyond 10⁶ fewer than four digits of a coefficient are left, and the terms are called collinear.
  */
-const MAX_TREND_CONDITION = 1e7;
+export const MAX_TREND_CONDITION = 1e6;
 
 /**
  * @throws STATIONS_TOO_FEW (n < p + 2), TREND_COLLINEAR, STATIONS_COINCIDENT (all places the same)
@@ -57,7 +57,9 @@ export function createGeometry(
     }
   }
   if (!(diameterKm > 0)) {
-    throw new RainprintError('STATIONS_COINCIDENT', `all ${n} stations stand at the same place`, { stations: n });
+    throw new RainprintError('STATIONS_COINCIDENT', `all ${n} stations stand at the same place`, {
+      stations: n,
+    });
   }
   const condition = scaledCondition(trend, n, p);
   if (!(condition <= MAX_TREND_CONDITION)) {

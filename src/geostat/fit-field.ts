@@ -75,6 +75,8 @@ export function fitField(
       {},
     );
   }
+  // Leave the likelihood's state at the optimum, so that the caller can ask for Qz there.
+  likelihood.evaluate(z, best.parameters);
   return best;
 }
 
@@ -102,7 +104,12 @@ function startingPoints(
 }
 
 /** Damped Newton ascent (Levenberg 1944; Marquardt 1963) with the active bounds taken out of each step. */
-function climb(likelihood: FieldLikelihood, z: Float64Array, space: SearchSpace, start: Float64Array): FieldFit {
+function climb(
+  likelihood: FieldLikelihood,
+  z: Float64Array,
+  space: SearchSpace,
+  start: Float64Array,
+): FieldFit {
   const width = space.axes.length;
   let x: Float64Array = Float64Array.from(start);
   let value = likelihood.evaluate(z, parametersAt(space, x));
@@ -112,9 +119,9 @@ function climb(likelihood: FieldLikelihood, z: Float64Array, space: SearchSpace,
     gradient: new Float64Array(width),
     information: new Float64Array(width * width),
   };
-  let fresh = Number.isFinite(value);
-  if (fresh) local = localDerivatives(likelihood, space, x);
-  while (fresh && width > 0 && iterations < MAX_ITERATIONS) {
+  const usable = Number.isFinite(value);
+  if (usable) local = localDerivatives(likelihood, space, x);
+  while (usable && width > 0 && iterations < MAX_ITERATIONS) {
     const step = newtonStep(space, x, local.gradient, local.information, damping);
     if (step === null || step.decrement < CONVERGED_DECREMENT) break;
     iterations += 1;
@@ -132,11 +139,9 @@ function climb(likelihood: FieldLikelihood, z: Float64Array, space: SearchSpace,
       if (damping > 1e10) break;
     }
   }
-  // Leave the likelihood's state at the optimum, whatever was tried last.
-  fresh = Number.isFinite(likelihood.evaluate(z, parametersAt(space, x)));
   return {
     parameters: parametersAt(space, x),
-    logLikelihood: fresh ? value : Number.NEGATIVE_INFINITY,
+    logLikelihood: value,
     boundsReached: boundsReached(space, x),
     space,
     coordinates: x,
@@ -150,7 +155,11 @@ interface LocalDerivatives {
   readonly information: Float64Array;
 }
 
-function localDerivatives(likelihood: FieldLikelihood, space: SearchSpace, x: Float64Array): LocalDerivatives {
+function localDerivatives(
+  likelihood: FieldLikelihood,
+  space: SearchSpace,
+  x: Float64Array,
+): LocalDerivatives {
   const width = space.axes.length;
   const gradient = new Float64Array(width);
   const information = new Float64Array(width * width);
@@ -193,7 +202,11 @@ function newtonStep(
   if (free.length === 0) return null;
   const h = new Matrix(free.length, free.length);
   for (let i = 0; i < free.length; i++) {
-    for (let j = 0; j < free.length; j++) h.set(i, j, information[free[i]! * width + free[j]!]!);
+    // The lower triangle twice: the library insists on symmetry to the last bit.
+    for (let j = 0; j <= i; j++) {
+      h.set(i, j, information[free[i]! * width + free[j]!]!);
+      h.set(j, i, h.get(i, j));
+    }
     // A flat direction (no information) still gets a small positive curvature, so that the step stays finite.
     h.set(i, i, h.get(i, i) * (1 + damping) + 1e-10);
   }

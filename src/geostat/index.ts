@@ -1,3 +1,4 @@
+export { MAX_NODES, type ParameterNode, parameterNodes } from './averaging/nodes.js';
 export {
   type BlupWorkspace,
   createBlupWorkspace,
@@ -6,7 +7,6 @@ export {
   PLACES_PER_BLOCK,
   predictField,
 } from './blup.js';
-export { MAX_NODES, type ParameterNode, parameterNodes } from './averaging/nodes.js';
 export {
   COVARIANCE_FAMILIES,
   type CovarianceFamily,

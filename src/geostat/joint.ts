@@ -1,5 +1,5 @@
-import { type CovarianceFamily, correlationFunction } from './covariance/families.js';
 import type { FieldData, FieldSystem } from './blup.js';
+import { type CovarianceFamily, correlationFunction } from './covariance/families.js';
 import { distanceKm } from './positions.js';
 
 /**

@@ -197,7 +197,8 @@ export class FieldLikelihood {
     const family = this.#family;
     const correlation = this.#correlation;
     for (let i = 0; i < n; i++) {
-      for (let j = 0; j < i; j++) correlation[i * n + j] = family.correlation(distancesKm[i * n + j]! / rangeKm);
+      for (let j = 0; j < i; j++)
+        correlation[i * n + j] = family.correlation(distancesKm[i * n + j]! / rangeKm);
       correlation[i * n + i] = 1;
     }
     this.#correlationRangeKm = rangeKm;

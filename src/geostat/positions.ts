@@ -44,13 +44,7 @@ export function arcFromChordKm(chord: number): number {
 export type Metric = 'euclidean' | 'great-circle';
 
 /** Distance between position i of `a` and position j of `b`, both n × 3. */
-export function distanceKm(
-  a: Float64Array,
-  i: number,
-  b: Float64Array,
-  j: number,
-  metric: Metric,
-): number {
+export function distanceKm(a: Float64Array, i: number, b: Float64Array, j: number, metric: Metric): number {
   const dx = a[3 * i]! - b[3 * j]!;
   const dy = a[3 * i + 1]! - b[3 * j + 1]!;
   const dz = a[3 * i + 2]! - b[3 * j + 2]!;

@@ -85,10 +85,14 @@ function checkFixed(fixed: FixedParameters): void {
   for (const [key, valid, expected] of rules) {
     const value = fixed[key];
     if (value !== undefined && !(Number.isFinite(value) && valid(value))) {
-      throw new RainprintError('PARAMETER_OUT_OF_RANGE', `${key} is fixed at ${value}; it must be ${expected}`, {
-        parameter: key,
-        value,
-      });
+      throw new RainprintError(
+        'PARAMETER_OUT_OF_RANGE',
+        `${key} is fixed at ${value}; it must be ${expected}`,
+        {
+          parameter: key,
+          value,
+        },
+      );
     }
   }
 }
@@ -177,7 +181,9 @@ export function boundsReached(space: SearchSpace, x: ArrayLike<number>): string[
     if (axis.name === 'nuggetShare' && atLow) reached.push('nugget at 0');
     else if (axis.name === 'nuggetShare' && atHigh) reached.push('nugget takes nearly all of the variance');
     else if (atLow || atHigh) {
-      const what = { lnRange: 'range_km', lnTotal: 'sill + nugget', lnSill: 'sill', nuggetShare: '' }[axis.name];
+      const what = { lnRange: 'range_km', lnTotal: 'sill + nugget', lnSill: 'sill', nuggetShare: '' }[
+        axis.name
+      ];
       reached.push(`${what} at its ${atLow ? 'lower' : 'upper'} bound`);
     }
   });

@@ -1,3 +1,4 @@
+import { backTransform } from './axes.js';
 import type { FittedField, Isoscape, JointIsoscape } from './isoscape.js';
 import { type TermName, termLatitudeSlope } from './trend.js';
 
@@ -47,22 +48,8 @@ export function centreLatitudeDeg(isoscape: Isoscape): number {
   return lat.reduce((sum, value) => sum + value, 0) / lat.length;
 }
 
-/**
- * T = L·R(φ)ᵀ, row-major [t11, t12, t21, t22], with L the lower Cholesky factor of the whitening covariance and
- * R(φ) = [[cos φ, sin φ], [−sin φ, cos φ]]: (δ18O, δ2H)ᵀ = T·(along, across)ᵀ.
- */
-export function pairFromFields(isoscape: JointIsoscape): readonly [number, number, number, number] {
-  const [s11, s12, s22] = isoscape.whitening;
-  const l11 = Math.sqrt(s11);
-  const l21 = s12 / l11;
-  const l22 = Math.sqrt(s22 - l21 * l21);
-  const c = Math.cos(isoscape.turnRad);
-  const s = Math.sin(isoscape.turnRad);
-  return [l11 * c, -l11 * s, l21 * c + l22 * s, l22 * c - l21 * s];
-}
-
 export function axesSummary(isoscape: JointIsoscape): AxesSummary {
-  const [t11, t12, t21, t22] = pairFromFields(isoscape);
+  const [t11, t12, t21, t22] = backTransform(isoscape.whitening, isoscape.turnRad);
   const toDeg = 180 / Math.PI;
   return {
     alongSlope: t21 / t11,
@@ -87,7 +74,7 @@ function trendEffect(isoscape: Isoscape, slopeOf: (term: TermName) => number): I
   }
   const along = contrast(isoscape.along, slopes);
   const across = contrast(isoscape.across, slopes);
-  const [t11, t12, t21, t22] = pairFromFields(isoscape);
+  const [t11, t12, t21, t22] = backTransform(isoscape.whitening, isoscape.turnRad);
   const mapped = (a: number, b: number): Effect => ({
     value: a * along.value + b * across.value,
     se: Math.sqrt(a * a * along.variance + b * b * across.variance),

@@ -43,7 +43,12 @@ export function compressWeights(
 }
 
 /** Scores (J rows × count) on the leading principal components of the weighted, centred and scaled features. */
-function principalScores(weights: Float64Array, features: Float64Array, width: number, count: number): Matrix {
+function principalScores(
+  weights: Float64Array,
+  features: Float64Array,
+  width: number,
+  count: number,
+): Matrix {
   const points = weights.length;
   const scaled = new Matrix(points, width);
   for (let c = 0; c < width; c++) {

@@ -57,7 +57,16 @@ function probeFeatures(
   parameters.forEach((set, row) => {
     const system = new FieldSystem(geometry, family, set, errorVariance);
     const data = [system.solveData(z)];
-    predictField(system, probes.positionsKm, probes.trendRows, probes.count, data, [mean], variance, workspace);
+    predictField(
+      system,
+      probes.positionsKm,
+      probes.trendRows,
+      probes.count,
+      data,
+      [mean],
+      variance,
+      workspace,
+    );
     for (let k = 0; k < probes.count; k++) {
       features[row * width + k] = mean[k]!;
       features[row * width + probes.count + k] = variance[k]! + set.nugget + mean[k]! ** 2;

@@ -1,5 +1,5 @@
-import { FieldLikelihood } from '../likelihood.js';
 import type { FieldFit } from '../fit-field.js';
+import type { FieldLikelihood } from '../likelihood.js';
 import { parametersAt, type SearchSpace } from '../search-space.js';
 
 /** A point of the dense rule: coordinates in the search space and the share of the posterior it stands for. */
@@ -17,7 +17,15 @@ const COARSE = { range: 7, share: 5, scaleSpread: false } as const;
 /** First window about the optimum, in Laplace standard deviations, and when it is moved. */
 const WINDOW_SDS = 3;
 const EDGE_DENSITY = 1e-3;
-const MAX_WINDOW_MOVES = 6;
+const MAX_LINE_MOVES = 6;
+const MAX_WINDOW_MOVES = 3;
+/** Half width of the parabola through the scale: one posterior standard deviation, √(2/n), but no more than this. */
+const MAX_SCALE_STEP = 0.15;
+/** Parabolas tried while walking to the scale's conditional mode. */
+const MAX_SCALE_WALK = 12;
+
+/** Below this curvature of ln likelihood in the scale, the scale is unbounded for every practical purpose. */
+const FLAT_CURVATURE = 1e-3;
 
 interface AxisWindow {
   /** Index in the search space, or −1 where the parameter is fixed. */
@@ -54,14 +62,30 @@ export function posteriorGrid(
   const range = firstWindow(fit, 'lnRange', rule.range);
   const share = firstWindow(fit, 'nuggetShare', rule.share);
   const scaleAxis = space.axes.findIndex((axis) => axis.name === 'lnTotal' || axis.name === 'lnSill');
-  let cells = evaluateCells(likelihood, z, fit, range, share, scaleAxis);
-  for (let move = 0; move < MAX_WINDOW_MOVES; move++) {
-    const movedRange = adjustWindow(range, marginal(cells, range), space);
-    const movedShare = adjustWindow(share, marginal(cells, share), space);
-    if (!movedRange && !movedShare) break;
-    cells = evaluateCells(likelihood, z, fit, range, share, scaleAxis);
-  }
+  const scaleStep = Math.min(MAX_SCALE_STEP, Math.sqrt(2 / stationCount));
+  const evaluate = (r: AxisWindow, s: AxisWindow) =>
+    evaluateCells(likelihood, z, fit, r, s, scaleAxis, scaleStep);
+  // One axis at a time through the optimum first, which is cheap; then the whole, whose ridge may need more room.
+  const held: AxisWindow = { axis: -1, points: 1, low: 0, high: 0 };
+  moveUntilSettled([range], () => evaluate(range, held), space, MAX_LINE_MOVES);
+  moveUntilSettled([share], () => evaluate(held, share), space, MAX_LINE_MOVES);
+  const cells = moveUntilSettled([range, share], () => evaluate(range, share), space, MAX_WINDOW_MOVES);
   return toPoints(cells, scaleAxis, rule.scaleSpread, space);
+}
+
+function moveUntilSettled(
+  windows: readonly AxisWindow[],
+  evaluate: () => Cell[],
+  space: SearchSpace,
+  maxMoves: number,
+): Cell[] {
+  let cells = evaluate();
+  for (let move = 0; move < maxMoves; move++) {
+    const moved = windows.map((window) => adjustWindow(window, marginal(cells, window), space));
+    if (!moved.includes(true)) break;
+    cells = evaluate();
+  }
+  return cells;
 }
 
 function firstWindow(fit: FieldFit, name: 'lnRange' | 'nuggetShare', points: number): AxisWindow {
@@ -92,6 +116,7 @@ function evaluateCells(
   range: AxisWindow,
   share: AxisWindow,
   scaleAxis: number,
+  scaleStep: number,
 ): Cell[] {
   const cells: Cell[] = [];
   for (const r of range.axis < 0 ? [Number.NaN] : midpoints(range)) {
@@ -101,11 +126,15 @@ function evaluateCells(
       if (range.axis >= 0) x[range.axis] = r;
       if (share.axis >= 0) x[share.axis] = s;
       if (scaleAxis < 0) {
-        cells.push({ coordinates: x, logDensity: likelihood.evaluate(z, parametersAt(fit.space, x)), scaleSd: 0 });
+        cells.push({
+          coordinates: x,
+          logDensity: likelihood.evaluate(z, parametersAt(fit.space, x)),
+          scaleSd: 0,
+        });
         continue;
       }
       x[scaleAxis] = scale;
-      const cell = integrateScale(likelihood, z, fit.space, x, scaleAxis);
+      const cell = integrateScale(likelihood, z, fit.space, x, scaleAxis, scaleStep);
       cells.push(cell);
       if (Number.isFinite(cell.logDensity)) scale = cell.coordinates[scaleAxis]!;
     }
@@ -113,13 +142,9 @@ function evaluateCells(
   return cells;
 }
 
-/** Steps of the conditional search for the scale's mode. */
-const SCALE_STEP = 0.15;
-const MAX_SCALE_STEPS = 12;
-
 /**
  * Conditional mode of the scale by fitted parabolas, and Laplace's integral over it:
- * ln ∫ e^ℓ ≈ ℓ(mode) + ½ ln(2π/curvature).
+ * ln ∫ e^ℓ ≈ ℓ(mode) + ½ ln(2π/curvature); the constant is left out.
  */
 function integrateScale(
   likelihood: FieldLikelihood,
@@ -127,37 +152,37 @@ function integrateScale(
   space: SearchSpace,
   start: Float64Array,
   scaleAxis: number,
+  scaleStep: number,
 ): Cell {
   const axis = space.axes[scaleAxis]!;
+  const x = Float64Array.from(start);
   const at = (scale: number): number => {
-    const x = Float64Array.from(start);
     x[scaleAxis] = scale;
     return likelihood.evaluate(z, parametersAt(space, x));
   };
-  const clamp = (scale: number) =>
-    Math.min(axis.high - SCALE_STEP, Math.max(axis.low + SCALE_STEP, scale));
-  let mode = clamp(start[scaleAxis]!);
-  let value = at(mode);
-  let curvature = 0;
-  for (let step = 0; step < MAX_SCALE_STEPS; step++) {
-    const below = at(mode - SCALE_STEP);
-    const above = at(mode + SCALE_STEP);
-    const slope = (above - below) / (2 * SCALE_STEP);
-    curvature = -(above - 2 * value + below) / (SCALE_STEP * SCALE_STEP);
-    // Away from the mode the curve is no parabola: then walk uphill by a fixed step.
-    const wanted = curvature > 0 ? slope / curvature : Math.sign(slope);
-    const next = clamp(mode + Math.max(-1.5, Math.min(1.5, wanted)));
-    const moved = Math.abs(next - mode);
-    if (moved < 1e-12) break;
-    mode = next;
-    value = at(mode);
-    if (moved < SCALE_STEP) break;
+  const clamp = (scale: number) => Math.min(axis.high - scaleStep, Math.max(axis.low + scaleStep, scale));
+  let centre = clamp(start[scaleAxis]!);
+  let mode = centre;
+  let logPeak = Number.NEGATIVE_INFINITY;
+  let curvature = FLAT_CURVATURE;
+  for (let step = 0; step < MAX_SCALE_WALK; step++) {
+    const middle = at(centre);
+    const below = at(centre - scaleStep);
+    const above = at(centre + scaleStep);
+    const slope = (above - below) / (2 * scaleStep);
+    const bend = -(above - 2 * middle + below) / (scaleStep * scaleStep);
+    // Far from the mode the curve is no parabola: then walk uphill by a bounded step.
+    const wanted = bend > FLAT_CURVATURE ? slope / bend : Math.sign(slope);
+    mode = clamp(centre + Math.max(-1.5, Math.min(1.5, wanted)));
+    curvature = Math.max(bend, FLAT_CURVATURE);
+    const moved = mode - centre;
+    logPeak = middle + slope * moved - 0.5 * curvature * moved * moved;
+    if (Math.abs(moved) < scaleStep || !Number.isFinite(middle)) break;
+    centre = mode;
   }
-  const coordinates = Float64Array.from(start);
-  coordinates[scaleAxis] = mode;
-  if (!(curvature > 1e-3)) curvature = 1e-3;
+  x[scaleAxis] = mode;
   const scaleSd = 1 / Math.sqrt(curvature);
-  return { coordinates, logDensity: value + Math.log(scaleSd), scaleSd };
+  return { coordinates: x, logDensity: logPeak + Math.log(scaleSd), scaleSd };
 }
 
 /** Largest log density at each point of one axis. */

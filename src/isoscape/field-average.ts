@@ -1,0 +1,152 @@
+import {
+  createBlupWorkspace,
+  createGeometry,
+  type FieldData,
+  type FieldGeometry,
+  FieldSystem,
+  positionsOnSphereKm,
+  predictField,
+} from '../geostat/index.js';
+import type { FieldNode, FittedField, Isoscape } from './isoscape.js';
+import { trendMatrix } from './trend.js';
+
+/** Geometry of an isoscape's stations and trend. */
+export function isoscapeGeometry({ stations, terms }: Isoscape): FieldGeometry {
+  return createGeometry(
+    positionsOnSphereKm(stations.lonDeg, stations.latDeg),
+    trendMatrix(terms, stations.latDeg, stations.elevationM),
+    terms.length + 1,
+  );
+}
+
+/** The nodes predictions run over: those kept in the field, or its optimum alone. */
+export function nodesOf(field: FittedField, plugIn: boolean): readonly FieldNode[] {
+  return plugIn ? [{ ...field.parameters, weight: 1 }] : field.nodes;
+}
+
+interface PreparedNode {
+  readonly weight: number;
+  readonly nugget: number;
+  readonly system: FieldSystem;
+  /** The field's own data, and the other field's data under this field's covariance (for the turn's term). */
+  readonly own: FieldData;
+  readonly other: FieldData | null;
+}
+
+/**
+ * What one field says about places, averaged over its nodes: mean Σw û, signal variance Σw(v + (û − mean)²), the
+ * averaged nugget, and the other field's data kriged with this field's weights.
+ */
+export interface FieldAnswer {
+  readonly mean: Float64Array;
+  readonly variance: Float64Array;
+  readonly otherMean: Float64Array | null;
+}
+
+/** Memory (bytes) up to which all factorised nodes of a field are kept; beyond it each is rebuilt when needed. */
+const KEPT_NODES_BYTES = 256 * 2 ** 20;
+
+/** One field of an isoscape, ready to predict. */
+export class FieldAverage {
+  readonly #isoscape: Isoscape;
+  readonly #geometry: FieldGeometry;
+  readonly #field: FittedField;
+  readonly #otherValues: Float64Array | null;
+  readonly #nodes: readonly FieldNode[];
+  #kept: PreparedNode[] | null = null;
+  #summary: { coefficients: Float64Array; nugget: number } | null = null;
+
+  constructor(
+    isoscape: Isoscape,
+    geometry: FieldGeometry,
+    field: FittedField,
+    otherValues: Float64Array | null,
+    plugIn: boolean,
+  ) {
+    this.#isoscape = isoscape;
+    this.#geometry = geometry;
+    this.#field = field;
+    this.#otherValues = otherValues;
+    this.#nodes = nodesOf(field, plugIn);
+  }
+
+  /** Nugget averaged over the nodes: added to a signal variance for the target `site`. */
+  get nugget(): number {
+    return this.#nodes.reduce((sum, node) => sum + node.weight * node.nugget, 0);
+  }
+
+  /** GLS coefficients averaged over the nodes (p). */
+  get coefficients(): Float64Array {
+    if (this.#summary === null) {
+      const coefficients = new Float64Array(this.#geometry.p);
+      for (const node of this.preparedNodes()) {
+        for (let c = 0; c < coefficients.length; c++) {
+          coefficients[c]! += node.weight * node.own.coefficients[c]!;
+        }
+      }
+      this.#summary = { coefficients, nugget: this.nugget };
+    }
+    return this.#summary.coefficients;
+  }
+
+  /** Every node, factorised: kept where memory allows, else built one after the other. */
+  *preparedNodes(): Generator<PreparedNode> {
+    const bytes = this.#nodes.length * this.#geometry.n ** 2 * 8;
+    if (this.#kept !== null) {
+      yield* this.#kept;
+      return;
+    }
+    const kept: PreparedNode[] | null = bytes <= KEPT_NODES_BYTES ? [] : null;
+    for (const node of this.#nodes) {
+      const prepared = this.#prepare(node);
+      kept?.push(prepared);
+      yield prepared;
+    }
+    this.#kept = kept;
+  }
+
+  #prepare(node: FieldNode): PreparedNode {
+    const system = new FieldSystem(this.#geometry, this.#isoscape.family, node, this.#field.samplingVariance);
+    return {
+      weight: node.weight,
+      nugget: node.nugget,
+      system,
+      own: system.solveData(this.#field.values),
+      other: this.#otherValues === null ? null : system.solveData(this.#otherValues),
+    };
+  }
+
+  /**
+   * @param places    count × 3, km; @param trendRows count × p
+   */
+  predict(places: Float64Array, trendRows: Float64Array, count: number): FieldAnswer {
+    const column = () => new Float64Array(count);
+    const answer = { mean: column(), variance: column(), otherMean: this.#otherValues && column() };
+    const nodeMean = column();
+    const nodeOther = column();
+    const nodeVariance = column();
+    // Spread of the node means about the first one, so that no digits cancel.
+    const first = column();
+    const square = column();
+    const workspace = createBlupWorkspace(this.#geometry.n, this.#geometry.p);
+    let isFirst = true;
+    for (const { weight, system, own, other } of this.preparedNodes()) {
+      const data = other === null ? [own] : [own, other];
+      predictField(system, places, trendRows, count, data, [nodeMean, nodeOther], nodeVariance, workspace);
+      if (isFirst) first.set(nodeMean);
+      isFirst = false;
+      for (let j = 0; j < count; j++) {
+        const shifted = nodeMean[j]! - first[j]!;
+        answer.mean[j]! += weight * shifted;
+        square[j]! += weight * shifted * shifted;
+        answer.variance[j]! += weight * nodeVariance[j]!;
+        if (answer.otherMean !== null) answer.otherMean[j]! += weight * nodeOther[j]!;
+      }
+    }
+    for (let j = 0; j < count; j++) {
+      answer.variance[j]! += Math.max(0, square[j]! - answer.mean[j]! ** 2);
+      answer.mean[j]! += first[j]!;
+    }
+    return answer;
+  }
+}

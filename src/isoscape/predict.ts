@@ -1,0 +1,140 @@
+import { positionsOnSphereKm } from '../geostat/index.js';
+import { backTransform, type Matrix2, pairCovariance } from './axes.js';
+import { FieldAverage, isoscapeGeometry } from './field-average.js';
+import type { Isoscape } from './isoscape.js';
+import type { Places, Predictions } from './places.js';
+import { trendMatrix } from './trend.js';
+
+/** `site`: a new place, micro-scale variation included; `field`: the smooth surface. */
+export type Target = 'site' | 'field';
+
+export interface PredictOptions {
+  readonly target?: Target;
+  /** Take the fitted covariance parameters and turn for known (for comparison with other programs). */
+  readonly plugIn?: boolean;
+}
+
+/** The fields of an isoscape, ready to predict, and the way back to the isotopes. */
+export interface PreparedIsoscape {
+  readonly fields: readonly FieldAverage[];
+  /** T for a pair, null for one isotope. */
+  readonly back: Matrix2 | null;
+  readonly turnVarianceRad2: number;
+  /** Index of elevation among the trend columns, −1 where it is no term. */
+  readonly elevationColumn: number;
+}
+
+const prepared = new WeakMap<Isoscape, { averaged?: PreparedIsoscape; plugIn?: PreparedIsoscape }>();
+
+/** Factorised fields of an isoscape; built on first use and kept as long as the isoscape is. */
+export function prepareIsoscape(isoscape: Isoscape, plugIn: boolean): PreparedIsoscape {
+  const slot = prepared.get(isoscape) ?? {};
+  prepared.set(isoscape, slot);
+  const key = plugIn ? 'plugIn' : 'averaged';
+  slot[key] ??= build(isoscape, plugIn);
+  return slot[key];
+}
+
+function build(isoscape: Isoscape, plugIn: boolean): PreparedIsoscape {
+  const geometry = isoscapeGeometry(isoscape);
+  const elevationIndex = isoscape.terms.indexOf('elevation');
+  const elevationColumn = elevationIndex < 0 ? -1 : elevationIndex + 1;
+  if (isoscape.isotopes !== 'both') {
+    const field = new FieldAverage(isoscape, geometry, isoscape.field, null, plugIn);
+    return { fields: [field], back: null, turnVarianceRad2: 0, elevationColumn };
+  }
+  const { along, across, turnVarianceRad2, whitening, turnRad } = isoscape;
+  const needOther = !plugIn && turnVarianceRad2 > 0;
+  return {
+    fields: [
+      new FieldAverage(isoscape, geometry, along, needOther ? across.values : null, plugIn),
+      new FieldAverage(isoscape, geometry, across, needOther ? along.values : null, plugIn),
+    ],
+    back: backTransform(whitening, turnRad),
+    turnVarianceRad2: needOther ? turnVarianceRad2 : 0,
+    elevationColumn,
+  };
+}
+
+/**
+ * Predicts rain at places: means, variances and the covariance of the isotopes in ‰ and ‰².
+ *
+ * Parameters are averaged over the isoscape's nodes and the turn's uncertainty is added, unless `plugIn`. An error
+ * of variance s² in a place's elevation adds s²(Tβ_e)(Tβ_e)ᵀ.
+ *
+ * @param out  caller-owned columns of at least `places.count` elements, written
+ */
+export function predictPlaces(
+  isoscape: Isoscape,
+  places: Places,
+  out: Predictions,
+  options: PredictOptions = {},
+): void {
+  const ready = prepareIsoscape(isoscape, options.plugIn ?? false);
+  const count = places.count;
+  const positions = positionsOnSphereKm(places.lonDeg.subarray(0, count), places.latDeg.subarray(0, count));
+  const rows = trendMatrix(isoscape.terms, places.latDeg.subarray(0, count), places.elevationM);
+  const answers = ready.fields.map((field) => field.predict(positions, rows, count));
+  const nuggets = ready.fields.map((field) => ((options.target ?? 'site') === 'site' ? field.nugget : 0));
+  const slopes = elevationSlopes(ready);
+  if (isoscape.isotopes !== 'both') {
+    const [answer] = answers;
+    const mean = isoscape.isotopes === 'd18O' ? out.d18O : out.d2H;
+    const variance = isoscape.isotopes === 'd18O' ? out.varD18O : out.varD2H;
+    for (let j = 0; j < count; j++) {
+      mean[j] = answer!.mean[j]!;
+      variance[j] = answer!.variance[j]! + nuggets[0]! + places.elevationVarM2[j]! * slopes[0]! ** 2;
+    }
+    return;
+  }
+  const back = ready.back!;
+  const [along, across] = answers;
+  for (let j = 0; j < count; j++) {
+    const u1 = along!.mean[j]!;
+    const u2 = across!.mean[j]!;
+    out.d18O[j] = back[0] * u1 + back[1] * u2;
+    out.d2H[j] = back[2] * u1 + back[3] * u2;
+    let [varO, cov, varH] = pairCovariance(
+      back,
+      along!.variance[j]! + nuggets[0]!,
+      across!.variance[j]! + nuggets[1]!,
+    );
+    const shared = [
+      turnError(ready, u1, u2, along!.otherMean?.[j] ?? u2, across!.otherMean?.[j] ?? u1),
+      scaled(back, slopes[0]!, slopes[1]!, Math.sqrt(places.elevationVarM2[j]!)),
+    ];
+    for (const [eO, eH] of shared) {
+      varO += eO * eO;
+      cov += eO * eH;
+      varH += eH * eH;
+    }
+    out.varD18O[j] = varO;
+    out.cov[j] = cov;
+    out.varD2H[j] = varH;
+  }
+}
+
+/** Averaged elevation coefficients of the fields, per metre; 0 where elevation is no term. */
+export function elevationSlopes(ready: PreparedIsoscape): number[] {
+  return ready.fields.map((field) =>
+    ready.elevationColumn < 0 ? 0 : field.coefficients[ready.elevationColumn]! / 1000,
+  );
+}
+
+/**
+ * One standard deviation of the turn as an error of the pair: √Var(φ̂)·T(û_{2|1} − û₂, û₁ − û_{1|2})ᵀ, with û_{2|1}
+ * the across data kriged with the along field's weights and û_{1|2} the reverse.
+ */
+export function turnError(
+  ready: PreparedIsoscape,
+  u1: number,
+  u2: number,
+  acrossWithAlong: number,
+  alongWithAcross: number,
+): readonly [number, number] {
+  return scaled(ready.back!, acrossWithAlong - u2, u1 - alongWithAcross, Math.sqrt(ready.turnVarianceRad2));
+}
+
+function scaled(t: Matrix2, a: number, b: number, factor: number): readonly [number, number] {
+  return [factor * (t[0] * a + t[1] * b), factor * (t[2] * a + t[3] * b)];
+}

@@ -1,0 +1,58 @@
+import { RainprintError } from '../errors.js';
+import { isMissing, type Network, type StationMean } from '../stations/network.js';
+import type { StationColumns } from './isoscape.js';
+
+/**
+ * Columns of the stations in a canonical order (latitude, elevation, values, longitude, id), so that the order of
+ * the table changes neither the id nor a single bit of the result.
+ * @throws ISOTOPE_MISSING for a station without a chosen isotope (a fault of the caller: networks list them apart)
+ */
+export function stationColumns(network: Network): StationColumns {
+  const stations = [...network.stations].sort(compareStations);
+  for (const station of stations) {
+    const wanted = network.isotopes === 'both' ? (['d18O', 'd2H'] as const) : [network.isotopes];
+    const missing = wanted.find((isotope) => isMissing(station[isotope]));
+    if (missing !== undefined) {
+      throw new RainprintError('ISOTOPE_MISSING', `station "${station.id}" has no ${missing}`, {
+        station: station.id,
+        isotope: missing,
+      });
+    }
+  }
+  const column = (pick: (station: StationMean) => number) => Float64Array.from(stations, pick);
+  return {
+    id: stations.map((station) => station.id),
+    name: stations.map((station) => station.name),
+    lonDeg: column((station) => station.lonDeg),
+    latDeg: column((station) => station.latDeg),
+    elevationM: column((station) => station.elevationM),
+    d18O: column((station) => (network.isotopes === 'd2H' ? Number.NaN : station.d18O)),
+    d2H: column((station) => (network.isotopes === 'd18O' ? Number.NaN : station.d2H)),
+    effectiveRecords: column((station) => station.effectiveRecords),
+  };
+}
+
+function compareStations(a: StationMean, b: StationMean): number {
+  const keys = ['latDeg', 'elevationM', 'd18O', 'd2H', 'lonDeg'] as const;
+  for (const key of keys) {
+    const difference = a[key] - b[key];
+    if (difference < 0 || difference > 0) return difference;
+  }
+  return a.id < b.id ? -1 : a.id > b.id ? 1 : 0;
+}
+
+/** The stations at some indices, in the order given. */
+export function selectStations(columns: StationColumns, indices: ArrayLike<number>): StationColumns {
+  const at = Array.from(indices);
+  const pick = (values: Float64Array) => Float64Array.from(at, (i) => values[i]!);
+  return {
+    id: at.map((i) => columns.id[i]!),
+    name: at.map((i) => columns.name[i]!),
+    lonDeg: pick(columns.lonDeg),
+    latDeg: pick(columns.latDeg),
+    elevationM: pick(columns.elevationM),
+    d18O: pick(columns.d18O),
+    d2H: pick(columns.d2H),
+    effectiveRecords: pick(columns.effectiveRecords),
+  };
+}
