@@ -28,8 +28,9 @@ export function gdalMetadataXml(
   return lines.join('\n');
 }
 
+/** GDAL's GeoTIFF driver undoes escapes twice, and escapes `&` twice when it writes: so do we. */
 const XML_ESCAPES: Readonly<Record<string, string>> = {
-  '&': '&amp;',
+  '&': '&amp;amp;',
   '<': '&lt;',
   '>': '&gt;',
   '"': '&quot;',
