@@ -4,10 +4,10 @@ import { RainprintError } from '../errors.js';
 import {
   type CheckReport,
   type IsotopeChoice,
+  type IssueSink,
   type Network,
   type ReadNetworkOptions,
   readNetwork,
-  type StationIssue,
 } from '../stations/index.js';
 import type { CliContext } from './context.js';
 import { openInput } from './input-file.js';
@@ -67,7 +67,7 @@ export async function readStationFile(
   path: string,
   flags: StationFlags,
   context: CliContext,
-  onIssue?: (issue: StationIssue) => void,
+  onIssue?: IssueSink,
 ): Promise<{ network: Network; report: CheckReport }> {
   const options = readStationFlags(flags);
   const source = await openInput(path);

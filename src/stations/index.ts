@@ -1,7 +1,7 @@
 export { type AmountWeightedMeans, amountWeightedMeans, yearCoverage } from './amount-weighted.js';
 export * from './bounds.js';
 export { parseDate, parseMonth, parseYear, type RecordDate } from './calendar.js';
-export { KEPT_PER_REASON, type ReasonSummary } from './issue-log.js';
+export { type IssueSink, KEPT_PER_REASON, type ReasonSummary } from './issue-log.js';
 export * from './network.js';
 export type { ReadNetworkOptions } from './options.js';
 export { type PooledWithin, poolWithin } from './pooled-within.js';

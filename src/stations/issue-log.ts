@@ -13,13 +13,19 @@ export interface ReasonSummary {
   readonly first: readonly StationIssue[];
 }
 
+/** Takes issues one by one; a promise asks the reader to wait. */
+export type IssueSink = (issue: StationIssue) => void | Promise<void>;
+
 /** Collects issues in bounded memory. */
 export class IssueLog {
   readonly #tallies = new Map<IssueReason, { leftOut: number; flagged: number; first: StationIssue[] }>();
   leftOut = 0;
   flagged = 0;
 
-  constructor(private readonly sink: ((issue: StationIssue) => void) | undefined) {}
+  /** What the sink is still busy with; whoever reads rows waits for it, so that nothing piles up. */
+  pending: Promise<void> | null = null;
+
+  constructor(private readonly sink: IssueSink | undefined) {}
 
   /** Adds an issue; severity is the reason's own unless given. */
   add(
@@ -52,7 +58,15 @@ export class IssueLog {
       this.flagged++;
     }
     if (tally.first.length < KEPT_PER_REASON) tally.first.push(issue);
-    this.sink?.(issue);
+    const busy = this.sink?.(issue);
+    if (busy instanceof Promise) this.pending = busy;
+  }
+
+  /** Waits until the sink can take more. */
+  async settle(): Promise<void> {
+    const busy = this.pending;
+    this.pending = null;
+    await busy;
   }
 
   count(reasonCode: IssueReason): number {

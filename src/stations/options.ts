@@ -1,7 +1,7 @@
 import { z } from 'zod';
 import { RainprintError } from '../errors.js';
+import type { IssueSink } from './issue-log.js';
 import type { IsotopeChoice, Season } from './network.js';
-import type { StationIssue } from './reasons.js';
 import { parseSeason, parseYears, WHOLE_YEAR, type YearRange } from './season.js';
 
 export interface ReadNetworkOptions {
@@ -24,8 +24,8 @@ export interface ReadNetworkOptions {
   readonly withinCorrelation?: number;
   /** Longest line in bytes (default 1 MiB). */
   readonly maxLineBytes?: number;
-  /** Called for every issue as it is found; the report keeps the first 50 of each reason. */
-  readonly onIssue?: (issue: StationIssue) => void;
+  /** Called for every issue as it is found (a promise makes the reading wait); the report keeps the first 50 of each reason. */
+  readonly onIssue?: IssueSink;
 }
 
 /** Options checked and with their defaults. */
@@ -60,7 +60,7 @@ const Options = z.strictObject({
     .min(100)
     .max(1 << 30)
     .optional(),
-  onIssue: z.custom<(issue: StationIssue) => void>((value) => typeof value === 'function').optional(),
+  onIssue: z.custom<IssueSink>((value) => typeof value === 'function').optional(),
 });
 
 /** @throws OPTION_INVALID, SEASON_INVALID, YEARS_INVALID */

@@ -10,7 +10,7 @@ import { type CheckReport, MIN_STATIONS, summarizeWithin } from './report.js';
 import { noRows, type RowCounts } from './row-counts.js';
 import { type Sampling, samplingOfMeans, samplingOfRecords } from './sampling.js';
 import { type CheckedColumns, type JudgedStations, StationJudge } from './station-checks.js';
-import { RowReader } from './station-row.js';
+import { RowReader, type StationRow } from './station-row.js';
 import { StationState } from './station-state.js';
 import { STATION_PLACE, STATION_VOCABULARY, type StationMeaning } from './station-vocabulary.js';
 import { DELIMITER_NAMES, openTable, requireColumn, type Table } from './table/index.js';
@@ -46,6 +46,7 @@ export async function readNetwork(
       : samplingOfMeans(judged.used, settings.isotopes, settings.withinCorrelation, log);
   const network = networkOf(reading, judged, sampling);
   flagSuspiciousCoordinates(network.stations, columns, log);
+  await log.settle();
   return { network, report: reportOf(network, reading, table, sampling, log) };
 }
 
@@ -93,21 +94,21 @@ async function readRows(
     if (onProgress !== undefined && counts.rows % ROWS_PER_PROGRESS === 0)
       onProgress(counts.rows, table.bytesRead());
     const row = reader.read(raw);
-    if (row === null) {
-      counts.leftOut++;
-      continue;
-    }
-    let station = stations.get(row.id);
-    if (station === undefined) {
-      station = new StationState(row);
-      stations.set(row.id, station);
-    }
-    counts[book.add(row, station)]++;
+    counts[row === null ? 'leftOut' : book.add(row, stationOf(row, stations))]++;
+    if (log.pending !== null) await log.settle();
   }
   onProgress?.(counts.rows, table.bytesRead());
   if (!(book instanceof MeansBook)) return { layout, settings, stations, counts };
   book.end();
   return { layout, settings: { ...settings, season: book.season }, stations, counts };
+}
+
+function stationOf(row: StationRow, stations: Map<string, StationState>): StationState {
+  const known = stations.get(row.id);
+  if (known !== undefined) return known;
+  const station = new StationState(row);
+  stations.set(row.id, station);
+  return station;
 }
 
 function candidatesOf({ layout, stations, settings }: Reading): Candidate[] {
