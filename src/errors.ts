@@ -12,6 +12,9 @@ export const ERROR_CODES = {
   FILE_NOT_WRITABLE: 'fault',
   OUTPUT_IS_INPUT: 'input',
   OUTPUT_PATH_INVALID: 'input',
+  FIX_INVALID: 'input',
+  SITES_WITH_PROBLEMS: 'input',
+  JOINT_TOO_MANY_SITES: 'input',
   INTERNAL: 'fault',
   // geostat, kernels
   MATRIX_NOT_POSITIVE_DEFINITE: 'input',

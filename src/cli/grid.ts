@@ -130,6 +130,6 @@ function provenance(
     elevation_source: elevationSource,
     tool_version: toolVersion,
     caution:
-      'Predictions lean on the stations: far from them, or beyond their elevations and latitudes, the standard errors are a model's word only.',
+      "Predictions lean on the stations: far from them, or beyond their elevations and latitudes, the standard errors are a model's word only.",
   };
 }

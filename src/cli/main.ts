@@ -1,6 +1,10 @@
 import { Command } from 'commander';
+import { registerCheck } from './check.js';
 import { type CliContext, createContext } from './context.js';
 import { reportFailure } from './failure.js';
+import { registerFit } from './fit.js';
+import { registerGrid } from './grid.js';
+import { registerSites } from './sites.js';
 
 /**
  * Runs one call of the command line and returns its exit code: 0 done, 2 the input or the call is wrong,
@@ -32,6 +36,7 @@ export function createProgram(context: CliContext): Command {
       outputError: () => {}, // said once, with its code, in reportFailure
     })
     .showSuggestionAfterError(true);
+  for (const register of [registerCheck, registerFit, registerSites, registerGrid]) register(program, context);
   return program;
 }
 

@@ -15,7 +15,8 @@ export interface OutputFile {
 }
 
 const unfinished = new Set<string>();
-process.on('exit', () => {
+
+function removeUnfinished(): void {
   for (const path of unfinished) {
     try {
       unlinkSync(path);
@@ -23,7 +24,29 @@ process.on('exit', () => {
       // already gone
     }
   }
-});
+}
+
+/** A shell's own codes for a command stopped by a signal: 128 + the signal's number (POSIX). */
+const SIGNAL_EXITS = { SIGINT: 130, SIGTERM: 143 } as const;
+
+function stopCleanly(signal: NodeJS.Signals): void {
+  process.exit(SIGNAL_EXITS[signal as keyof typeof SIGNAL_EXITS]);
+}
+
+/** While a file is unfinished, an interrupted run takes it away. */
+function track(path: string): void {
+  if (unfinished.size === 0) {
+    process.on('exit', removeUnfinished);
+    for (const signal of Object.keys(SIGNAL_EXITS)) process.on(signal, stopCleanly);
+  }
+  unfinished.add(path);
+}
+
+function untrack(path: string): void {
+  if (!unfinished.delete(path) || unfinished.size > 0) return;
+  process.off('exit', removeUnfinished);
+  for (const signal of Object.keys(SIGNAL_EXITS)) process.off(signal, stopCleanly);
+}
 
 /**
  * Opens `path` for writing. OUTPUT_IS_INPUT where it is one of `inputs`, OUTPUT_PATH_INVALID where it is a folder or
@@ -34,7 +57,7 @@ export async function openOutput(path: string, inputs: readonly string[] = []): 
   const target = await realTarget(path);
   const partPath = target.replaceable ? partBeside(target.path) : target.path;
   const handle = await guarded(path, () => open(partPath, target.replaceable ? 'wx' : 'w'));
-  if (target.replaceable) unfinished.add(partPath);
+  if (target.replaceable) track(partPath);
   return new PartFile(path, target.path, partPath, handle);
 }
 
@@ -75,7 +98,7 @@ class PartFile implements OutputFile {
       await guarded(this.path, () => rename(this.partPath, this.targetPath));
     }
     this.#open = false;
-    unfinished.delete(this.partPath);
+    untrack(this.partPath);
     return this.#hash.digest('hex');
   }
 
@@ -84,7 +107,7 @@ class PartFile implements OutputFile {
     this.#open = false;
     await this.handle.close().catch(() => {});
     if (this.partPath === this.targetPath) return;
-    unfinished.delete(this.partPath);
+    untrack(this.partPath);
     await unlink(this.partPath).catch(() => {});
   }
 }

@@ -18,7 +18,7 @@ export interface BlockedPredictions {
  * to all others. Variances are those of the observed station mean: the site's, with the held-out station's own
  * known sampling covariance added. Where a fold cannot be refitted its stations stay NaN and its record says why.
  *
- * S stays the one pooled over all stations, and family and terms those chosen on all of them.
+ * S and κ stay those of all stations, as do family and terms.
  */
 export function predictBlocked(
   isoscape: Isoscape,
@@ -71,7 +71,7 @@ function predictHeldOut(
   const there = createPredictions(heldOut.length);
   predictPlaces(refitted, places, there, { target: 'site', plugIn });
   heldOut.forEach((station, at) => {
-    const [varD18O, cov, varD2H] = samplingCovariance(isoscape, refitted.samplingScale, station);
+    const [varD18O, cov, varD2H] = samplingCovariance(isoscape, station);
     out.d18O[station] = there.d18O[at]!;
     out.d2H[station] = there.d2H[at]!;
     out.varD18O[station] = there.varD18O[at]! + varD18O;
@@ -81,16 +81,15 @@ function predictHeldOut(
 }
 
 /**
- * Known sampling covariance κS/m_i of a station's mean, ‰², with the κ given; zeros where sampling is unknown
- * (then it sits in the nugget). The fields hold κ/m_i (one isotope: κS/m_i) with the isoscape's own κ.
+ * Known sampling covariance κS/m_i of a station's mean, ‰²; zeros where sampling is unknown (then it sits in the
+ * nugget). The fields hold κ/m_i, or κS/m_i for one isotope; a refit keeps κ.
  */
-function samplingCovariance(isoscape: Isoscape, scale: number, station: number): [number, number, number] {
-  const rescaled = isoscape.samplingScale > 0 ? scale / isoscape.samplingScale : 0;
+function samplingCovariance(isoscape: Isoscape, station: number): [number, number, number] {
   if (isoscape.isotopes === 'both') {
-    const share = isoscape.along.samplingVariance[station]! * rescaled;
+    const share = isoscape.along.samplingVariance[station]!;
     const [varD18O, cov, varD2H] = isoscape.whitening;
     return [varD18O * share, cov * share, varD2H * share];
   }
-  const variance = isoscape.field.samplingVariance[station]! * rescaled;
+  const variance = isoscape.field.samplingVariance[station]!;
   return isoscape.isotopes === 'd18O' ? [variance, 0, 0] : [0, 0, variance];
 }

@@ -82,6 +82,17 @@ export function validateIsoscape(
   };
 }
 
+/** The leave-one-out half of `validateIsoscape` alone: closed-form, so it costs no refitting. */
+export function validateLeaveOneOut(
+  isoscape: Isoscape,
+  options: Pick<ValidateOptions, 'level' | 'plugIn'> = {},
+): SchemeResult {
+  const level = checkedLevel(options.level ?? 0.9);
+  const predictions = leaveOneOut(isoscape, { plugIn: options.plugIn ?? false });
+  const each = stationsWhere(isoscape.stations.id.length, () => true).map((i) => [i]);
+  return scoreScheme(isoscape, 'leave-one-out', predictions, each, createBench(isoscape), level);
+}
+
 function checkedLevel(level: number): number {
   if (level > 0 && level < 1) return level;
   throw new RainprintError(
@@ -202,20 +213,17 @@ function outlyingStations(isoscape: Isoscape, scheme: SchemeResult): OutlyingSta
 
 function validationNotes(isoscape: Isoscape, folds: readonly FoldRecord[]): string[] {
   const notes = [
-    'Leave-one-out holds the covariance parameters, fitted to all stations, and so is slightly optimistic; ' +
-      'blocked folds refit them, and ask more of the model than a site near stations does.',
+    'leave-one-out holds the covariance parameters, fitted to all stations, and so is slightly optimistic; ' +
+      'blocked folds refit them, and ask more of the model than a site near stations does',
   ];
   if (isoscape.familyChosen === 'auto' || isoscape.termsChosen === 'auto') {
-    notes.push('Family and terms were chosen on all stations and stay the same in every fold.');
-  }
-  if (isoscape.sampling.kind === 'none') {
-    notes.push('No sampling error is known for this network: it is part of the nugget, in the scores too.');
+    notes.push('family and terms were chosen on all stations and stay the same in every fold');
   }
   for (const { fold, heldOutCount, failure } of folds) {
     if (failure === null) continue;
     notes.push(
-      `Fold ${fold + 1} could not be refitted (${failure.code}: ${failure.message}); its ${heldOutCount} stations ` +
-        'are left out of the blocked scores of every method.',
+      `fold ${fold + 1} could not be refitted (${failure.code}: ${failure.message}); its ${heldOutCount} stations ` +
+        'are left out of the blocked scores of every predictor',
     );
   }
   return notes;

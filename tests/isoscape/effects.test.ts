@@ -1,10 +1,10 @@
 import { describe, expect, it } from 'vitest';
+import { backTransform } from '../../src/isoscape/axes.js';
 import {
   axesSummary,
   centreLatitudeDeg,
   elevationEffect,
   latitudeEffect,
-  pairFromFields,
 } from '../../src/isoscape/effects.js';
 import type { FittedField, Isoscape, JointIsoscape, SingleIsoscape } from '../../src/isoscape/isoscape.js';
 
@@ -32,7 +32,7 @@ const joint = {
 
 describe('effects of a joint isoscape', () => {
   it('turns the whitened axes: T·Tᵀ is the whitening covariance whatever the turn is', () => {
-    const [a, b, c, d] = pairFromFields(joint);
+    const [a, b, c, d] = backTransform(joint.whitening, joint.turnRad);
     expect(a * a + b * b).toBeCloseTo(4, 12);
     expect(a * c + b * d).toBeCloseTo(28, 12);
     expect(c * c + d * d).toBeCloseTo(212, 12);
@@ -43,7 +43,7 @@ describe('effects of a joint isoscape', () => {
 
   it('maps the elevation coefficients of both fields to ‰ per 100 m with independent errors', () => {
     const effect = elevationEffect(joint)!;
-    const [a, b, c, d] = pairFromFields(joint);
+    const [a, b, c, d] = backTransform(joint.whitening, joint.turnRad);
     expect(effect.d18O!.value).toBeCloseTo(0.1 * (a * -0.5 + b * 0.25), 12);
     expect(effect.d2H!.se).toBeCloseTo(0.1 * Math.sqrt(c * c * 0.01 + d * d * 0.04), 12);
     expect(effect.dexcess!.value).toBeCloseTo(effect.d2H!.value - 8 * effect.d18O!.value, 12);
@@ -53,7 +53,7 @@ describe('effects of a joint isoscape', () => {
 
   it('gives the latitude effect as the slope of the zonal terms at that latitude', () => {
     const effect = latitudeEffect(joint, 30)!;
-    const [a, b] = pairFromFields(joint);
+    const [a, b] = backTransform(joint.whitening, joint.turnRad);
     const slope = (Math.cos(Math.PI / 6) * Math.PI) / 180; // d sin(lat)/d lat, per degree
     expect(effect.d18O!.value).toBeCloseTo(slope * (a * 2 + b * 1), 12);
     expect(effect.d18O!.se).toBeCloseTo(slope * Math.sqrt(a * a * 0.04 + b * b * 0.09), 12);
@@ -71,7 +71,7 @@ describe('effects of a joint isoscape', () => {
 
   it('describes the axes', () => {
     const axes = axesSummary(joint);
-    const [a, b, c, d] = pairFromFields(joint);
+    const [a, b, c, d] = backTransform(joint.whitening, joint.turnRad);
     expect(axes.alongSlope).toBeCloseTo(c / a, 12);
     expect(axes.acrossSlope).toBeCloseTo(d / b, 12);
     expect(axes.withinSlope).toBe(7);

@@ -1,0 +1,102 @@
+import type { Command } from 'commander';
+import { fitIsoscape, type Isoscape, writeIsoscape } from '../isoscape/index.js';
+import { validateLeaveOneOut } from '../isoscape/validate.js';
+import type { CheckReport, Network } from '../stations/index.js';
+import type { CliContext } from './context.js';
+import { fitJson } from './fit/fit-json.js';
+import { parseFamily, parseFixes, parseSamplingScale, parseTermsOption } from './fit/fit-options.js';
+import { fitReport } from './fit/fit-report.js';
+import { SUMMARY_LEVEL, summariseFit } from './fit/fit-summary.js';
+import { openOutput } from './output-file.js';
+import { createProgress } from './progress.js';
+import { collected } from './repeated-options.js';
+import {
+  addStationOptions,
+  readStationFile,
+  readStationFlags,
+  type StationFlags,
+} from './station-options.js';
+import { writeText } from './stream-write.js';
+
+interface FitFlags extends StationFlags {
+  readonly output: string;
+  readonly family: string;
+  readonly terms: string;
+  readonly fix: readonly string[];
+  readonly samplingScale: string;
+  readonly json?: true;
+}
+
+const HELP = `
+Parameters are held at a value with --fix FIELD.PARAMETER=NUMBER, several times if need be:
+  fields along and across (with --isotope d18O or d2H: that one), parameters range_km, sill,
+  nugget (whitened units for along and across, per mil squared for one isotope); --fix turn=DEGREES
+
+Examples:
+  rainprint fit stations.csv -o isoscape.json
+  rainprint fit stations.csv -o summer.json --season 10-3 --terms zonal1,elevation --family matern32
+  rainprint fit stations.csv -o d18O.json --isotope d18O --fix d18O.range_km=600 --fix d18O.sill=2.2`;
+
+/** `rainprint fit`: an isoscape from a station table, and a short table about it. */
+export function registerFit(program: Command, context: CliContext): void {
+  const command = program
+    .command('fit')
+    .description('fit an isoscape to a station table')
+    .argument('<stations>', 'station table (CSV or GeoJSON points): one row a station or one row a record')
+    .requiredOption('-o, --output <file>', 'write the isoscape (JSON) here');
+  addStationOptions(command)
+    .option('--family <family>', 'auto, exponential, matern32, matern52 or spherical', 'auto')
+    .option('--terms <terms>', 'trend: auto, none, or terms such as zonal1,zonal2,elevation', 'auto')
+    .option('--fix <field.parameter=number>', 'hold a parameter at a value (may be repeated)', collected, [])
+    .option('--sampling-scale <scale>', 'factor on the sampling variances: a number in (0, 1], or fit', '1')
+    .option('--json', 'print the closing table as JSON')
+    .addHelpText('after', HELP)
+    .action((stationsPath: string, flags: FitFlags) => runFit(stationsPath, flags, context));
+}
+
+async function runFit(stationsPath: string, flags: FitFlags, context: CliContext): Promise<void> {
+  const isotopes = readStationFlags(flags).isotopes ?? 'both';
+  const options = {
+    family: parseFamily(flags.family),
+    terms: parseTermsOption(flags.terms),
+    samplingScale: parseSamplingScale(flags.samplingScale),
+    fix: parseFixes(flags.fix, isotopes),
+    toolVersion: context.toolVersion,
+  };
+  const output = await openOutput(flags.output, [stationsPath]);
+  try {
+    const { network, report } = await readStationFile(stationsPath, flags, context);
+    sayLeftOut(report, stationsPath, context);
+    const isoscape = fitWithProgress(network, options, context);
+    const summary = summariseFit(isoscape, validateLeaveOneOut(isoscape, { level: SUMMARY_LEVEL }));
+    await output.write(writeIsoscape(isoscape));
+    await output.commit();
+    await writeText(context.stdout, flags.json ? fitJson(summary) : fitReport(summary));
+  } finally {
+    await output.abort();
+  }
+}
+
+function fitWithProgress(
+  network: Network,
+  options: Parameters<typeof fitIsoscape>[1],
+  context: CliContext,
+): Isoscape {
+  const progress = createProgress(context, 'fitting');
+  try {
+    return fitIsoscape(network, options, ({ stage, done, total }) => progress.update(done, total, stage));
+  } finally {
+    progress.end();
+  }
+}
+
+/** What was left out is said before the fit, so that it is said too where the fit fails for want of stations. */
+function sayLeftOut(report: CheckReport, path: string, context: CliContext): void {
+  const say = (text: string) => context.stderr.write(`rainprint: note: ${text}\n`);
+  const reasons = report.reasons.filter(({ leftOut }) => leftOut > 0);
+  if (reasons.length > 0) {
+    const list = reasons.map(({ reasonCode, leftOut }) => `${reasonCode} ${leftOut}`).join(', ');
+    say(`rows or stations left out: ${list}; see them with: rainprint check ${path}`);
+  }
+  for (const warning of report.warnings) say(warning);
+}

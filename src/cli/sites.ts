@@ -1,0 +1,47 @@
+import type { Command } from 'commander';
+import type { CliContext } from './context.js';
+import { collected, columnOverrides } from './repeated-options.js';
+import { runSites } from './sites/run-sites.js';
+import { readSitesOptions, type SitesFlags } from './sites/sites-options.js';
+
+const HELP = `
+The table (CSV or GeoJSON points) keeps its columns, and these are added behind them:
+  d18O, d18O_se, d18O_low, d18O_high, the same for d2H and dexcess (per mil, VSMOW-SLAP),
+  cov_d18O_d2H (per mil squared), elevation_m, elevation_source, nearest_station_km,
+  support (why a value leans on little), problem (why a row has none)
+An isoscape of one isotope adds the columns of that isotope only. A column of the table that has
+one of these names is kept as input_<name>. In CSV, a cell that a spreadsheet would run as a
+formula gets an apostrophe in front; everything else is kept as it was.
+
+Elevation comes from the table, else from the elevation grid; its uncertainty is then part of
+the errors. Beside FILE stands FILE.run.json: what would run it again.
+
+Example:
+  rainprint sites isoscape.json plots.csv -o plots-rain.csv`;
+
+/** `rainprint sites`: values with errors at the places of a table. */
+export function registerSites(program: Command, context: CliContext): void {
+  program
+    .command('sites')
+    .description('predict rain values with standard errors at the sites of a table')
+    .argument('<isoscape>', 'isoscape file made by fit')
+    .argument('<sites>', 'table of sites (CSV or GeoJSON points) with longitude and latitude')
+    .option('-o, --output <file>', 'write here (default: standard output)')
+    .option('--target <target>', 'site: a new place; field: the smooth surface', 'site')
+    .option('--level <level>', 'level of the intervals, between 0 and 1', '0.9')
+    .option('--format <format>', 'csv or geojson', 'csv')
+    .option('--explain [file]', 'trend and residual part and the ten largest station weights, as JSON')
+    .option('--elevation <file>', 'elevation GeoTIFF in metres (default: the bundled 5-arc-minute grid)')
+    .option('--plug-in', 'take estimated parameters for known (for comparison with other programs)')
+    .option('--joint <file>', 'write the covariance between all sites and isotopes as JSON')
+    .option('--record <file>', 'write the record of the run here (default: <output>.run.json)')
+    .option('--column <meaning=header>', 'name a column: id, name, lon, lat, elevation', collected, [])
+    .option('--skip-bad', 'exit 0 although rows have problems')
+    .addHelpText('after', HELP)
+    .action((isoscapePath: string, sitesPath: string, flags: SitesFlags) =>
+      runSites(
+        { isoscapePath, sitesPath, columns: columnOverrides(flags.column), options: readSitesOptions(flags) },
+        context,
+      ),
+    );
+}

@@ -1,0 +1,125 @@
+import { createHash } from 'node:crypto';
+import { type Isoscape, readIsoscape } from '../../isoscape/index.js';
+import { type ColumnOverrides, openTable, type Table } from '../../stations/index.js';
+import type { CliContext } from '../context.js';
+import { openInput, readInputText } from '../input-file.js';
+import { writeOutput } from '../output-file.js';
+import { createProgress } from '../progress.js';
+import { createExplainer } from './explanations.js';
+import { assertJointSize, MAX_JOINT_SITES, writeJoint } from './joint-file.js';
+import { hashed, runRecord } from './run-record.js';
+import { createSiteElevations } from './site-elevation.js';
+import { createSitePredictor } from './site-predictor.js';
+import { createSiteReader, type SiteRow } from './site-reader.js';
+import { SITE_PLACE, SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
+import { createSitesWriter } from './site-writers.js';
+import type { SitesOptions } from './sites-options.js';
+import { openSitesOutputs, type SitesOutputs } from './sites-outputs.js';
+import { SitesTally } from './sites-tally.js';
+
+/** An isoscape of 10,000 stations takes some 4 MB. */
+const MAX_ISOSCAPE_BYTES = 256 << 20;
+/** Enough to keep the numeric core busy, few enough to keep memory flat. */
+const BATCH_ROWS = 1024;
+
+export interface SitesCall {
+  readonly isoscapePath: string;
+  readonly sitesPath: string;
+  readonly columns: ColumnOverrides;
+  readonly options: SitesOptions;
+}
+
+/** Reads sites, predicts them batch by batch, writes them as they come. */
+export async function runSites(call: SitesCall, context: CliContext): Promise<void> {
+  const { options } = call;
+  const isoscapeText = await readInputText(call.isoscapePath, MAX_ISOSCAPE_BYTES);
+  const isoscape = readIsoscape(isoscapeText);
+  const source = hashed(await openInput(call.sitesPath));
+  const table = await openTable(source.chunks, {
+    vocabulary: SITE_VOCABULARY,
+    columnOverrides: call.columns,
+    placeMeanings: SITE_PLACE,
+  });
+  const readRow = createSiteReader(table);
+  const elevations = await createSiteElevations(options.elevationPath, isoscape.terms.includes('elevation'));
+  const inputs = [call.isoscapePath, call.sitesPath, options.elevationPath].filter((path) => path !== null);
+  const tally = new SitesTally();
+  try {
+    const outputs = await openSitesOutputs(options, inputs, context);
+    try {
+      const predict = createSitePredictor(isoscape, elevations, options);
+      await streamSites({ isoscape, table, readRow, predict, outputs, options, tally, context });
+      const sitesSha256 = await source.digest();
+      const outputSha256 = await outputs.commit();
+      if (options.recordPath !== null) {
+        const facts = {
+          ...call,
+          isoscape,
+          isoscapeSha256: createHash('sha256').update(isoscapeText).digest('hex'),
+          sitesSha256,
+          outputSha256,
+          elevationGrid: elevations.gridSource(),
+          siteCount: tally.rowCount,
+          problemCount: tally.problemCount,
+          toolVersion: context.toolVersion,
+        };
+        await writeOutput(options.recordPath, runRecord(facts, options), inputs);
+      }
+    } finally {
+      await outputs.abort();
+    }
+  } finally {
+    await elevations.close();
+  }
+  tally.report(options, context);
+}
+
+interface Stream {
+  readonly isoscape: Isoscape;
+  readonly table: Table<SiteMeaning>;
+  readonly readRow: ReturnType<typeof createSiteReader>;
+  readonly predict: ReturnType<typeof createSitePredictor>;
+  readonly outputs: SitesOutputs;
+  readonly options: SitesOptions;
+  readonly tally: SitesTally;
+  readonly context: CliContext;
+}
+
+async function streamSites(stream: Stream): Promise<void> {
+  const { isoscape, outputs, options, tally } = stream;
+  const progress = createProgress(stream.context, 'sites');
+  const writer = createSitesWriter(options.format, stream.table, isoscape.isotopes);
+  const explainer = outputs.explain === null ? null : createExplainer(isoscape, outputs.explain);
+  // The joint covariance needs all sites at once, and its limit must speak before anything is written.
+  const batchRows = outputs.joint === null ? BATCH_ROWS : MAX_JOINT_SITES + 1;
+  let started = false;
+  for await (const rows of batches(stream.table.rows, stream.readRow, batchRows)) {
+    if (outputs.joint !== null) assertJointSize(rows.length);
+    const batch = await stream.predict(rows);
+    const text = started ? '' : writer.start();
+    started = true;
+    await outputs.main.write(text + rows.map((row, i) => writer.row(row, batch.added[i])).join(''));
+    await explainer?.write(batch);
+    if (outputs.joint !== null) await writeJoint(outputs.joint, isoscape, batch.sites, batch.places, options);
+    tally.add(rows, batch);
+    progress.update(tally.rowCount, 0);
+  }
+  await outputs.main.write(writer.end());
+  await explainer?.end();
+  progress.end();
+}
+
+async function* batches(
+  rows: Table<SiteMeaning>['rows'],
+  readRow: ReturnType<typeof createSiteReader>,
+  size: number,
+): AsyncGenerator<readonly SiteRow[]> {
+  let batch: SiteRow[] = [];
+  for await (const row of rows) {
+    batch.push(readRow(row));
+    if (batch.length < size) continue;
+    yield batch;
+    batch = [];
+  }
+  if (batch.length > 0) yield batch;
+}

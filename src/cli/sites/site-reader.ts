@@ -1,0 +1,106 @@
+import { ELEVATION_BOUNDS, isOutside } from '../../stations/bounds.js';
+import {
+  isNumberProblem,
+  parseNumber,
+  requireColumn,
+  type Table,
+  type TableRow,
+} from '../../stations/index.js';
+import { SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
+
+/** A place asked about, as its row gives it. */
+export interface Site {
+  /** The id, else the name, else `line N`: what explanations and joint files call it. */
+  readonly label: string;
+  readonly lonDeg: number;
+  readonly latDeg: number;
+  /** NaN where the table has none. */
+  readonly elevationM: number;
+}
+
+/** A row of the table: its cells as they came, and the site read from them or the reason there is none. */
+export interface SiteRow {
+  readonly line: number;
+  /** As many as the header has. */
+  readonly cells: readonly string[];
+  /** Typed properties of a GeoJSON feature; null for CSV. */
+  readonly properties: Readonly<Record<string, unknown>> | null;
+  readonly site: Site | null;
+  /** `reason: text` where `site` is null. */
+  readonly problem: string | null;
+}
+
+class RowProblemFound extends Error {}
+
+/** Reads rows one by one; a bad row becomes a problem, never an error. Throws COLUMN_MISSING where no row could be read. */
+export function createSiteReader(table: Table<SiteMeaning>): (row: TableRow) => SiteRow {
+  const lonColumn = requireColumn(table, SITE_VOCABULARY, 'lon');
+  const latColumn = requireColumn(table, SITE_VOCABULARY, 'lat');
+  const elevationColumn = table.columns.get('elevation');
+  const sourceColumn = table.header.indexOf('elevation_source');
+  const nameColumns = [table.columns.get('id'), table.columns.get('name')].filter((c) => c !== undefined);
+
+  const read = (row: TableRow): Site => {
+    if (row.problem !== null) {
+      throw new RowProblemFound(
+        `${row.problem.kind}: ${row.problem.value} found, ${row.problem.expected} expected`,
+      );
+    }
+    const number = (column: number) => numberIn(table, row, column);
+    const lonDeg = number(lonColumn);
+    const latDeg = number(latColumn);
+    checkPlace(lonDeg, latDeg);
+    // An elevation that an earlier run took from a grid is no measurement: it is looked up again, with its error.
+    const fromGrid = sourceColumn >= 0 && !['', 'table'].includes(row.cells[sourceColumn].trim());
+    const elevationM = elevationColumn === undefined || fromGrid ? Number.NaN : number(elevationColumn);
+    checkElevation(elevationM);
+    const names = nameColumns.map((column) => row.cells[column].trim()).filter((text) => text !== '');
+    return { label: names[0] ?? `line ${row.line}`, lonDeg, latDeg, elevationM };
+  };
+
+  return (row) => {
+    const cells = table.header.map((_, i) => row.cells[i] ?? '');
+    const kept = { line: row.line, cells, properties: row.properties ?? null };
+    try {
+      return { ...kept, site: read(row), problem: null };
+    } catch (error) {
+      if (!(error instanceof RowProblemFound)) throw error;
+      return { ...kept, site: null, problem: error.message };
+    }
+  };
+}
+
+function numberIn(table: Table<SiteMeaning>, row: TableRow, column: number): number {
+  const value = parseNumber(row.cells[column], table.decimal);
+  if (!isNumberProblem(value)) return value;
+  const cell = row.cells[column].trim().slice(0, 60);
+  throw new RowProblemFound(
+    `${value.problem}: column ${table.header[column]} has "${cell}", ${value.expected} expected`,
+  );
+}
+
+function checkPlace(lonDeg: number, latDeg: number): void {
+  if (Number.isNaN(lonDeg) || Number.isNaN(latDeg)) {
+    throw new RowProblemFound('coordinates-missing: longitude and latitude are both needed');
+  }
+  if (Math.abs(latDeg) > 90 && Math.abs(lonDeg) <= 90 && Math.abs(latDeg) <= 180) {
+    throw new RowProblemFound(
+      `coordinates-swapped: latitude ${latDeg} and longitude ${lonDeg} found, they look exchanged`,
+    );
+  }
+  if (Math.abs(latDeg) > 90) {
+    throw new RowProblemFound(`coordinates-out-of-range: latitude ${latDeg} found, -90 to 90 expected`);
+  }
+  if (Math.abs(lonDeg) > 180) {
+    const hint = lonDeg > 180 && lonDeg <= 360 ? ` (${lonDeg} as 0..360 is ${lonDeg - 360})` : '';
+    throw new RowProblemFound(
+      `coordinates-out-of-range: longitude ${lonDeg} found, -180 to 180 expected${hint}`,
+    );
+  }
+}
+
+function checkElevation(elevationM: number): void {
+  if (!isOutside(elevationM, ELEVATION_BOUNDS)) return;
+  const { min, max } = ELEVATION_BOUNDS;
+  throw new RowProblemFound(`elevation-implausible: ${elevationM} m found, ${min} to ${max} m expected`);
+}
