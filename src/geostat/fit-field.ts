@@ -19,6 +19,10 @@ export interface FieldFitOptions {
   /** Warm start(s); with `onlyGivenStarts` the lattice of own starts is not tried. */
   readonly starts?: readonly FieldParameters[];
   readonly onlyGivenStarts?: boolean;
+  /** Newton decrement at which the search stops; far under any use of the likelihood by default. */
+  readonly tolerance?: number;
+  /** How many points of the lattice are followed to their optimum; 2 by default. */
+  readonly startsFollowed?: number;
   /** Variance that sets the scale of the bounds; that of ordinary least squares by default. */
   readonly scaleVariance?: number;
 }
@@ -65,7 +69,7 @@ export function fitField(
   const starts = startingPoints(geometry, z, space, likelihood, options);
   let best: FieldFit | null = null;
   for (const start of starts) {
-    const fit = climb(likelihood, z, space, start);
+    const fit = climb(likelihood, z, space, start, options.tolerance ?? CONVERGED_DECREMENT);
     if (best === null || fit.logLikelihood > best.logLikelihood + 1e-9) best = fit;
   }
   if (best === null || !Number.isFinite(best.logLikelihood)) {
@@ -99,16 +103,22 @@ function startingPoints(
     .map((parameters) => coordinatesOf(space, parameters))
     .map((x) => ({ x, logLikelihood: likelihood.evaluate(z, parametersAt(space, x)) }))
     .sort((a, b) => b.logLikelihood - a.logLikelihood)
-    .slice(0, STARTS_FOLLOWED);
+    .slice(0, options.startsFollowed ?? STARTS_FOLLOWED);
   return [...given, ...lattice.map((start) => start.x)];
 }
 
-/** Damped Newton ascent (Levenberg 1944; Marquardt 1963) with the active bounds taken out of each step. */
+/**
+ * Damped Newton ascent (Levenberg 1944; Marquardt 1963) with the active bounds taken out of each step. The average
+ * information alone converges slowly along the ridge of range and sill; what it misses of the curvature is learnt
+ * from the gradients by a symmetric rank-one secant update (structured as in Dennis, Gay & Welsch 1981, ACM TOMS
+ * 7:348–368).
+ */
 function climb(
   likelihood: FieldLikelihood,
   z: Float64Array,
   space: SearchSpace,
   start: Float64Array,
+  tolerance: number,
 ): FieldFit {
   const width = space.axes.length;
   let x: Float64Array = Float64Array.from(start);
@@ -119,23 +129,26 @@ function climb(
     gradient: new Float64Array(width),
     information: new Float64Array(width * width),
   };
+  const secant = new Float64Array(width * width);
   const usable = Number.isFinite(value);
   if (usable) local = localDerivatives(likelihood, space, x);
   while (usable && width > 0 && iterations < MAX_ITERATIONS) {
-    const step = newtonStep(space, x, local.gradient, local.information, damping);
-    if (step === null || step.decrement < CONVERGED_DECREMENT) break;
+    const step = newtonStep(space, x, local, secant, damping);
+    if (step === null || step.decrement < tolerance) break;
     iterations += 1;
     const next = boxed(space, x, step.delta);
     const nextValue = likelihood.evaluate(z, parametersAt(space, next));
     if (nextValue > value) {
       const gain = nextValue - value;
+      const nextLocal = localDerivatives(likelihood, space, next);
+      updateSecant(secant, local, nextLocal, x, next);
       x = next;
       value = nextValue;
-      damping = Math.max(damping * 0.2, 1e-9);
-      local = localDerivatives(likelihood, space, x);
-      if (gain < 1e-13 * Math.max(1, Math.abs(value))) break;
+      local = nextLocal;
+      damping = damping < 1e-6 ? 0 : damping * 0.1;
+      if (gain < 1e-14 * Math.max(1, Math.abs(value))) break;
     } else {
-      damping = Math.max(damping * 8, 1e-6);
+      damping = Math.max(damping * 8, 1e-4);
       if (damping > 1e10) break;
     }
   }
@@ -183,38 +196,48 @@ function localDerivatives(
   return { gradient, information };
 }
 
+/**
+ * Rank-one update of the learnt part A so that (information + A)·step = loss of gradient over the step; skipped
+ * where its denominator is unsafe (Nocedal & Wright 2006, Numerical Optimization, eq. 6.26).
+ */
+function updateSecant(
+  secant: Float64Array,
+  before: LocalDerivatives,
+  after: LocalDerivatives,
+  from: Float64Array,
+  to: Float64Array,
+): void {
+  const width = from.length;
+  const step = to.map((value, k) => value - from[k]!);
+  const miss = new Float64Array(width);
+  let inner = 0;
+  for (let i = 0; i < width; i++) {
+    miss[i] = before.gradient[i]! - after.gradient[i]!;
+    for (let j = 0; j < width; j++) {
+      miss[i]! -= (after.information[i * width + j]! + secant[i * width + j]!) * step[j]!;
+    }
+    inner += miss[i]! * step[i]!;
+  }
+  const sizes = Math.hypot(...miss) * Math.hypot(...step);
+  if (!(Math.abs(inner) > 1e-8 * sizes)) return;
+  for (let i = 0; i < width; i++) {
+    for (let j = 0; j < width; j++) secant[i * width + j]! += (miss[i]! * miss[j]!) / inner;
+  }
+}
+
 function newtonStep(
   space: SearchSpace,
   x: Float64Array,
-  gradient: Float64Array,
-  information: Float64Array,
+  { gradient, information }: LocalDerivatives,
+  secant: Float64Array,
   damping: number,
 ): { delta: Float64Array; decrement: number } | null {
-  const width = space.axes.length;
-  const free: number[] = [];
-  for (let k = 0; k < width; k++) {
-    const axis = space.axes[k]!;
-    const slack = 1e-12 * (axis.high - axis.low);
-    const heldLow = x[k]! <= axis.low + slack && gradient[k]! <= 0;
-    const heldHigh = x[k]! >= axis.high - slack && gradient[k]! >= 0;
-    if (!heldLow && !heldHigh) free.push(k);
-  }
+  const free = freeAxes(space, x, gradient);
   if (free.length === 0) return null;
-  const h = new Matrix(free.length, free.length);
-  for (let i = 0; i < free.length; i++) {
-    // The lower triangle twice: the library insists on symmetry to the last bit.
-    for (let j = 0; j <= i; j++) {
-      h.set(i, j, information[free[i]! * width + free[j]!]!);
-      h.set(j, i, h.get(i, j));
-    }
-    // A flat direction (no information) still gets a small positive curvature, so that the step stays finite.
-    h.set(i, i, h.get(i, i) * (1 + damping) + 1e-10);
-  }
-  const factor = new CholeskyDecomposition(h);
-  if (!factor.isPositiveDefinite()) return null;
-  const g = Matrix.columnVector(free.map((k) => gradient[k]!));
-  const solved = factor.solve(g).to1DArray();
-  const delta = new Float64Array(width);
+  const factor = curvatureFactor(free, information, secant, damping);
+  if (factor === null) return null;
+  const solved = factor.solve(Matrix.columnVector(free.map((k) => gradient[k]!))).to1DArray();
+  const delta = new Float64Array(space.axes.length);
   let decrement = 0;
   free.forEach((k, i) => {
     const limit = space.axes[k]!.maxStep;
@@ -222,6 +245,44 @@ function newtonStep(
     delta[k] = Math.max(-limit, Math.min(limit, solved[i]!));
   });
   return { delta, decrement };
+}
+
+/** Axes that are not held at a bound by the gradient. */
+function freeAxes(space: SearchSpace, x: Float64Array, gradient: Float64Array): number[] {
+  return Array.from(space.axes.keys()).filter((k) => {
+    const axis = space.axes[k]!;
+    const slack = 1e-12 * (axis.high - axis.low);
+    const heldLow = x[k]! <= axis.low + slack && gradient[k]! <= 0;
+    const heldHigh = x[k]! >= axis.high - slack && gradient[k]! >= 0;
+    return !heldLow && !heldHigh;
+  });
+}
+
+/** Factor of information plus learnt curvature over the free axes; of the information alone where that is indefinite. */
+function curvatureFactor(
+  free: readonly number[],
+  information: Float64Array,
+  secant: Float64Array,
+  damping: number,
+): CholeskyDecomposition | null {
+  const width = Math.sqrt(information.length);
+  for (const share of [1, 0]) {
+    const h = new Matrix(free.length, free.length);
+    for (let i = 0; i < free.length; i++) {
+      for (let j = 0; j <= i; j++) {
+        const at = free[i]! * width + free[j]!;
+        const value = information[at]! + share * secant[at]!;
+        // Both triangles: the library insists on symmetry to the last bit.
+        h.set(i, j, value);
+        h.set(j, i, value);
+      }
+      // A flat direction (no information) still gets a small positive curvature, so that the step stays finite.
+      h.set(i, i, h.get(i, i) + damping * information[free[i]! * width + free[i]!]! + 1e-10);
+    }
+    const factor = new CholeskyDecomposition(h);
+    if (factor.isPositiveDefinite()) return factor;
+  }
+  return null;
 }
 
 function boxed(space: SearchSpace, x: Float64Array, delta: Float64Array): Float64Array {

@@ -60,8 +60,12 @@ export class TurnProfile {
     this.#u2 = new Float64Array(geometry.n);
   }
 
-  /** Both fields fitted at one turn; with `warm` only from its parameters, else from the lattice of starts too. */
-  at(turnRad: number, warm: PairStart | null, lattice: boolean): PairFit {
+  /**
+   * Both fields fitted at one turn.
+   * @param warm   parameters to start from
+   * @param effort `warm`: from there only; `look`: roughly, with one own start; `full`: with several own starts
+   */
+  at(turnRad: number, warm: PairStart | null, effort: 'warm' | 'look' | 'full'): PairFit {
     const { geometry, y1, y2, errorVariance } = this.#problem;
     const { family, fixedAlong, fixedAcross } = this.#options;
     turn(y1, y2, turnRad, this.#u1, this.#u2);
@@ -74,7 +78,8 @@ export class TurnProfile {
         {
           fixed,
           starts: warm === null ? [] : [which === 0 ? warm.along : warm.across],
-          onlyGivenStarts: !lattice,
+          onlyGivenStarts: effort === 'warm',
+          ...(effort === 'look' ? LOOK : {}),
         },
         this.#likelihoods[which],
       );
@@ -91,6 +96,9 @@ export class TurnProfile {
     };
   }
 }
+
+/** A look only has to rank angles: a thousandth of a log unit will do. */
+const LOOK = { tolerance: 1e-3, startsFollowed: 1 };
 
 export interface PairStart {
   readonly along: FieldParameters;
@@ -114,11 +122,11 @@ export function scanTurn(problem: PairProblem, profile: TurnProfile): PairFit {
   let previous: PairFit | null = null;
   for (let k = 0; k < SCAN_ANGLES; k++) {
     const angle = centre - QUARTER_TURN / 2 + ((k + 0.5) * QUARTER_TURN) / SCAN_ANGLES;
-    const fit = profile.at(angle, previous === null ? null : startFrom(previous), true);
+    const fit = profile.at(angle, previous === null ? null : startFrom(previous), 'look');
     if (best === null || fit.logLikelihood > best.logLikelihood) best = fit;
     previous = fit;
   }
-  return best!;
+  return profile.at(best!.turnRad, startFrom(best!), 'full');
 }
 
 /** Angle of the leading eigenvector of the 2 × 2 covariance of the whitened values (½ atan2 form). */
@@ -149,7 +157,7 @@ const MAX_ROOT_STEPS = 40;
 export function refineTurn(profile: TurnProfile, start: PairFit): PairFit {
   let best = start;
   const visit = (angle: number): PairFit => {
-    const fit = profile.at(angle, startFrom(best), false);
+    const fit = profile.at(angle, startFrom(best), 'warm');
     if (fit.logLikelihood > best.logLikelihood) best = fit;
     return fit;
   };
@@ -204,8 +212,8 @@ const TURN_VARIANCE_MAX = QUARTER_TURN ** 2 / 12;
 /** Var(φ̂) = −1/ℓ″ of the profile likelihood, by a central difference of its exact slope. */
 export function turnVariance(profile: TurnProfile, fit: PairFit): number {
   const warm = startFrom(fit);
-  const above = profile.at(fit.turnRad + CURVATURE_STEP_RAD, warm, false);
-  const below = profile.at(fit.turnRad - CURVATURE_STEP_RAD, warm, false);
+  const above = profile.at(fit.turnRad + CURVATURE_STEP_RAD, warm, 'warm');
+  const below = profile.at(fit.turnRad - CURVATURE_STEP_RAD, warm, 'warm');
   const curvature = -(above.turnSlope - below.turnSlope) / (2 * CURVATURE_STEP_RAD);
   return curvature > 1 / TURN_VARIANCE_MAX ? 1 / curvature : TURN_VARIANCE_MAX;
 }

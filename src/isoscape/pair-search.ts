@@ -54,10 +54,10 @@ export function searchTurn(
   const { problem, profile } = profileOf(input, geometry, family, criterion);
   if (input.fix.turnDeg !== undefined) {
     const turnRad = (input.fix.turnDeg * Math.PI) / 180;
-    return { fit: profile.at(turnRad, start?.parameters ?? null, true), profile };
+    return { fit: profile.at(turnRad, start?.parameters ?? null, 'full'), profile };
   }
   const first = start === null ? firstFit(problem, profile, input, geometry, family, criterion) : null;
-  const from = first ?? profile.at(start!.turnRad, start!.parameters, geometry.n <= FULL_SEARCH_STATIONS);
+  const from = first ?? profile.at(start!.turnRad, start!.parameters, 'full');
   return { fit: refineTurn(profile, from), profile };
 }
 
@@ -74,7 +74,7 @@ function firstFit(
   const thinned = thinGeometry(geometry, input);
   const small = profileOf(thinned.input, thinned.geometry, family, criterion);
   const best = scanTurn(small.problem, small.profile);
-  return profile.at(best.turnRad, startFrom(best), true);
+  return profile.at(best.turnRad, startFrom(best), 'full');
 }
 
 /** Every k-th station of the canonical order (which runs by latitude, so the thinning keeps the area covered). */
@@ -122,7 +122,7 @@ export function choosePairTrend(
     onProgress({ stage: 'choosing the trend', done, total: candidates.length });
     const held = start !== null && geometry.n > FULL_SEARCH_STATIONS;
     const fit: PairFit = held
-      ? profileOf(input, geometry, used, 'maximum').profile.at(start!.turnRad, start!.parameters, false)
+      ? profileOf(input, geometry, used, 'maximum').profile.at(start!.turnRad, start!.parameters, 'warm')
       : searchTurn(input, geometry, used, 'maximum', start).fit;
     start = { turnRad: fit.turnRad, parameters: startFrom(fit) };
     const free = fit.along.space.axes.length + fit.across.space.axes.length;
