@@ -1,25 +1,16 @@
 import { RainprintError } from '../errors.js';
-import { type Baseline, meanBaseline, nearestBaseline, regressionBaseline } from '../geostat/baselines.js';
 import { gaussianCdf } from '../geostat/gaussian.js';
-import { findNeighbours, type Neighbours } from '../geostat/neighbours.js';
-import { arcFromChordKm, positionsOnSphereKm } from '../geostat/positions.js';
-import { scoreSeries, standardisedError } from '../geostat/scores.js';
-import { dExcess } from '../isotope/index.js';
+import { standardisedError } from '../geostat/scores.js';
 import { predictBlocked, stationsWhere } from './hold-out.js';
 import type { Isoscape } from './isoscape.js';
 import { leaveOneOut } from './leave-one-out.js';
-import type { Predictions } from './places.js';
-import { trendMatrix } from './trend.js';
+import { type Bench, createBench, scoreScheme } from './score-scheme.js';
 import {
   type FoldRecord,
-  type MethodResult,
   methodResult,
   type OutlyingStation,
   type SchemeResult,
-  seriesOf,
-  type ValidatedVariable,
   type ValidationResult,
-  type VariableResult,
   validatedVariables,
 } from './validation.js';
 
@@ -54,17 +45,15 @@ export function validateIsoscape(
   const foldCount = checkedFolds(options.folds ?? Math.min(DEFAULT_FOLDS, Math.floor(count / 2)), count);
   const plugIn = options.plugIn ?? false;
   onProgress({ stage: 'leave-one-out', done: 0, total: foldCount + 1 });
-  const closed = leaveOneOut(isoscape, { plugIn });
+  const bench = createBench(isoscape);
+  const alone = scoreAlone(isoscape, bench, level, plugIn);
   onProgress({ stage: 'blocks refitted', done: 1, total: foldCount + 1 });
   const blocks = predictBlocked(isoscape, foldCount, plugIn, (done) =>
     onProgress({ stage: 'blocks refitted', done: done + 1, total: foldCount + 1 }),
   );
-  const bench = createBench(isoscape);
-  const each = stationsWhere(count, () => true).map((i) => [i]);
   const heldOutSets = blocks.folds.map(({ fold }) =>
     stationsWhere(count, (i) => blocks.foldOfStation[i] === fold),
   );
-  const alone = scoreScheme(isoscape, 'leave-one-out', closed, each, bench, level);
   const variables = validatedVariables(isoscape.isotopes);
   return {
     isoscapeId: isoscape.id,
@@ -82,15 +71,25 @@ export function validateIsoscape(
   };
 }
 
-/** The leave-one-out half of `validateIsoscape` alone: closed-form, so it costs no refitting. */
+/**
+ * The leave-one-out half of `validateIsoscape` alone: no refits, so quick enough to end a fit with.
+ * @throws OPTION_INVALID for a level out of range
+ */
 export function validateLeaveOneOut(
   isoscape: Isoscape,
   options: Pick<ValidateOptions, 'level' | 'plugIn'> = {},
 ): SchemeResult {
-  const level = checkedLevel(options.level ?? 0.9);
-  const predictions = leaveOneOut(isoscape, { plugIn: options.plugIn ?? false });
-  const each = stationsWhere(isoscape.stations.id.length, () => true).map((i) => [i]);
-  return scoreScheme(isoscape, 'leave-one-out', predictions, each, createBench(isoscape), level);
+  return scoreAlone(
+    isoscape,
+    createBench(isoscape),
+    checkedLevel(options.level ?? 0.9),
+    options.plugIn ?? false,
+  );
+}
+
+function scoreAlone(isoscape: Isoscape, bench: Bench, level: number, plugIn: boolean): SchemeResult {
+  const each = isoscape.stations.id.map((_, i) => [i]);
+  return scoreScheme(isoscape, 'leave-one-out', leaveOneOut(isoscape, { plugIn }), each, bench, level);
 }
 
 function checkedLevel(level: number): number {
@@ -112,82 +111,6 @@ function checkedFolds(folds: number, count: number): number {
     `the number of folds is ${folds}; a whole number from 2 to ${most} (half of the ${count} stations) was expected`,
     { folds, stations: count },
   );
-}
-
-/** The baselines and the neighbours, made once for both schemes. */
-interface Bench {
-  readonly baselines: readonly Baseline[];
-  readonly neighbours: Neighbours;
-}
-
-function createBench(isoscape: Isoscape): Bench {
-  const { lonDeg, latDeg, elevationM } = isoscape.stations;
-  const neighbours = findNeighbours(positionsOnSphereKm(lonDeg, latDeg));
-  const trend = trendMatrix(isoscape.terms, latDeg, elevationM);
-  const regression = regressionBaseline(trend, isoscape.terms.length + 1);
-  return { neighbours, baselines: [meanBaseline, regression, nearestBaseline(neighbours)] };
-}
-
-function scoreScheme(
-  isoscape: Isoscape,
-  scheme: SchemeResult['scheme'],
-  predictions: Predictions,
-  heldOutSets: readonly (readonly number[])[],
-  bench: Bench,
-  level: number,
-): SchemeResult {
-  const variables = validatedVariables(isoscape.isotopes).map((variable) =>
-    scoreVariable(variable, observedValues(isoscape, variable), predictions, heldOutSets, bench, level),
-  );
-  return { scheme, variables, medianNearestKm: medianNearestKm(bench.neighbours, heldOutSets) };
-}
-
-function scoreVariable(
-  variable: ValidatedVariable,
-  observed: Float64Array,
-  predictions: Predictions,
-  heldOutSets: readonly (readonly number[])[],
-  { baselines }: Bench,
-  level: number,
-): VariableResult {
-  const own = seriesOf(predictions, variable);
-  const methods: MethodResult[] = [
-    { method: 'isoscape', ...own, scores: scoreSeries({ observed, ...own }, level) },
-  ];
-  // Baselines are scored where the isoscape has a prediction, so that a failed fold does not skew the comparison.
-  const comparable = observed.map((value, i) => (Number.isNaN(own.mean[i]!) ? Number.NaN : value));
-  (['mean', 'regression', 'nearest'] as const).forEach((method, b) => {
-    const mean = new Float64Array(observed.length);
-    const variance = new Float64Array(observed.length);
-    for (const heldOut of heldOutSets) baselines[b]!(observed, heldOut, mean, variance);
-    methods.push({
-      method,
-      mean,
-      variance,
-      scores: scoreSeries({ observed: comparable, mean, variance }, level),
-    });
-  });
-  return { variable, observed, methods };
-}
-
-export function observedValues(isoscape: Isoscape, variable: ValidatedVariable): Float64Array {
-  const { d18O, d2H } = isoscape.stations;
-  if (variable === 'dexcess') return d18O.map((value, i) => dExcess(value, d2H[i]!));
-  return variable === 'd18O' ? d18O : d2H;
-}
-
-function medianNearestKm(neighbours: Neighbours, heldOutSets: readonly (readonly number[])[]): number {
-  const distances: number[] = [];
-  for (const heldOut of heldOutSets) {
-    const excluded = new Uint8Array(neighbours.count);
-    for (const i of heldOut) excluded[i] = 1;
-    for (const i of heldOut) distances.push(neighbours.distanceKm(i, neighbours.nearest(i, excluded)));
-  }
-  distances.sort((a, b) => a - b);
-  const middle = distances.length >> 1;
-  const chord =
-    distances.length % 2 === 1 ? distances[middle]! : (distances[middle - 1]! + distances[middle]!) / 2;
-  return arcFromChordKm(chord);
 }
 
 function outlyingStations(isoscape: Isoscape, scheme: SchemeResult): OutlyingStation[] {
