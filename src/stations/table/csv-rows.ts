@@ -1,14 +1,8 @@
 import { pipeline, Readable } from 'node:stream';
-import { CsvError, type Options, parse } from 'csv-parse';
+import { CsvError, parse } from 'csv-parse';
 import { RainprintError } from '../../errors.js';
-import { type Delimiter, ROW_ENDS } from './delimiter.js';
+import { type Delimiter, HINT_LINE, ROW_ENDS } from './delimiter.js';
 import type { TableRow } from './open-table.js';
-
-/** A row as csv-parse hands it over, with the line on which it ended. */
-interface ParsedRow {
-  readonly endLine: number;
-  readonly cells: string[];
-}
 
 /**
  * Streams the rows after the header. Blank lines are skipped and counted in the line numbers.
@@ -23,29 +17,28 @@ export async function* csvRows(
   width: number,
   maxRowCharacters: number,
 ): AsyncGenerator<TableRow> {
-  const options: Options<ParsedRow, string[]> = {
+  // Blank lines come as rows of one empty cell: lines are counted here, which is faster than asking the parser.
+  const parser = parse({
     delimiter,
     record_delimiter: ROW_ENDS,
     relax_column_count: true,
-    skip_empty_lines: true,
+    skip_empty_lines: false,
     max_record_size: maxRowCharacters,
-    from_line: head.startsWith('sep=') ? 2 : 1,
-    on_record: (cells, info) => ({ endLine: info.lines, cells }),
-  };
-  // The types know rows changed by on_record only together with named columns.
-  const parser = parse(options as unknown as Options);
+  });
   pipeline(Readable.from(chained(head, pieces)), parser, () => {});
-  let seen = -1;
+  let line = 1;
+  let seen = HINT_LINE.test(head) ? -2 : -1;
   try {
-    for await (const parsed of parser as AsyncIterable<ParsedRow>) {
-      if (++seen > 0) yield toRow(parsed, width, delimiter);
+    for await (const cells of parser as AsyncIterable<string[]>) {
+      const start = line;
+      line += 1 + lineEndsWithin(cells);
+      if (cells.length === 1 && cells[0] === '') continue;
+      if (++seen > 0) yield toRow(start, cells, width, delimiter);
     }
   } catch (error) {
     throw error instanceof CsvError ? quoteError(error) : error;
   }
-  if (seen < 1) {
-    throw new RainprintError('HEADER_ONLY', 'the file has a header and no rows');
-  }
+  if (seen < 1) throw new RainprintError('HEADER_ONLY', 'the file has a header and no rows');
 }
 
 async function* chained(head: string, pieces: AsyncIterator<string>): AsyncGenerator<string> {
@@ -61,9 +54,7 @@ async function* chained(head: string, pieces: AsyncIterator<string>): AsyncGener
   }
 }
 
-function toRow(parsed: ParsedRow, width: number, delimiter: Delimiter): TableRow {
-  const cells = parsed.cells;
-  const line = parsed.endLine - lineEndsWithin(cells);
+function toRow(line: number, cells: string[], width: number, delimiter: Delimiter): TableRow {
   if (cells.length === width) return { line, cells, problem: null };
   if (cells.length > width && cells.slice(width).every((cell) => cell.trim() === '')) {
     return { line, cells: cells.slice(0, width), problem: null };
@@ -77,7 +68,7 @@ function toRow(parsed: ParsedRow, width: number, delimiter: Delimiter): TableRow
   return { line, cells, problem };
 }
 
-/** Line ends inside quoted cells: the row started that many lines before the one it ended on. */
+/** Line ends inside quoted cells: the row takes that many lines more. */
 function lineEndsWithin(cells: readonly string[]): number {
   let count = 0;
   for (const cell of cells) {

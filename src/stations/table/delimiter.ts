@@ -15,6 +15,9 @@ export const DELIMITER_NAMES: Readonly<Record<Delimiter, string>> = {
 /** Row ends as any system writes them, mixed or not. */
 export const ROW_ENDS = ['\r\n', '\n', '\r'];
 
+/** A line some spreadsheets write in front of the header to name the delimiter. */
+export const HINT_LINE = /^sep=([,;\t])\r?\n/;
+
 const SAMPLE_ROWS = 200;
 
 /** The first rows of a table, cut by the delimiter that fits best. */
@@ -33,7 +36,7 @@ export interface SampledTable {
  * @throws DELIMITER_UNKNOWN where no delimiter gives two columns
  */
 export function sampleTable<M extends string>(sample: string, vocabulary: Vocabulary<M>): SampledTable {
-  const named = /^sep=([,;\t])\r?\n/.exec(sample);
+  const named = HINT_LINE.exec(sample);
   const candidates = named === null ? ([',', ';', '\t'] as const) : [named[1] as Delimiter];
   const body = named === null ? sample : sample.slice(named[0].length);
   let best: { table: SampledTable; score: readonly number[] } | null = null;

@@ -92,8 +92,9 @@ export class PiecewiseDecoder {
   }
 
   #decide(bytes: Uint8Array): void {
-    const first = bytes.findIndex((byte) => byte > 0x7f);
-    if (first < 0) return;
+    let first = 0;
+    while (first < bytes.length && bytes[first] <= 0x7f) first++;
+    if (first === bytes.length) return;
     const length = sequenceBytes(bytes[first]);
     const tail = bytes.subarray(first + 1, first + length);
     const valid = length > 1 && tail.length === length - 1 && tail.every((byte) => byte >> 6 === 2);
