@@ -54,7 +54,7 @@ export class FieldAverage {
   readonly #otherValues: Float64Array | null;
   readonly #nodes: readonly FieldNode[];
   #kept: PreparedNode[] | null = null;
-  #summary: { coefficients: Float64Array; nugget: number } | null = null;
+  #coefficients: Float64Array | null = null;
 
   constructor(
     isoscape: Isoscape,
@@ -77,16 +77,16 @@ export class FieldAverage {
 
   /** GLS coefficients averaged over the nodes (p). */
   get coefficients(): Float64Array {
-    if (this.#summary === null) {
+    if (this.#coefficients === null) {
       const coefficients = new Float64Array(this.#geometry.p);
       for (const node of this.preparedNodes()) {
         for (let c = 0; c < coefficients.length; c++) {
           coefficients[c]! += node.weight * node.own.coefficients[c]!;
         }
       }
-      this.#summary = { coefficients, nugget: this.nugget };
+      this.#coefficients = coefficients;
     }
-    return this.#summary.coefficients;
+    return this.#coefficients;
   }
 
   /** Every node, factorised: kept where memory allows, else built one after the other. */

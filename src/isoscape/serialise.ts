@@ -34,8 +34,8 @@ export function readIsoscape(text: string): Isoscape {
       {},
     );
   }
-  checkVersion((content as Record<string, unknown>)['schemaVersion']);
   const { checksum, ...body } = content as Record<string, unknown>;
+  checkVersion(body.schemaVersion);
   const parsed = fileSchema.safeParse(body);
   if (!parsed.success) {
     const issue = parsed.error.issues[0]!;
