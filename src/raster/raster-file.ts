@@ -1,9 +1,10 @@
 import { createHash } from 'node:crypto';
 import { createReadStream } from 'node:fs';
-import { open, stat } from 'node:fs/promises';
+import { type FileHandle, open } from 'node:fs/promises';
 import { basename } from 'node:path';
-import { fromFile, type GeoTIFF, type GeoTIFFImage } from 'geotiff';
+import { GeoTIFF, type GeoTIFFImage } from 'geotiff';
 import { RainprintError } from '../errors.js';
+import { fileSource } from './file-source.js';
 import type { NorthUpTransform } from './geo-keys.js';
 import { type GeoKeys, type RasterCrs, rasterCrs } from './raster-crs.js';
 import { northUpTransform } from './raster-transform.js';
@@ -34,17 +35,13 @@ export interface RasterFile {
  * RASTER_BANDS, CRS_MISSING, CRS_UNSUPPORTED, TRANSFORM_MISSING, TRANSFORM_ROTATED.
  */
 export async function openRaster(path: string): Promise<RasterFile> {
-  const sizeBytes = await checkTiff(path);
-  let tiff: GeoTIFF | undefined;
+  const { file, sizeBytes } = await openTiff(path);
   try {
-    tiff = await fromFile(path);
+    const tiff = await GeoTIFF.fromSource(fileSource(file, sizeBytes, path));
     const image = await tiff.getImage(0);
-    const opened = tiff;
-    return await describe(path, sizeBytes, image, async () => {
-      await opened.close();
-    });
+    return await describe(path, sizeBytes, image, () => file.close());
   } catch (error) {
-    await tiff?.close();
+    await file.close();
     throw error instanceof RainprintError ? error : damaged(path, error);
   }
 }
@@ -63,6 +60,7 @@ async function describe(
       { path, bandCount },
     );
   }
+  const byteCounts = await checkBlocks(image, sizeBytes, path);
   const directory = image.fileDirectory;
   const keys = image.getGeoKeys() as GeoKeys | null;
   const load = async (tag: 'ModelPixelScale' | 'ModelTiepoint' | 'ModelTransformation') =>
@@ -78,7 +76,6 @@ async function describe(
   );
   const crs = rasterCrs(keys, path);
   if (crs.kind === 'geographic') checkDegrees(transform, image.getHeight(), path);
-  const byteCounts = await checkBlocks(image, sizeBytes, path);
   const items = ((await image.getGDALMetadata(0)) ?? {}) as Record<string, unknown>;
   return {
     path,
@@ -98,14 +95,16 @@ async function describe(
 }
 
 /** TIFF 6.0 section 2 and BigTIFF: byte order, then 42 or 43. */
-async function checkTiff(path: string): Promise<number> {
+async function openTiff(path: string): Promise<{ file: FileHandle; sizeBytes: number }> {
   const bytes = Buffer.alloc(4);
+  let file: FileHandle | undefined;
   let sizeBytes: number;
   try {
-    sizeBytes = (await stat(path)).size;
-    const file = await open(path, 'r');
-    await file.read(bytes, 0, 4, 0).finally(() => file.close());
+    file = await open(path, 'r');
+    sizeBytes = (await file.stat()).size;
+    await file.read(bytes, 0, 4, 0);
   } catch (error) {
+    await file?.close();
     const cause = (error as NodeJS.ErrnoException).code ?? 'unknown';
     const code = cause === 'ENOENT' || cause === 'ENOTDIR' ? 'FILE_NOT_FOUND' : 'FILE_NOT_READABLE';
     throw new RainprintError(code, `cannot read the raster ${path}: ${(error as Error).message}`, {
@@ -113,15 +112,13 @@ async function checkTiff(path: string): Promise<number> {
       cause,
     });
   }
-  const mark = bytes.toString('latin1');
-  if (!['II*\0', 'MM\0*', 'II+\0', 'MM\0+'].includes(mark)) {
-    throw new RainprintError(
-      'RASTER_NOT_TIFF',
-      `${path} is no GeoTIFF (a TIFF starts with II or MM and 42 or 43); convert it: gdal_translate -of GTiff IN out.tif`,
-      { path },
-    );
-  }
-  return sizeBytes;
+  if (['II*\0', 'MM\0*', 'II+\0', 'MM\0+'].includes(bytes.toString('latin1'))) return { file, sizeBytes };
+  await file.close();
+  throw new RainprintError(
+    'RASTER_NOT_TIFF',
+    `${path} is no GeoTIFF (a TIFF starts with II or MM and 42 or 43); convert it: gdal_translate -of GTiff IN out.tif`,
+    { path },
+  );
 }
 
 /** Every tile or strip must lie inside the file: an uncompressed one cut short would be read as zeros. */
