@@ -28,18 +28,25 @@ const fittedField = z.strictObject({
 
 const pairCovariance = z.tuple([z.number(), z.number(), z.number()]);
 
+/** The isotope an isoscape of one isotope does not use has no variance and no covariance: null in JSON. */
+const orMissing = z
+  .number()
+  .nullable()
+  .transform((value) => value ?? Number.NaN);
+const samplingCovariance = z.tuple([orMissing, orMissing, orMissing]);
+
 const sampling = z.discriminatedUnion('kind', [
   z.strictObject({
     kind: z.literal('records'),
-    within: pairCovariance,
-    withinTotal: pairCovariance,
+    within: samplingCovariance,
+    withinTotal: samplingCovariance,
     pooledRecords: z.number(),
     amountWeighted: z.boolean(),
   }),
   z.strictObject({
     kind: z.literal('standard-deviations'),
-    within: pairCovariance,
-    withinTotal: pairCovariance,
+    within: samplingCovariance,
+    withinTotal: samplingCovariance,
     assumedCorrelation: z.number(),
   }),
   z.strictObject({ kind: z.literal('none') }),
