@@ -36,7 +36,8 @@ export function createProgram(context: CliContext): Command {
       outputError: () => {}, // said once, with its code, in reportFailure
     })
     .showSuggestionAfterError(true);
-  for (const register of [registerCheck, registerFit, registerSites, registerGrid]) register(program, context);
+  for (const register of [registerCheck, registerFit, registerSites, registerGrid])
+    register(program, context);
   return program;
 }
 

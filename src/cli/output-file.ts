@@ -7,6 +7,8 @@ import { RainprintError } from '../errors.js';
 /** A file that appears under its name only when it is whole: written beside it and renamed by `commit`. */
 export interface OutputFile {
   readonly path: string;
+  /** False for a device or pipe, which is written to as it stands. */
+  readonly regular: boolean;
   write(data: string | Uint8Array): Promise<void>;
   /** Gives the file its name; returns the SHA-256 (hex) of what was written. */
   commit(): Promise<string>;
@@ -79,12 +81,15 @@ export async function writeOutput(
 class PartFile implements OutputFile {
   readonly #hash = createHash('sha256');
   #open = true;
+  readonly regular: boolean;
   constructor(
     readonly path: string,
     private readonly targetPath: string,
     private readonly partPath: string,
     private readonly handle: FileHandle,
-  ) {}
+  ) {
+    this.regular = partPath !== targetPath;
+  }
 
   async write(data: string | Uint8Array): Promise<void> {
     const bytes = typeof data === 'string' ? Buffer.from(data, 'utf8') : data;
@@ -94,7 +99,7 @@ class PartFile implements OutputFile {
 
   async commit(): Promise<string> {
     await guarded(this.path, () => this.handle.close());
-    if (this.partPath !== this.targetPath) {
+    if (this.regular) {
       await guarded(this.path, () => rename(this.partPath, this.targetPath));
     }
     this.#open = false;
@@ -106,7 +111,7 @@ class PartFile implements OutputFile {
     if (!this.#open) return;
     this.#open = false;
     await this.handle.close().catch(() => {});
-    if (this.partPath === this.targetPath) return;
+    if (!this.regular) return;
     untrack(this.partPath);
     await unlink(this.partPath).catch(() => {});
   }

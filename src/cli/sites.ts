@@ -11,7 +11,8 @@ The table (CSV or GeoJSON points) keeps its columns, and these are added behind 
   support (why a value leans on little), problem (why a row has none)
 An isoscape of one isotope adds the columns of that isotope only. A column of the table that has
 one of these names is kept as input_<name>. In CSV, a cell that a spreadsheet would run as a
-formula gets an apostrophe in front; everything else is kept as it was.
+formula gets an apostrophe in front; everything else is kept as it was, decimal commas too. In
+GeoJSON, plain numbers become numbers; ids and names stay text.
 
 Elevation comes from the table, else from the elevation grid; its uncertainty is then part of
 the errors. Beside FILE stands FILE.run.json: what would run it again.

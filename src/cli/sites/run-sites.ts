@@ -51,7 +51,7 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
       await streamSites({ isoscape, table, readRow, predict, outputs, options, tally, context });
       const sitesSha256 = await source.digest();
       const outputSha256 = await outputs.commit();
-      if (options.recordPath !== null) {
+      if (options.recordPath !== null && (options.recordAsked || outputs.mainIsFile)) {
         const facts = {
           ...call,
           isoscape,

@@ -27,6 +27,8 @@ export interface SitesOptions {
   readonly outputPath: string | null;
   readonly jointPath: string | null;
   readonly recordPath: string | null;
+  /** False where the record goes beside the output by default. */
+  readonly recordAsked: boolean;
   /** `stderr` where explanations are asked and there is no file to put them beside. */
   readonly explain: { readonly path: string } | 'stderr' | null;
 }
@@ -43,6 +45,7 @@ export function readSitesOptions(flags: SitesFlags): SitesOptions {
     outputPath,
     jointPath: flags.joint ?? null,
     recordPath: flags.record ?? (outputPath === null ? null : `${outputPath}.run.json`),
+    recordAsked: flags.record !== undefined,
     explain: explainTarget(flags.explain, outputPath),
   };
   assertDistinct(options);

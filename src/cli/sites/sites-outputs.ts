@@ -7,6 +7,8 @@ import type { SitesOptions } from './sites-options.js';
 /** Where a run writes; files appear under their names only at `commit`. */
 export interface SitesOutputs {
   readonly main: TextOutput;
+  /** False for standard output, a device or a pipe: nothing can stand beside those. */
+  readonly mainIsFile: boolean;
   readonly explain: TextOutput | null;
   readonly joint: OutputFile | null;
   /** Names all files; returns the SHA-256 of the main output. */
@@ -46,6 +48,7 @@ export async function openSitesOutputs(
     const explain = await explainOutput(options, context, opened);
     return {
       main: { forPeople: false, write: main === null ? toStdout : (text) => main.write(text) },
+      mainIsFile: main?.regular ?? false,
       explain,
       joint,
       abort,
