@@ -25,7 +25,7 @@ const LEVELS = [0.5, 0.9, 0.95];
 /** One world: its tallies a level, all sites and those without a support flag, and what the fit chose. */
 export async function scoreWorld(seed, land) {
   const world = createWorld(seed, land);
-  const { network } = await readNetwork(recordTable(world.rows), { name: `invented ${seed}` });
+  const { network } = await readNetwork(bytesOf(recordTable(world.rows)), { name: `invented ${seed}` });
   const isoscape = fitIsoscape(network);
   const { places, flags } = placesOf(world.sites, isoscape);
   const out = createPredictions(places.count);
@@ -36,8 +36,9 @@ export async function scoreWorld(seed, land) {
     const pick = (list) => unflagged.map((k) => list[k]);
     return {
       level,
-      all: scoreSites(world.siteTruths, predictions),
-      unflagged: scoreSites(pick(world.siteTruths), pick(predictions)),
+      longTerm: scoreSites(world.siteTruths, predictions),
+      longTermWithoutFlag: scoreSites(pick(world.siteTruths), pick(predictions)),
+      ownYears: scoreSites(world.sitePeriodMeans, predictions),
     };
   });
   return {
@@ -48,6 +49,10 @@ export async function scoreWorld(seed, land) {
     tallies,
     baselines: baselineSquares(isoscape.stations, world.sites, world.siteTruths, greatCircleKm),
   };
+}
+
+async function* bytesOf(text) {
+  yield new TextEncoder().encode(text);
 }
 
 /** The sites at their own elevations, taken as exact, with their support flags. */
@@ -108,12 +113,11 @@ function countBy(list) {
 export function poolWorlds(worlds) {
   const coverage = LEVELS.map((level, k) => ({
     level,
-    allSites: pool(worlds.map((world) => world.tallies[k].all)),
-    sitesWithoutFlag: pool(
-      worlds.map((world) => world.tallies[k].unflagged).filter((tally) => tally.d18O.count > 0),
-    ),
+    longTermMean: pool(worlds.map((world) => world.tallies[k].longTerm)),
+    longTermMeanSitesWithoutFlag: pool(worlds.map((world) => world.tallies[k].longTermWithoutFlag)),
+    meanOfTheNetworksOwnYears: pool(worlds.map((world) => world.tallies[k].ownYears)),
   }));
-  const siteCount = coverage[0].allSites.d18O.count;
+  const siteCount = coverage[0].longTermMean.d18O.count;
   const baselineRmse = Object.fromEntries(
     QUANTITIES.map((quantity) => {
       const rmse = (name) =>

@@ -1,12 +1,12 @@
 /**
  * The toponymy of Ondravesh, a land that does not exist. Generic words stand first and mean the kind of thing
- * (`Kesh` range, `Dul` plateau, `Isk` island, `Ruon` river); a settlement is a stem and an ending for where it
+ * (`Ghelm` range, `Dul` plateau, `Isk` island, `Ruon` river); a settlement is a stem and an ending for where it
  * lies (`-mova` shore, `-dresk` valley, `-kaelu` upland, `-ondim` plain, `-ithra` island).
  */
 
 export const LAND_NAME = 'Ondravesh';
 
-export const RANGE_NAMES = { west: 'Kesh Varomin', east: 'Kesh Tulheva', north: 'Kesh Oluspan' };
+export const RANGE_NAMES = { west: 'Ghelm Varomin', east: 'Ghelm Tulheva', north: 'Ghelm Oluspan' };
 export const PLATEAU_NAME = 'Dul Meshara';
 export const ISLAND_NAMES = { north: 'Isk Purovath', south: 'Isk Zelemu', east: 'Isk Ummorel' };
 

@@ -1,11 +1,15 @@
 import { INVENTED } from './elevation-file.mjs';
-import { LAND_NAME } from './names.mjs';
+import { ISLAND_NAMES, LAND_NAME, PLATEAU_NAME, RANGE_NAMES, RIVER_NAMES } from './names.mjs';
 
 /** The README of the output folder: what each file is, and that all of it is invented. */
 export function outReadme(seed, comparison) {
   return `# Output of \`npm run demo\` (seed ${seed})
 
 **${INVENTED}** Land, names, stations, records, sites and truth are drawn by \`scripts/demo/\`; do not use any of it as data.
+
+${LAND_NAME} is put in an empty stretch of the South Pacific. Westerly winds meet ${RANGE_NAMES.west} first; in its shadow
+lies ${PLATEAU_NAME}, with ${RANGE_NAMES.north} north and ${RANGE_NAMES.east} east of it. Off the coast: ${Object.values(ISLAND_NAMES).join(', ')}.
+The sites stand along ${RIVER_NAMES.length} rivers, from ${RIVER_NAMES[0]} to ${RIVER_NAMES.at(-1)}.
 
 | file | what it is |
 | --- | --- |

@@ -1,16 +1,18 @@
 import { createRandom } from './random.mjs';
-import { drawMonth, drawSharedWeather, FIRST_YEAR, YEAR_COUNT } from './weather.mjs';
+import { drawMonth, FIRST_YEAR, MONTH_COUNT } from './weather.mjs';
 
 /**
  * Monthly records of every station, with the gaps real networks have: late starts, early ends, months nobody
  * emptied the collector, samples lost on the way, amounts never written down.
  */
 
-const MONTH_COUNT = YEAR_COUNT * 12;
-
-/** Returns rows { station, month: 'YYYY-MM', precipMm, d18O, d2H }, NaN where missing, station after station. */
-export function drawRecords(seed, stations, truth) {
-  const sharedAt = drawSharedWeather(createRandom(seed, 'shared weather'));
+/**
+ * Draws the records of all stations; `sharedAt` is the weather they share.
+ *
+ * @returns rows { station, month: 'YYYY-MM', precipMm, d18O, d2H }, NaN where missing, station after
+ *   station
+ */
+export function drawRecords(seed, stations, truth, sharedAt) {
   return stations.flatMap((station) => {
     const weather = createRandom(seed, `weather of ${station.id}`);
     const gaps = createRandom(seed, `gaps of ${station.id}`);

@@ -80,7 +80,11 @@ export function createTruth(seed, land) {
     });
     return { months, amountShape: 3.2 - 1.6 * where.shadow, ...where };
   };
-  return { climate, longTermMean: (place) => longTermMean(climate(place)) };
+  return {
+    climate,
+    longTermMean: (place) => longTermMean(climate(place)),
+    periodMean: (place, sharedAt, monthCount) => periodMean(climate(place), sharedAt, monthCount),
+  };
 }
 
 /** Wet on the windward slopes, dry in the shadow. */
@@ -104,6 +108,24 @@ function longTermMean({ months, amountShape }) {
     d2H += month.amountMm * (month.d2H + AMOUNT_EFFECT.d2H / amountShape);
   }
   return { d18O: d18O / amount, d2H: d2H / amount };
+}
+
+/**
+ * The same for one period alone, given the weather the whole land or a part of it shared in it: what a perfect
+ * network of that period could know. The network's years are no endless record, whatever their number of stations.
+ */
+function periodMean(climate, sharedAt, monthCount) {
+  const mean = longTermMean(climate);
+  let amount = 0;
+  const shift = { d18O: 0, d2H: 0 };
+  for (let monthIndex = 0; monthIndex < monthCount; monthIndex++) {
+    const { amountMm } = climate.months[monthIndex % 12];
+    const shared = sharedAt(monthIndex, climate.xKm);
+    amount += amountMm;
+    shift.d18O += amountMm * shared.d18O;
+    shift.d2H += amountMm * shared.d2H;
+  }
+  return { d18O: mean.d18O + shift.d18O / amount, d2H: mean.d2H + shift.d2H / amount };
 }
 
 /** A place's own departure from the smooth truth, with heavy tails. */

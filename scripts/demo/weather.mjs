@@ -6,7 +6,8 @@ import { AMOUNT_EFFECT } from './truth.mjs';
  */
 
 export const FIRST_YEAR = 2011;
-export const YEAR_COUNT = 8;
+const YEAR_COUNT = 8;
+export const MONTH_COUNT = YEAR_COUNT * 12;
 /** Slope of a place's own monthly departures. */
 export const WITHIN_SLOPE = 7.4;
 const LAB_SD = { d18O: 0.1, d2H: 0.8 };
@@ -20,7 +21,7 @@ export function drawSharedWeather(random) {
     return { d18O, d2H: slope * d18O + sdAcross * random.heavyTailed() };
   };
   const years = Array.from({ length: YEAR_COUNT }, () => pair(0.3, 8, 0.5));
-  const months = Array.from({ length: YEAR_COUNT * 12 }, () =>
+  const months = Array.from({ length: MONTH_COUNT }, () =>
     [-360, 0, 360].map(() => pair(0.9, WITHIN_SLOPE, 1.2)),
   );
   return (monthIndex, xKm) => {

@@ -44,6 +44,8 @@ export interface World {
   readonly stations: readonly InventedStation[];
   readonly sites: readonly InventedSite[];
   readonly siteTruths: readonly Pair[];
+  /** The same for the eight years alone, given the weather all stations shared. */
+  readonly sitePeriodMeans: readonly Pair[];
   /** As measured; `rows` is the same with the planted errors in. */
   readonly records: readonly InventedRecord[];
   readonly rows: readonly InventedRecord[];
