@@ -6,6 +6,8 @@ export interface Pair {
   readonly d2H: number;
 }
 
+export type SharedWeather = (monthIndex: number, xKm: number) => Pair;
+
 /** Where something stands, with its own departure from the smooth truth. */
 export interface TruePlace {
   readonly lonDeg: number;
@@ -40,7 +42,13 @@ export interface PlantedErrors {
 export interface World {
   readonly seed: number;
   readonly land: Land;
-  readonly truth: { climate(place: TruePlace): Climate; longTermMean(place: TruePlace): Pair };
+  readonly truth: {
+    climate(place: TruePlace): Climate;
+    longTermMean(place: TruePlace): Pair;
+    periodMean(place: TruePlace, sharedAt: SharedWeather, monthCount: number): Pair;
+  };
+  /** Departures of the eight years that a place shares with others. */
+  readonly sharedAt: SharedWeather;
   readonly stations: readonly InventedStation[];
   readonly sites: readonly InventedSite[];
   readonly siteTruths: readonly Pair[];

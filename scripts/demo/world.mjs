@@ -29,6 +29,7 @@ export function createWorld(seed, land = createLand()) {
     sites,
     siteTruths,
     sitePeriodMeans,
+    sharedAt,
     records,
     ...plantErrors(seed, stations, records),
   };

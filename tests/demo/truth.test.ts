@@ -3,7 +3,7 @@ import { BOUNDS, createLand } from '../../scripts/demo/land.mjs';
 import { createRandom } from '../../scripts/demo/random.mjs';
 import { elevationEffect, spatialSlope } from '../../scripts/demo/truth.mjs';
 import { type Climate, drawMonth, WITHIN_SLOPE } from '../../scripts/demo/weather.mjs';
-import { createWorld, type World } from '../../scripts/demo/world.mjs';
+import { createWorld, type SharedWeather, type World } from '../../scripts/demo/world.mjs';
 
 const land = createLand();
 const worlds = [1, 2, 3].map((seed) => createWorld(seed, land));
@@ -45,7 +45,7 @@ describe('the truth', () => {
     expect(mean(slopes.map(([, east]) => east!))).toBeGreaterThan(mean(slopes.map(([west]) => west!)) + 0.4);
   });
 
-  it('has tails heavier than Gaussian: excess kurtosis of the draws above 1.5 (3.9 untruncated at 6 SD)', () => {
+  it('has tails heavier than Gaussian: excess kurtosis of the draws above 1.5 (6 for t with 5 degrees of freedom, uncut)', () => {
     const random = createRandom(11, 'tails');
     const draws = Array.from({ length: 40_000 }, () => random.heavyTailed());
     const variance = mean(draws.map((x) => x * x));
@@ -72,14 +72,28 @@ describe('the truth', () => {
     }
   });
 
-  it('is what an endless record would average to (400 complete times 96 months, within 4 standard errors)', () => {
+  it('is what an endless record would average to (400 times 96 months, within 4 standard errors)', () => {
     const world = worlds[1]!;
+    const none: SharedWeather = () => ({ d18O: 0, d2H: 0 });
     for (const station of [world.stations[3]!, world.stations[77]!]) {
       const truth = world.truth.longTermMean(station);
-      const { d18O, d2H, seD18O, seD2H } = longRecordMean(world.truth.climate(station), 400);
-      expect(Math.abs(d18O - truth.d18O)).toBeLessThan(4 * seD18O);
-      expect(Math.abs(d2H - truth.d2H)).toBeLessThan(4 * seD2H);
-      expect(seD18O).toBeLessThan(0.02); // sharp enough to see the amount effect, 0.2 permil
+      const drawn = longRecordMean(world.truth.climate(station), none, 400);
+      expect(Math.abs(drawn.d18O - truth.d18O)).toBeLessThan(4 * drawn.seD18O);
+      expect(Math.abs(drawn.d2H - truth.d2H)).toBeLessThan(4 * drawn.seD2H);
+      expect(drawn.seD18O).toBeLessThan(0.02); // sharp enough to see the amount effect, 0.2 permil
+    }
+  });
+
+  it('of the eight years alone is what many collectors at one place would average to', () => {
+    const world = worlds[1]!;
+    for (const station of [world.stations[12]!, world.stations[100]!]) {
+      const period = world.truth.periodMean(station, world.sharedAt, 96);
+      const drawn = longRecordMean(world.truth.climate(station), world.sharedAt, 400);
+      expect(Math.abs(drawn.d18O - period.d18O)).toBeLessThan(4 * drawn.seD18O);
+      expect(Math.abs(drawn.d2H - period.d2H)).toBeLessThan(4 * drawn.seD2H);
+      expect(Math.abs(period.d18O - world.truth.longTermMean(station).d18O)).toBeGreaterThan(
+        4 * drawn.seD18O,
+      );
     }
   });
 });
@@ -110,16 +124,20 @@ function groupByMonth(rows: World['records']): Map<string, World['records'][numb
   return groups;
 }
 
-/** Amount-weighted mean of `repeats` × 96 months without shared weather, with its standard error over repeats. */
-function longRecordMean(climate: Climate, repeats: number) {
+/** Amount-weighted mean of `repeats` × 96 months, with its standard error over repeats. */
+function longRecordMean(climate: Climate, sharedAt: SharedWeather, repeats: number) {
   const random = createRandom(5, 'long record');
-  const quiet = { d18O: 0, d2H: 0 };
   const sums = { amount: 0, d18O: 0, d2H: 0 };
   const means: { d18O: number; d2H: number }[] = [];
   for (let k = 0; k < repeats; k++) {
     const part = { amount: 0, d18O: 0, d2H: 0 };
     for (let monthIndex = 0; monthIndex < 96; monthIndex++) {
-      const { precipMm, d18O, d2H } = drawMonth(random, climate, monthIndex, quiet);
+      const { precipMm, d18O, d2H } = drawMonth(
+        random,
+        climate,
+        monthIndex,
+        sharedAt(monthIndex, climate.xKm),
+      );
       if (Number.isNaN(d18O)) continue;
       part.amount += precipMm;
       part.d18O += precipMm * d18O;
