@@ -183,7 +183,7 @@ describe('bad rows', () => {
     const run = await sites(table('bad.csv', text));
     expect(run.exitCode).toBe(2);
     expect(run.stderr).toMatch(/^rainprint: SITES_WITH_PROBLEMS: 4 of 5 rows/m);
-    expect(run.stderr).toContain('line 3: not-a-number: column lon has "x"');
+    expect(run.stderr).toContain('line 3: not-a-number: column lon: found "x", expected a number');
     const rows = parseCsv(run.stdout);
     expect(rows.map(({ id }) => id)).toEqual(['ok', 'bad', 'swapped', 'high', 'ragged']);
     expect(rows[0].problem).toBe('');

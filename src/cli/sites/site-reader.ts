@@ -43,7 +43,7 @@ export function createSiteReader(table: Table<SiteMeaning>): (row: TableRow) => 
   const read = (row: TableRow): Site => {
     if (row.problem !== null) {
       throw new RowProblemFound(
-        `${row.problem.kind}: ${row.problem.value} found, ${row.problem.expected} expected`,
+        `${row.problem.kind}: found ${row.problem.value}, expected ${row.problem.expected}`,
       );
     }
     const number = (column: number) => numberIn(table, row, column);
@@ -75,7 +75,7 @@ function numberIn(table: Table<SiteMeaning>, row: TableRow, column: number): num
   if (!isNumberProblem(value)) return value;
   const cell = row.cells[column].trim().slice(0, 60);
   throw new RowProblemFound(
-    `${value.problem}: column ${table.header[column]} has "${cell}", ${value.expected} expected`,
+    `${value.problem}: column ${table.header[column]}: found "${cell}", expected ${value.expected}`,
   );
 }
 
@@ -85,16 +85,16 @@ function checkPlace(lonDeg: number, latDeg: number): void {
   }
   if (Math.abs(latDeg) > 90 && Math.abs(lonDeg) <= 90 && Math.abs(latDeg) <= 180) {
     throw new RowProblemFound(
-      `coordinates-swapped: latitude ${latDeg} and longitude ${lonDeg} found, they look exchanged`,
+      `coordinates-swapped: found latitude ${latDeg} and longitude ${lonDeg}, which look exchanged`,
     );
   }
   if (Math.abs(latDeg) > 90) {
-    throw new RowProblemFound(`coordinates-out-of-range: latitude ${latDeg} found, -90 to 90 expected`);
+    throw new RowProblemFound(`coordinates-out-of-range: found latitude ${latDeg}, expected -90 to 90`);
   }
   if (Math.abs(lonDeg) > 180) {
     const hint = lonDeg > 180 && lonDeg <= 360 ? ` (${lonDeg} as 0..360 is ${lonDeg - 360})` : '';
     throw new RowProblemFound(
-      `coordinates-out-of-range: longitude ${lonDeg} found, -180 to 180 expected${hint}`,
+      `coordinates-out-of-range: found longitude ${lonDeg}, expected -180 to 180${hint}`,
     );
   }
 }
@@ -102,5 +102,5 @@ function checkPlace(lonDeg: number, latDeg: number): void {
 function checkElevation(elevationM: number): void {
   if (!isOutside(elevationM, ELEVATION_BOUNDS)) return;
   const { min, max } = ELEVATION_BOUNDS;
-  throw new RowProblemFound(`elevation-implausible: ${elevationM} m found, ${min} to ${max} m expected`);
+  throw new RowProblemFound(`elevation-implausible: found ${elevationM} m, expected ${min} to ${max} m`);
 }
