@@ -61,13 +61,13 @@ export class MeansBook {
     if (outcome !== null) return outcome;
     const values = this.#values(row);
     if (row.spoilt || !this.#hasValue(values)) return 'leftOut';
-    if (!station.placeRow(row, this.log)) return 'leftOut';
-    station.soundRows++;
-    if (station.means !== null) {
+    if (station.means !== null && station.isHere(row)) {
       const message = `${shown(row.id)} has a mean on line ${station.means.line} already; expected one row a station`;
       this.log.add('id-repeated', { line: row.line, value: row.id, stationId: row.id }, message);
       return 'leftOut';
     }
+    if (!station.placeRow(row, this.log)) return 'leftOut';
+    station.soundRows++;
     station.means = values;
     return 'averaged';
   }

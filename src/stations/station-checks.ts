@@ -77,7 +77,7 @@ export class StationJudge {
       return false;
     }
     if (!isOutside(mean.elevationM, ELEVATION_BOUNDS)) return true;
-    const expected = `land lies within ${ELEVATION_BOUNDS.min} to ${ELEVATION_BOUNDS.max} m`;
+    const expected = `expected ${ELEVATION_BOUNDS.min} to ${ELEVATION_BOUNDS.max} m, where there is land`;
     const message = `elevation is ${mean.elevationM} m; ${expected} (is the unit metres?)`;
     this.#issue('elevation-implausible', candidate, 'elevation', mean.elevationM, message);
     return false;

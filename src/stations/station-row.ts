@@ -173,7 +173,7 @@ export class RowReader {
     const value = this.number(meaning, needed ? 'left-out' : 'flagged');
     const bounds = meaning === 'd18O' ? D18O_BOUNDS : D2H_BOUNDS;
     if (!isOutside(value, bounds)) return value;
-    const said = `${meaning} is ${value} ‰; precipitation lies within ${bounds.min} to ${bounds.max} ‰`;
+    const said = `${meaning} is ${value} ‰; expected ${bounds.min} to ${bounds.max} ‰, beyond which no precipitation is known`;
     this.issue(
       meaning === 'd18O' ? 'd18O-impossible' : 'd2H-impossible',
       meaning,

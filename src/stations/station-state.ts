@@ -61,7 +61,7 @@ export class StationState {
 
   /** Takes over or compares the row's place. False (listed) where the id stands for another place. */
   placeRow(row: StationRow, log: IssueLog): boolean {
-    if (!this.#isHere(row)) {
+    if (!this.isHere(row)) {
       const away = chordM(this.position!, positionM(row.lonDeg, row.latDeg));
       const first = `${shown(this.id)} lies at ${this.lonDeg}, ${this.latDeg} since its first row`;
       const message = `${first}; this row is ${distanceText(away)} away: expected one place for one id`;
@@ -98,7 +98,8 @@ export class StationState {
     return (seen & bit) === 0;
   }
 
-  #isHere(row: StationRow): boolean {
+  /** Whether the row gives no place, or the station's own within 100 m. */
+  isHere(row: StationRow): boolean {
     if (this.position === null || Number.isNaN(row.lonDeg) || Number.isNaN(row.latDeg)) return true;
     if (row.lonDeg === this.lonDeg && row.latDeg === this.latDeg) return true;
     return chordM(this.position, positionM(row.lonDeg, row.latDeg)) <= SAME_PLACE_M;
