@@ -20,8 +20,8 @@ export type Baseline = (
 export const meanBaseline: Baseline = (values, heldOut, mean, variance) => {
   const training = trainingIndices(values.length, heldOut);
   const n = training.length;
-  const average = training.reduce((sum, i) => sum + values[i]!, 0) / n;
-  const squares = training.reduce((sum, i) => sum + (values[i]! - average) ** 2, 0);
+  const average = training.reduce((sum, i) => sum + values[i], 0) / n;
+  const squares = training.reduce((sum, i) => sum + (values[i] - average) ** 2, 0);
   for (const i of heldOut) {
     mean[i] = n > 1 ? average : Number.NaN;
     variance[i] = n > 1 ? (squares / (n - 1)) * (1 + 1 / n) : Number.NaN;
@@ -51,7 +51,7 @@ export function regressionBaseline(trend: Float64Array, p: number): Baseline {
     }
     if (inverse === undefined || coefficients === undefined || training.length <= p) return;
     const fitted = (i: number) => dot(q, i, coefficients);
-    const squares = training.reduce((sum, i) => sum + (values[i]! - fitted(i)) ** 2, 0);
+    const squares = training.reduce((sum, i) => sum + (values[i] - fitted(i)) ** 2, 0);
     const residualVariance = squares / (training.length - p);
     for (const i of heldOut) {
       mean[i] = fitted(i);
@@ -78,7 +78,7 @@ function inverseOfTraining(q: Matrix, heldOut: readonly number[]): Matrix | unde
 function projection(q: Matrix, values: Float64Array, training: readonly number[]): Matrix {
   const out = Matrix.zeros(q.columns, 1);
   for (const i of training) {
-    for (let a = 0; a < q.columns; a++) out.set(a, 0, out.get(a, 0) + q.get(i, a) * values[i]!);
+    for (let a = 0; a < q.columns; a++) out.set(a, 0, out.get(a, 0) + q.get(i, a) * values[i]);
   }
   return out;
 }
@@ -103,12 +103,12 @@ export function nearestBaseline(neighbours: Neighbours): Baseline {
       if (excluded[i] !== 0) continue;
       const near = neighbours.nearest(i, excluded);
       if (near < 0) continue;
-      squares += (values[i]! - values[near]!) ** 2;
+      squares += (values[i] - values[near]) ** 2;
       pairs += 1;
     }
     for (const i of heldOut) {
       const near = neighbours.nearest(i, excluded);
-      mean[i] = near < 0 ? Number.NaN : values[near]!;
+      mean[i] = near < 0 ? Number.NaN : values[near];
       variance[i] = pairs === 0 ? Number.NaN : squares / pairs;
     }
   };

@@ -49,9 +49,9 @@ function assign(
 /** The places in order along their first principal axis; ties keep the order of `comparePlaces`. */
 function alongLongestAxis(positionsKm: Float64Array, places: readonly number[]): number[] {
   const centre = [0, 1, 2].map(
-    (axis) => places.reduce((sum, place) => sum + positionsKm[3 * place + axis]!, 0) / places.length,
+    (axis) => places.reduce((sum, place) => sum + positionsKm[3 * place + axis], 0) / places.length,
   );
-  const offset = (place: number, axis: number) => positionsKm[3 * place + axis]! - centre[axis]!;
+  const offset = (place: number, axis: number) => positionsKm[3 * place + axis] - centre[axis];
   const spread = Matrix.zeros(3, 3);
   for (const place of places) {
     for (let a = 0; a < 3; a++) {
@@ -80,7 +80,7 @@ function longestAxis(spread: Matrix): number[] {
 
 function comparePlaces(positionsKm: Float64Array, a: number, b: number): number {
   for (let axis = 0; axis < 3; axis++) {
-    const difference = positionsKm[3 * a + axis]! - positionsKm[3 * b + axis]!;
+    const difference = positionsKm[3 * a + axis] - positionsKm[3 * b + axis];
     if (difference !== 0) return difference;
   }
   return 0;

@@ -40,9 +40,9 @@ export class FieldSystem {
     const factor = new Float64Array(n * n);
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < i; j++) {
-        factor[i * n + j] = parameters.sill * rho(distancesKm[i * n + j]! / parameters.rangeKm);
+        factor[i * n + j] = parameters.sill * rho(distancesKm[i * n + j] / parameters.rangeKm);
       }
-      factor[i * n + i] = parameters.sill + parameters.nugget + errorVariance[i]!;
+      factor[i * n + i] = parameters.sill + parameters.nugget + errorVariance[i];
     }
     choleskyInPlace(factor, n);
     this.#whitenedTrend = Float64Array.from(trend);
@@ -66,7 +66,7 @@ export class FieldSystem {
     solveLowerInPlace(this.#trendFactor, p, coefficients);
     solveLowerTransposedInPlace(this.#trendFactor, p, coefficients);
     for (let i = 0; i < n; i++) {
-      for (let c = 0; c < p; c++) weights[i]! -= this.#whitenedTrend[i * p + c]! * coefficients[c]!;
+      for (let c = 0; c < p; c++) weights[i] -= this.#whitenedTrend[i * p + c] * coefficients[c];
     }
     solveLowerTransposedInPlace(this.#factor, n, weights);
     return { coefficients, weights };
@@ -81,7 +81,7 @@ export class FieldSystem {
       unit[c] = 1;
       solveLowerInPlace(this.#trendFactor, p, unit);
       solveLowerTransposedInPlace(this.#trendFactor, p, unit);
-      for (let r = 0; r < p; r++) out[r * p + c] = unit[r]!;
+      for (let r = 0; r < p; r++) out[r * p + c] = unit[r];
     }
     return out;
   }
@@ -111,19 +111,19 @@ export class FieldSystem {
     const w = this.#whitenedTrend;
     const g = this.#trendFactor;
     for (let j = 0; j < count; j++) {
-      for (let a = 0; a < p; a++) out[j * p + a] = trendRows[(firstRow + j) * p + a]!;
+      for (let a = 0; a < p; a++) out[j * p + a] = trendRows[(firstRow + j) * p + a];
     }
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < count; j++) {
-        const value = c[i * count + j]!;
-        for (let a = 0; a < p; a++) out[j * p + a]! -= w[i * p + a]! * value;
+        const value = c[i * count + j];
+        for (let a = 0; a < p; a++) out[j * p + a] -= w[i * p + a] * value;
       }
     }
     for (let j = 0; j < count; j++) {
       for (let a = 0; a < p; a++) {
-        let value = out[j * p + a]!;
-        for (let b = 0; b < a; b++) value -= g[a * p + b]! * out[j * p + b]!;
-        out[j * p + a] = value / g[a * p + a]!;
+        let value = out[j * p + a];
+        for (let b = 0; b < a; b++) value -= g[a * p + b] * out[j * p + b];
+        out[j * p + a] = value / g[a * p + a];
       }
     }
   }
@@ -154,7 +154,7 @@ export class FieldSystem {
     // λ = V⁻¹c + V⁻¹F(FᵀV⁻¹F)⁻¹r: solve the trend part back, add, then through Lᵀ.
     solveLowerTransposedInPlace(this.#trendFactor, p, r);
     for (let i = 0; i < n; i++) {
-      for (let a = 0; a < p; a++) c[i]! += this.#whitenedTrend[i * p + a]! * r[a]!;
+      for (let a = 0; a < p; a++) c[i] += this.#whitenedTrend[i * p + a] * r[a];
     }
     solveLowerTransposedInPlace(this.#factor, n, c);
     return c;
@@ -205,17 +205,17 @@ export function predictField(
     const block = Math.min(PLACES_PER_BLOCK, count - first);
     system.covariances(places, first, block, covariances);
     for (let d = 0; d < data.length; d++) {
-      writeMeans(covariances, n, p, block, trendRows, first, data[d]!, means[d]!);
+      writeMeans(covariances, n, p, block, trendRows, first, data[d], means[d]);
     }
     system.reduce(covariances, block, trendRows, first, reduced);
     for (let j = 0; j < block; j++) variance[first + j] = system.parameters.sill;
     for (let i = 0; i < n; i++) {
-      for (let j = 0; j < block; j++) variance[first + j]! -= covariances[i * block + j]! ** 2;
+      for (let j = 0; j < block; j++) variance[first + j] -= covariances[i * block + j] ** 2;
     }
     for (let j = 0; j < block; j++) {
       // The explained part can exceed the sill by rounding at a station without nugget.
-      let value = Math.max(0, variance[first + j]!);
-      for (let a = 0; a < p; a++) value += reduced[j * p + a]! ** 2;
+      let value = Math.max(0, variance[first + j]);
+      for (let a = 0; a < p; a++) value += reduced[j * p + a] ** 2;
       variance[first + j] = value;
     }
   }
@@ -233,11 +233,11 @@ function writeMeans(
 ): void {
   for (let j = 0; j < block; j++) {
     let value = 0;
-    for (let a = 0; a < p; a++) value += trendRows[(first + j) * p + a]! * coefficients[a]!;
+    for (let a = 0; a < p; a++) value += trendRows[(first + j) * p + a] * coefficients[a];
     mean[first + j] = value;
   }
   for (let i = 0; i < n; i++) {
-    const weight = weights[i]!;
-    for (let j = 0; j < block; j++) mean[first + j]! += covariances[i * block + j]! * weight;
+    const weight = weights[i];
+    for (let j = 0; j < block; j++) mean[first + j] += covariances[i * block + j] * weight;
   }
 }

@@ -41,10 +41,10 @@ export function empiricalVariogram(input: VariogramInput): VariogramBin[] {
     for (let j = 0; j < i; j++) {
       const h = straightDistance(positionsKm, i, j);
       if (h > maximumKm || h === 0) continue;
-      const bin = sums[Math.min(binCount - 1, Math.floor((h / maximumKm) * binCount))]!;
+      const bin = sums[Math.min(binCount - 1, Math.floor((h / maximumKm) * binCount))];
       bin.pairs += 1;
       bin.distance += h;
-      bin.squares += (residuals[i]! - residuals[j]!) ** 2 + correction(input, i, j);
+      bin.squares += (residuals[i] - residuals[j]) ** 2 + correction(input, i, j);
     }
   }
   const widthKm = maximumKm / binCount;
@@ -69,17 +69,17 @@ function correction(input: VariogramInput, i: number, j: number): number {
   const p = Math.round(Math.sqrt(coefficientCovariance.length));
   let absorbed = 0;
   for (let a = 0; a < p; a++) {
-    const differenceA = trend[i * p + a]! - trend[j * p + a]!;
+    const differenceA = trend[i * p + a] - trend[j * p + a];
     for (let b = 0; b < p; b++) {
-      absorbed += differenceA * coefficientCovariance[a * p + b]! * (trend[i * p + b]! - trend[j * p + b]!);
+      absorbed += differenceA * coefficientCovariance[a * p + b] * (trend[i * p + b] - trend[j * p + b]);
     }
   }
-  return absorbed - errorVariance[i]! - errorVariance[j]!;
+  return absorbed - errorVariance[i] - errorVariance[j];
 }
 
 function straightDistance(positionsKm: Float64Array, i: number, j: number): number {
-  const dx = positionsKm[3 * i]! - positionsKm[3 * j]!;
-  const dy = positionsKm[3 * i + 1]! - positionsKm[3 * j + 1]!;
-  const dz = positionsKm[3 * i + 2]! - positionsKm[3 * j + 2]!;
+  const dx = positionsKm[3 * i] - positionsKm[3 * j];
+  const dy = positionsKm[3 * i + 1] - positionsKm[3 * j + 1];
+  const dz = positionsKm[3 * i + 2] - positionsKm[3 * j + 2];
   return Math.sqrt(dx * dx + dy * dy + dz * dz);
 }

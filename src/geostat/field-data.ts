@@ -84,8 +84,8 @@ export function scaledCondition(trend: Float64Array, n: number, p: number): numb
     scaled.mulColumn(c, 1 / norm);
   }
   const singular = new SingularValueDecomposition(scaled).diagonal;
-  const smallest = singular[singular.length - 1]!;
-  return smallest > 0 ? singular[0]! / smallest : Number.POSITIVE_INFINITY;
+  const smallest = singular[singular.length - 1];
+  return smallest > 0 ? singular[0] / smallest : Number.POSITIVE_INFINITY;
 }
 
 function logAbsDiagonalOfR(f: Matrix): number {
@@ -105,9 +105,9 @@ export function ordinaryLeastSquares(
   let squares = 0;
   for (let i = 0; i < n; i++) {
     let fitted = 0;
-    for (let c = 0; c < p; c++) fitted += trend[i * p + c]! * coefficients[c]!;
-    residuals[i] = z[i]! - fitted;
-    squares += residuals[i]! ** 2;
+    for (let c = 0; c < p; c++) fitted += trend[i * p + c] * coefficients[c];
+    residuals[i] = z[i] - fitted;
+    squares += residuals[i] ** 2;
   }
   return { coefficients, residuals, residualVariance: squares / (n - p) };
 }

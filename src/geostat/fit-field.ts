@@ -179,11 +179,11 @@ function localDerivatives(
   jacobianAt(space, x, jacobian);
   for (let i = 0; i < width; i++) {
     for (let a = 0; a < 3; a++) {
-      gradient[i]! += jacobian[a * width + i]! * natural[a]!;
+      gradient[i] += jacobian[a * width + i] * natural[a];
       for (let j = 0; j < width; j++) {
         for (let b = 0; b < 3; b++) {
-          information[i * width + j]! +=
-            jacobian[a * width + i]! * naturalInformation[a * 3 + b]! * jacobian[b * width + j]!;
+          information[i * width + j] +=
+            jacobian[a * width + i] * naturalInformation[a * 3 + b] * jacobian[b * width + j];
         }
       }
     }

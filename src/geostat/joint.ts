@@ -24,24 +24,24 @@ export function predictFieldJointly(
   system.covariances(places, 0, count, c);
   for (let j = 0; j < count; j++) {
     let value = 0;
-    for (let a = 0; a < p; a++) value += trendRows[j * p + a]! * data.coefficients[a]!;
-    for (let i = 0; i < n; i++) value += c[i * count + j]! * data.weights[i]!;
+    for (let a = 0; a < p; a++) value += trendRows[j * p + a] * data.coefficients[a];
+    for (let i = 0; i < n; i++) value += c[i * count + j] * data.weights[i];
     mean[j] = value;
   }
   system.reduce(c, count, trendRows, 0, r);
   fillSignal(system.family, system.parameters, places, count, system.geometry.metric, covariance);
   for (let i = 0; i < n; i++) {
     for (let j = 0; j < count; j++) {
-      const x = c[i * count + j]!;
-      for (let k = 0; k <= j; k++) covariance[j * count + k]! -= x * c[i * count + k]!;
+      const x = c[i * count + j];
+      for (let k = 0; k <= j; k++) covariance[j * count + k] -= x * c[i * count + k];
     }
   }
   for (let j = 0; j < count; j++) {
     for (let k = 0; k <= j; k++) {
-      for (let a = 0; a < p; a++) covariance[j * count + k]! += r[j * p + a]! * r[k * p + a]!;
-      covariance[k * count + j] = covariance[j * count + k]!;
+      for (let a = 0; a < p; a++) covariance[j * count + k] += r[j * p + a] * r[k * p + a];
+      covariance[k * count + j] = covariance[j * count + k];
     }
-    covariance[j * count + j] = Math.max(0, covariance[j * count + j]!);
+    covariance[j * count + j] = Math.max(0, covariance[j * count + j]);
   }
 }
 
@@ -75,8 +75,8 @@ export function weightedAverage(
   let average = 0;
   let variance = 0;
   for (let j = 0; j < count; j++) {
-    average += weights[j]! * mean[j]!;
-    for (let k = 0; k < count; k++) variance += weights[j]! * weights[k]! * covariance[j * count + k]!;
+    average += weights[j] * mean[j];
+    for (let k = 0; k < count; k++) variance += weights[j] * weights[k] * covariance[j * count + k];
   }
   return { mean: average, variance: Math.max(0, variance) };
 }

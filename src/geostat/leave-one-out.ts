@@ -25,9 +25,9 @@ export function leaveOneOutField(
     likelihood.evaluate(z, parameters);
     if (d === 0) likelihood.diagonalOfQ(diagonal);
     const qz = likelihood.weights;
-    for (let i = 0; i < geometry.n; i++) residuals[d]![i] = qz[i]! / diagonal[i]!;
+    for (let i = 0; i < geometry.n; i++) residuals[d][i] = qz[i] / diagonal[i];
   });
-  for (let i = 0; i < geometry.n; i++) variance[i] = 1 / diagonal[i]!;
+  for (let i = 0; i < geometry.n; i++) variance[i] = 1 / diagonal[i];
 }
 
 /**
@@ -48,7 +48,7 @@ export function leaveGroupOutField(
   const k = group.length;
   const block = new Float64Array(k * k);
   for (let a = 0; a < k; a++) {
-    for (let b = 0; b < k; b++) block[a * k + b] = q[group[a]! * geometry.n + group[b]!]!;
+    for (let b = 0; b < k; b++) block[a * k + b] = q[group[a] * geometry.n + group[b]];
   }
   choleskyInPlace(block, k);
   const solve = (x: Float64Array): Float64Array => {
@@ -56,7 +56,7 @@ export function leaveGroupOutField(
     solveLowerTransposedInPlace(block, k, x);
     return x;
   };
-  const residuals = solve(Float64Array.from(group, (i) => likelihood.weights[i]!));
+  const residuals = solve(Float64Array.from(group, (i) => likelihood.weights[i]));
   const covariance = new Float64Array(k * k);
   for (let a = 0; a < k; a++) {
     const unit = new Float64Array(k);

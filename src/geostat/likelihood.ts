@@ -105,16 +105,16 @@ export class FieldLikelihood {
     crossProduct(w, p, y, 1, n, beta);
     solveLowerInPlace(g, p, beta);
     solveLowerTransposedInPlace(g, p, beta);
-    for (let i = 0; i < n; i++) for (let c = 0; c < p; c++) y[i]! -= w[i * p + c]! * beta[c]!;
+    for (let i = 0; i < n; i++) for (let c = 0; c < p; c++) y[i] -= w[i * p + c] * beta[c];
     const quadratic = innerProduct(y, y);
     this.#qz.set(y);
     solveLowerTransposedInPlace(factor, n, this.#qz);
 
     let logDetV = 0;
-    for (let i = 0; i < n; i++) logDetV += 2 * Math.log(factor[i * n + i]!);
+    for (let i = 0; i < n; i++) logDetV += 2 * Math.log(factor[i * n + i]);
     if (this.#criterion === 'maximum') return -0.5 * (n * LN_2PI + logDetV + quadratic);
     let logDetG = 0;
-    for (let c = 0; c < p; c++) logDetG += 2 * Math.log(g[c * p + c]!);
+    for (let c = 0; c < p; c++) logDetG += 2 * Math.log(g[c * p + c]);
     return -0.5 * ((n - p) * LN_2PI - logDetFtF + logDetV + logDetG + quadratic);
   }
 
@@ -146,17 +146,17 @@ export class FieldLikelihood {
     const moved = [new Float64Array(n), new Float64Array(n), new Float64Array(n)] as const;
     this.#fillSlope();
     symmetricProduct(this.#slope, n, qz, moved[0]);
-    for (let i = 0; i < n; i++) moved[0][i]! *= sill;
+    for (let i = 0; i < n; i++) moved[0][i] *= sill;
     symmetricProduct(this.#correlation, n, qz, moved[1]);
     moved[2].set(qz);
     const traces = this.#traces(trace, projection);
-    for (let k = 0; k < 3; k++) gradient[k] = -0.5 * (traces[k]! - innerProduct(qz, moved[k]!));
+    for (let k = 0; k < 3; k++) gradient[k] = -0.5 * (traces[k] - innerProduct(qz, moved[k]));
 
     const projected = new Float64Array(n);
     for (let k = 0; k < 3; k++) {
-      this.#applyQ(trace, projection, moved[k]!, projected);
+      this.#applyQ(trace, projection, moved[k], projected);
       for (let m = 0; m <= k; m++) {
-        const value = 0.5 * innerProduct(moved[m]!, projected);
+        const value = 0.5 * innerProduct(moved[m], projected);
         information[k * 3 + m] = value;
         information[m * 3 + k] = value;
       }
@@ -171,8 +171,8 @@ export class FieldLikelihood {
     inverseFromCholesky(this.#factor, n, this.#work, this.#inverse);
     const b = this.#projectionColumns();
     for (let i = 0; i < n; i++) {
-      let value = this.#inverse[i * n + i]!;
-      for (let c = 0; c < p; c++) value -= b[i * p + c]! ** 2;
+      let value = this.#inverse[i * n + i];
+      for (let c = 0; c < p; c++) value -= b[i * p + c] ** 2;
       out[i] = value;
     }
   }
@@ -185,7 +185,7 @@ export class FieldLikelihood {
     const b = this.#projectionColumns();
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < n; j++) {
-        for (let c = 0; c < p; c++) q[i * n + j]! -= b[i * p + c]! * b[j * p + c]!;
+        for (let c = 0; c < p; c++) q[i * n + j] -= b[i * p + c] * b[j * p + c];
       }
     }
     return q;
@@ -198,7 +198,7 @@ export class FieldLikelihood {
     const correlation = this.#correlation;
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < i; j++)
-        correlation[i * n + j] = family.correlation(distancesKm[i * n + j]! / rangeKm);
+        correlation[i * n + j] = family.correlation(distancesKm[i * n + j] / rangeKm);
       correlation[i * n + i] = 1;
     }
     this.#correlationRangeKm = rangeKm;
@@ -211,7 +211,7 @@ export class FieldLikelihood {
     const family = this.#family;
     const slope = this.#slope;
     for (let i = 0; i < n; i++) {
-      for (let j = 0; j < i; j++) slope[i * n + j] = family.logRangeSlope(distancesKm[i * n + j]! / rangeKm);
+      for (let j = 0; j < i; j++) slope[i * n + j] = family.logRangeSlope(distancesKm[i * n + j] / rangeKm);
       slope[i * n + i] = 0;
     }
   }
@@ -222,8 +222,8 @@ export class FieldLikelihood {
     const correlation = this.#correlation;
     for (let i = 0; i < n; i++) {
       const row = i * n;
-      for (let j = 0; j < i; j++) factor[row + j] = sill * correlation[row + j]!;
-      factor[row + i] = sill + nugget + this.#errorVariance[i]!;
+      for (let j = 0; j < i; j++) factor[row + j] = sill * correlation[row + j];
+      factor[row + i] = sill + nugget + this.#errorVariance[i];
     }
     choleskyInPlace(factor, n);
   }
@@ -238,15 +238,15 @@ export class FieldLikelihood {
     for (let c = 0; c < p; c++) {
       // Column c of W·chol(G)⁻ᵀ by forward substitution over the columns, then back through Lᵀ.
       for (let i = 0; i < n; i++) {
-        let value = w[i * p + c]!;
-        for (let m = 0; m < c; m++) value -= g[c * p + m]! * b[i * p + m]!;
-        b[i * p + c] = value / g[c * p + c]!;
+        let value = w[i * p + c];
+        for (let m = 0; m < c; m++) value -= g[c * p + m] * b[i * p + m];
+        b[i * p + c] = value / g[c * p + c];
       }
     }
     for (let c = 0; c < p; c++) {
-      for (let i = 0; i < n; i++) column[i] = b[i * p + c]!;
+      for (let i = 0; i < n; i++) column[i] = b[i * p + c];
       solveLowerTransposedInPlace(this.#factor, n, column);
-      for (let i = 0; i < n; i++) b[i * p + c] = column[i]!;
+      for (let i = 0; i < n; i++) b[i * p + c] = column[i];
     }
     return b;
   }
@@ -263,12 +263,12 @@ export class FieldLikelihood {
     for (let i = 0; i < n; i++) {
       const row = i * n;
       for (let j = 0; j <= i; j++) {
-        let m = inverse[row + j]!;
-        for (let c = 0; c < columns; c++) m -= b[i * p + c]! * b[j * p + c]!;
+        let m = inverse[row + j];
+        for (let c = 0; c < columns; c++) m -= b[i * p + c] * b[j * p + c];
         if (j === i) identityTrace += m;
         else {
-          slopeTrace += m * slope[row + j]!;
-          correlationTrace += m * correlation[row + j]!;
+          slopeTrace += m * slope[row + j];
+          correlationTrace += m * correlation[row + j];
         }
       }
     }
@@ -281,7 +281,7 @@ export class FieldLikelihood {
     multiplyVector(inverse, n, x, out);
     const along = new Float64Array(p);
     crossProduct(b, p, x, 1, n, along);
-    for (let i = 0; i < n; i++) for (let c = 0; c < p; c++) out[i]! -= b[i * p + c]! * along[c]!;
+    for (let i = 0; i < n; i++) for (let c = 0; c < p; c++) out[i] -= b[i * p + c] * along[c];
   }
 }
 
@@ -290,13 +290,13 @@ function symmetricProduct(a: Float64Array, n: number, x: Float64Array, out: Floa
   out.fill(0);
   for (let i = 0; i < n; i++) {
     const row = i * n;
-    const xi = x[i]!;
-    let sum = a[row + i]! * xi;
+    const xi = x[i];
+    let sum = a[row + i] * xi;
     for (let j = 0; j < i; j++) {
-      const value = a[row + j]!;
-      sum += value * x[j]!;
-      out[j]! += value * xi;
+      const value = a[row + j];
+      sum += value * x[j];
+      out[j] += value * xi;
     }
-    out[i]! += sum;
+    out[i] += sum;
   }
 }

@@ -24,7 +24,7 @@ export function findNeighbours(positionsKm: Float64Array): Neighbours {
     count,
     nearest(place, excluded) {
       for (let k = 0; k < kept; k++) {
-        const candidate = lists[place * kept + k]!;
+        const candidate = lists[place * kept + k];
         if (excluded[candidate] === 0) return candidate;
       }
       return scan(positionsKm, place, excluded);
@@ -40,11 +40,11 @@ function keepNearest(positionsKm: Float64Array, place: number, out: Int32Array):
   for (let j = 0; j < count; j++) {
     if (j === place) continue;
     const d = squaredDistance(positionsKm, place, j);
-    if (!(d < distances[out.length - 1]!)) continue;
+    if (!(d < distances[out.length - 1])) continue;
     let at = out.length - 1;
-    for (; at > 0 && d < distances[at - 1]!; at--) {
-      distances[at] = distances[at - 1]!;
-      out[at] = out[at - 1]!;
+    for (; at > 0 && d < distances[at - 1]; at--) {
+      distances[at] = distances[at - 1];
+      out[at] = out[at - 1];
     }
     distances[at] = d;
     out[at] = j;
@@ -66,8 +66,8 @@ function scan(positionsKm: Float64Array, place: number, excluded: Uint8Array): n
 }
 
 function squaredDistance(positionsKm: Float64Array, a: number, b: number): number {
-  const dx = positionsKm[3 * a]! - positionsKm[3 * b]!;
-  const dy = positionsKm[3 * a + 1]! - positionsKm[3 * b + 1]!;
-  const dz = positionsKm[3 * a + 2]! - positionsKm[3 * b + 2]!;
+  const dx = positionsKm[3 * a] - positionsKm[3 * b];
+  const dy = positionsKm[3 * a + 1] - positionsKm[3 * b + 1];
+  const dz = positionsKm[3 * a + 2] - positionsKm[3 * b + 2];
   return dx * dx + dy * dy + dz * dz;
 }

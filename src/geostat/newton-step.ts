@@ -19,20 +19,20 @@ export function updateSecant(
   to: Float64Array,
 ): void {
   const width = from.length;
-  const step = to.map((value, k) => value - from[k]!);
+  const step = to.map((value, k) => value - from[k]);
   const miss = new Float64Array(width);
   let inner = 0;
   for (let i = 0; i < width; i++) {
-    miss[i] = before.gradient[i]! - after.gradient[i]!;
+    miss[i] = before.gradient[i] - after.gradient[i];
     for (let j = 0; j < width; j++) {
-      miss[i]! -= (after.information[i * width + j]! + secant[i * width + j]!) * step[j]!;
+      miss[i] -= (after.information[i * width + j] + secant[i * width + j]) * step[j];
     }
-    inner += miss[i]! * step[i]!;
+    inner += miss[i] * step[i];
   }
   const sizes = Math.hypot(...miss) * Math.hypot(...step);
   if (!(Math.abs(inner) > 1e-8 * sizes)) return;
   for (let i = 0; i < width; i++) {
-    for (let j = 0; j < width; j++) secant[i * width + j]! += (miss[i]! * miss[j]!) / inner;
+    for (let j = 0; j < width; j++) secant[i * width + j] += (miss[i] * miss[j]) / inner;
   }
 }
 
@@ -48,13 +48,13 @@ export function newtonStep(
   if (free.length === 0) return null;
   const factor = curvatureFactor(free, information, secant, damping);
   if (factor === null) return null;
-  const solved = factor.solve(Matrix.columnVector(free.map((k) => gradient[k]!))).to1DArray();
+  const solved = factor.solve(Matrix.columnVector(free.map((k) => gradient[k]))).to1DArray();
   const delta = new Float64Array(space.axes.length);
   let decrement = 0;
   free.forEach((k, i) => {
-    const limit = space.axes[k]!.maxStep;
-    decrement += solved[i]! * gradient[k]!;
-    delta[k] = Math.max(-limit, Math.min(limit, solved[i]!));
+    const limit = space.axes[k].maxStep;
+    decrement += solved[i] * gradient[k];
+    delta[k] = Math.max(-limit, Math.min(limit, solved[i]));
   });
   return { delta, decrement };
 }
@@ -62,10 +62,10 @@ export function newtonStep(
 /** Axes that are not held at a bound by the gradient. */
 function freeAxes(space: SearchSpace, x: Float64Array, gradient: Float64Array): number[] {
   return Array.from(space.axes.keys()).filter((k) => {
-    const axis = space.axes[k]!;
+    const axis = space.axes[k];
     const slack = 1e-12 * (axis.high - axis.low);
-    const heldLow = x[k]! <= axis.low + slack && gradient[k]! <= 0;
-    const heldHigh = x[k]! >= axis.high - slack && gradient[k]! >= 0;
+    const heldLow = x[k] <= axis.low + slack && gradient[k] <= 0;
+    const heldHigh = x[k] >= axis.high - slack && gradient[k] >= 0;
     return !heldLow && !heldHigh;
   });
 }
@@ -82,14 +82,14 @@ function curvatureFactor(
     const h = new Matrix(free.length, free.length);
     for (let i = 0; i < free.length; i++) {
       for (let j = 0; j <= i; j++) {
-        const at = free[i]! * width + free[j]!;
-        const value = information[at]! + share * secant[at]!;
+        const at = free[i] * width + free[j];
+        const value = information[at] + share * secant[at];
         // Both triangles: the library insists on symmetry to the last bit.
         h.set(i, j, value);
         h.set(j, i, value);
       }
       // A flat direction (no information) still gets a small positive curvature, so that the step stays finite.
-      h.set(i, i, h.get(i, i) + damping * information[free[i]! * width + free[i]!]! + 1e-10);
+      h.set(i, i, h.get(i, i) + damping * information[free[i] * width + free[i]] + 1e-10);
     }
     const factor = new CholeskyDecomposition(h);
     if (factor.isPositiveDefinite()) return factor;
@@ -100,7 +100,7 @@ function curvatureFactor(
 /** The point moved and clamped into the box. */
 export function boxed(space: SearchSpace, x: Float64Array, delta: Float64Array): Float64Array {
   return x.map((value, k) => {
-    const axis = space.axes[k]!;
-    return Math.min(axis.high, Math.max(axis.low, value + delta[k]!));
+    const axis = space.axes[k];
+    return Math.min(axis.high, Math.max(axis.low, value + delta[k]));
   });
 }

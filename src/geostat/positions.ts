@@ -9,7 +9,7 @@ const RAD = Math.PI / 180;
  */
 export function positionsOnSphereKm(lonDeg: Float64Array, latDeg: Float64Array): Float64Array {
   const out = new Float64Array(lonDeg.length * 3);
-  for (let i = 0; i < lonDeg.length; i++) writePositionKm(lonDeg[i]!, latDeg[i]!, out, i * 3);
+  for (let i = 0; i < lonDeg.length; i++) writePositionKm(lonDeg[i], latDeg[i], out, i * 3);
   return out;
 }
 
@@ -45,9 +45,9 @@ export type Metric = 'euclidean' | 'great-circle';
 
 /** Distance between position i of `a` and position j of `b`, both n × 3. */
 export function distanceKm(a: Float64Array, i: number, b: Float64Array, j: number, metric: Metric): number {
-  const dx = a[3 * i]! - b[3 * j]!;
-  const dy = a[3 * i + 1]! - b[3 * j + 1]!;
-  const dz = a[3 * i + 2]! - b[3 * j + 2]!;
+  const dx = a[3 * i] - b[3 * j];
+  const dy = a[3 * i + 1] - b[3 * j + 1];
+  const dz = a[3 * i + 2] - b[3 * j + 2];
   const straight = Math.sqrt(dx * dx + dy * dy + dz * dz);
   return metric === 'euclidean' ? straight : arcFromChordKm(straight);
 }

@@ -85,7 +85,7 @@ export function scoreSeries(series: ScoredSeries, level: number): Scores {
   const pit = new Float64Array(cases.length);
   let [squares, absolutes, errors, crps, logScore, squaredZ] = [0, 0, 0, 0, 0, 0];
   cases.forEach((i, at) => {
-    const [observed, mean, variance] = [series.observed[i]!, series.mean[i]!, series.variance[i]!];
+    const [observed, mean, variance] = [series.observed[i], series.mean[i], series.variance[i]];
     const error = mean - observed;
     const z = standardisedError(observed, mean, variance);
     squares += error * error;
@@ -95,7 +95,7 @@ export function scoreSeries(series: ScoredSeries, level: number): Scores {
     logScore += logScoreGaussian(observed, mean, variance);
     squaredZ += z * z;
     pit[at] = gaussianCdf(z);
-    for (let k = 0; k < levels.length; k++) if (Math.abs(z) <= halfWidths[k]!) inside[k]! += 1;
+    for (let k = 0; k < levels.length; k++) if (Math.abs(z) <= halfWidths[k]) inside[k] += 1;
   });
   const n = cases.length; // 0/0 below is NaN, as said above
   return {
@@ -105,7 +105,7 @@ export function scoreSeries(series: ScoredSeries, level: number): Scores {
     bias: errors / n,
     crps: crps / n,
     logScore: logScore / n,
-    coverage: levels.map((each, k) => ({ level: each, share: inside[k]! / n })),
+    coverage: levels.map((each, k) => ({ level: each, share: inside[k] / n })),
     meanSquaredZ: squaredZ / n,
     pit,
   };
@@ -119,7 +119,7 @@ export function coverageAt(scores: Scores, level: number): number {
 function scoredCases({ observed, mean, variance }: ScoredSeries): number[] {
   const cases: number[] = [];
   for (let i = 0; i < observed.length; i++) {
-    if (!Number.isNaN(observed[i]! + mean[i]! + variance[i]!)) cases.push(i);
+    if (!Number.isNaN(observed[i] + mean[i] + variance[i])) cases.push(i);
   }
   return cases;
 }

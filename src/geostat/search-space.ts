@@ -105,8 +105,8 @@ export function parametersAt(space: SearchSpace, x: ArrayLike<number>): FieldPar
   let share = Number.NaN;
   let sill = fixed.sill;
   for (let k = 0; k < space.axes.length; k++) {
-    const value = x[k]!;
-    switch (space.axes[k]!.name) {
+    const value = x[k];
+    switch (space.axes[k].name) {
       case 'lnRange':
         rangeKm = Math.exp(value);
         break;
@@ -134,7 +134,7 @@ export function jacobianAt(space: SearchSpace, x: ArrayLike<number>, out: Float6
   out.fill(0);
   const { sill, nugget } = parametersAt(space, x);
   for (let k = 0; k < width; k++) {
-    switch (space.axes[k]!.name) {
+    switch (space.axes[k].name) {
       case 'lnRange':
         out[k] = 1;
         break;
@@ -150,7 +150,7 @@ export function jacobianAt(space: SearchSpace, x: ArrayLike<number>, out: Float6
           out[width + k] = -(sill + nugget);
           out[2 * width + k] = sill + nugget;
         } else {
-          out[2 * width + k] = sill / (1 - x[k]!) ** 2;
+          out[2 * width + k] = sill / (1 - x[k]) ** 2;
         }
         break;
     }
@@ -176,8 +176,8 @@ export function boundsReached(space: SearchSpace, x: ArrayLike<number>): string[
   const reached: string[] = [];
   space.axes.forEach((axis, k) => {
     const slack = 1e-6 * (axis.high - axis.low);
-    const atLow = x[k]! <= axis.low + slack;
-    const atHigh = x[k]! >= axis.high - slack;
+    const atLow = x[k] <= axis.low + slack;
+    const atHigh = x[k] >= axis.high - slack;
     if (axis.name === 'nuggetShare' && atLow) reached.push('nugget at 0');
     else if (axis.name === 'nuggetShare' && atHigh) reached.push('nugget takes nearly all of the variance');
     else if (atLow || atHigh) {

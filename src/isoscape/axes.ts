@@ -40,7 +40,7 @@ export function whiten(
 ): readonly [Float64Array, Float64Array] {
   const [l11, l21, l22] = whiteningFactor(covariance);
   const first = d18O.map((value) => value / l11);
-  const second = d2H.map((value, i) => (value - l21 * first[i]!) / l22);
+  const second = d2H.map((value, i) => (value - l21 * first[i]) / l22);
   return [first, second];
 }
 
@@ -55,8 +55,8 @@ export function turn(
   const c = Math.cos(turnRad);
   const s = Math.sin(turnRad);
   for (let i = 0; i < y1.length; i++) {
-    along[i] = c * y1[i]! + s * y2[i]!;
-    across[i] = -s * y1[i]! + c * y2[i]!;
+    along[i] = c * y1[i] + s * y2[i];
+    across[i] = -s * y1[i] + c * y2[i];
   }
 }
 

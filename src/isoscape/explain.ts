@@ -36,8 +36,8 @@ export function explainPlaces(isoscape: Isoscape, places: Places): Explanation[]
     const row = rows.subarray(j * p, (j + 1) * p);
     const parts = systems.map(({ field, system, data }) => {
       const weights = system.krigingWeights(positions.subarray(3 * j, 3 * j + 3), row);
-      const total = weights.reduce((sum, weight, i) => sum + weight * field.values[i]!, 0);
-      const trend = row.reduce((sum, value, c) => sum + value * data.coefficients[c]!, 0);
+      const total = weights.reduce((sum, weight, i) => sum + weight * field.values[i], 0);
+      const trend = row.reduce((sum, value, c) => sum + value * data.coefficients[c], 0);
       return { weights, trend, residual: total - trend };
     });
     return { ...isotopeParts(isoscape, parts), heaviest: heaviestStations(isoscape, fields, parts) };
@@ -73,12 +73,12 @@ function heaviestStations(
   parts: readonly FieldPart[],
 ): StationWeight[] {
   const ids = isoscape.stations.id;
-  const size = (i: number) => parts.reduce((sum, part) => sum + Math.abs(part.weights[i]!), 0);
+  const size = (i: number) => parts.reduce((sum, part) => sum + Math.abs(part.weights[i]), 0);
   return Array.from(ids.keys())
     .sort((a, b) => size(b) - size(a) || a - b)
     .slice(0, STATIONS_SHOWN)
     .map((i) => ({
-      stationId: ids[i]!,
-      weights: Object.fromEntries(fields.map((field, k) => [field.name, parts[k]!.weights[i]!])),
+      stationId: ids[i],
+      weights: Object.fromEntries(fields.map((field, k) => [field.name, parts[k].weights[i]])),
     }));
 }

@@ -81,7 +81,7 @@ export class FieldAverage {
       const coefficients = new Float64Array(this.#geometry.p);
       for (const node of this.preparedNodes()) {
         for (let c = 0; c < coefficients.length; c++) {
-          coefficients[c]! += node.weight * node.own.coefficients[c]!;
+          coefficients[c] += node.weight * node.own.coefficients[c];
         }
       }
       this.#coefficients = coefficients;
@@ -136,16 +136,16 @@ export class FieldAverage {
       if (isFirst) first.set(nodeMean);
       isFirst = false;
       for (let j = 0; j < count; j++) {
-        const shifted = nodeMean[j]! - first[j]!;
-        answer.mean[j]! += weight * shifted;
-        square[j]! += weight * shifted * shifted;
-        answer.variance[j]! += weight * nodeVariance[j]!;
-        if (answer.otherMean !== null) answer.otherMean[j]! += weight * nodeOther[j]!;
+        const shifted = nodeMean[j] - first[j];
+        answer.mean[j] += weight * shifted;
+        square[j] += weight * shifted * shifted;
+        answer.variance[j] += weight * nodeVariance[j];
+        if (answer.otherMean !== null) answer.otherMean[j] += weight * nodeOther[j];
       }
     }
     for (let j = 0; j < count; j++) {
-      answer.variance[j]! += Math.max(0, square[j]! - answer.mean[j]! ** 2);
-      answer.mean[j]! += first[j]!;
+      answer.variance[j] += Math.max(0, square[j] - answer.mean[j] ** 2);
+      answer.mean[j] += first[j];
     }
     return answer;
   }

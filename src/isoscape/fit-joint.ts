@@ -76,6 +76,6 @@ function residualCovariance({ options, stations, positionsKm }: FitContext): Pai
   const o = ordinaryLeastSquares({ n, p, trend }, stations.d18O).residuals;
   const h = ordinaryLeastSquares({ n, p, trend }, stations.d2H).residuals;
   const mean = (a: Float64Array, b: Float64Array) =>
-    a.reduce((sum, value, i) => sum + value * b[i]!, 0) / (n - p);
+    a.reduce((sum, value, i) => sum + value * b[i], 0) / (n - p);
   return [mean(o, o), mean(o, h), mean(h, h)];
 }

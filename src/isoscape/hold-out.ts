@@ -64,19 +64,19 @@ function predictHeldOut(
   const refitted = refitOn(isoscape, training);
   const places = createPlaces(heldOut.length);
   heldOut.forEach((station, at) => {
-    places.lonDeg[at] = isoscape.stations.lonDeg[station]!;
-    places.latDeg[at] = isoscape.stations.latDeg[station]!;
-    places.elevationM[at] = isoscape.stations.elevationM[station]!;
+    places.lonDeg[at] = isoscape.stations.lonDeg[station];
+    places.latDeg[at] = isoscape.stations.latDeg[station];
+    places.elevationM[at] = isoscape.stations.elevationM[station];
   });
   const there = createPredictions(heldOut.length);
   predictPlaces(refitted, places, there, { target: 'site', plugIn });
   heldOut.forEach((station, at) => {
     const [varD18O, cov, varD2H] = samplingCovariance(isoscape, station);
-    out.d18O[station] = there.d18O[at]!;
-    out.d2H[station] = there.d2H[at]!;
-    out.varD18O[station] = there.varD18O[at]! + varD18O;
-    out.varD2H[station] = there.varD2H[at]! + varD2H;
-    out.cov[station] = there.cov[at]! + cov;
+    out.d18O[station] = there.d18O[at];
+    out.d2H[station] = there.d2H[at];
+    out.varD18O[station] = there.varD18O[at] + varD18O;
+    out.varD2H[station] = there.varD2H[at] + varD2H;
+    out.cov[station] = there.cov[at] + cov;
   });
 }
 
@@ -86,10 +86,10 @@ function predictHeldOut(
  */
 function samplingCovariance(isoscape: Isoscape, station: number): [number, number, number] {
   if (isoscape.isotopes === 'both') {
-    const share = isoscape.along.samplingVariance[station]!;
+    const share = isoscape.along.samplingVariance[station];
     const [varD18O, cov, varD2H] = isoscape.whitening;
     return [varD18O * share, cov * share, varD2H * share];
   }
-  const variance = isoscape.field.samplingVariance[station]!;
+  const variance = isoscape.field.samplingVariance[station];
   return isoscape.isotopes === 'd18O' ? [variance, 0, 0] : [0, 0, variance];
 }

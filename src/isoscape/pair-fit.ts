@@ -138,9 +138,9 @@ export function leadingAngle(y1: Float64Array, y2: Float64Array): number {
   let s12 = 0;
   let s22 = 0;
   for (let i = 0; i < n; i++) {
-    s11 += (y1[i]! - mean1) ** 2;
-    s12 += (y1[i]! - mean1) * (y2[i]! - mean2);
-    s22 += (y2[i]! - mean2) ** 2;
+    s11 += (y1[i] - mean1) ** 2;
+    s12 += (y1[i] - mean1) * (y2[i] - mean2);
+    s22 += (y2[i] - mean2) ** 2;
   }
   return 0.5 * Math.atan2(2 * s12, s11 - s22);
 }

@@ -90,7 +90,7 @@ function thinGeometry(
   const m = kept.length;
   const distancesKm = new Float64Array(m * m);
   kept.forEach((i, a) => {
-    for (let b = 0; b < a; b++) distancesKm[a * m + b] = geometry.distancesKm[i * n + kept[b]!]!;
+    for (let b = 0; b < a; b++) distancesKm[a * m + b] = geometry.distancesKm[i * n + kept[b]];
   });
   return {
     geometry: {

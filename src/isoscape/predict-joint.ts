@@ -51,13 +51,13 @@ export function predictJoint(
   const slopes = elevationSlopes(ready);
   const joints = ready.fields.map((field) => averageJointly(field, positions, rows, m, site));
   if (isoscape.isotopes !== 'both') {
-    const { mean, covariance } = joints[0]!;
-    for (let j = 0; j < m; j++) covariance[j * m + j]! += places.elevationVarM2[j]! * slopes[0]! ** 2;
+    const { mean, covariance } = joints[0];
+    for (let j = 0; j < m; j++) covariance[j * m + j] += places.elevationVarM2[j] * slopes[0] ** 2;
     return { mean, covariance };
   }
   return mapToPairs(m, ready.back!, joints as [FieldJoint, FieldJoint], (j, u1, u2) => [
-    turnError(ready, u1, u2, joints[0]!.otherMean[j]!, joints[1]!.otherMean[j]!),
-    [slopes[0]!, slopes[1]!, places.elevationVarM2[j]!],
+    turnError(ready, u1, u2, joints[0].otherMean[j], joints[1].otherMean[j]),
+    [slopes[0], slopes[1], places.elevationVarM2[j]],
   ]);
 }
 
@@ -80,18 +80,18 @@ function averageJointly(
     predictFieldJointly(system, positions, rows, m, own, nodeMean, nodeCovariance);
     nodes.push({ weight, mean: nodeMean });
     for (let j = 0; j < m; j++) {
-      mean[j]! += weight * nodeMean[j]!;
-      otherMean[j]! += weight * nodeOther[j]!;
+      mean[j] += weight * nodeMean[j];
+      otherMean[j] += weight * nodeOther[j];
     }
-    for (let k = 0; k < m * m; k++) covariance[k]! += weight * nodeCovariance[k]!;
+    for (let k = 0; k < m * m; k++) covariance[k] += weight * nodeCovariance[k];
   }
   for (const node of nodes) {
     for (let j = 0; j < m; j++) {
-      const deviation = node.weight * (node.mean[j]! - mean[j]!);
-      for (let k = 0; k < m; k++) covariance[j * m + k]! += deviation * (node.mean[k]! - mean[k]!);
+      const deviation = node.weight * (node.mean[j] - mean[j]);
+      for (let k = 0; k < m; k++) covariance[j * m + k] += deviation * (node.mean[k] - mean[k]);
     }
   }
-  if (site) for (let j = 0; j < m; j++) covariance[j * m + j]! += field.nugget;
+  if (site) for (let j = 0; j < m; j++) covariance[j * m + j] += field.nugget;
   return { mean, covariance, otherMean };
 }
 
@@ -112,29 +112,29 @@ function mapToPairs(
   const covariance = new Float64Array(size * size);
   const shared = new Float64Array(size);
   for (let j = 0; j < m; j++) {
-    const u1 = along.mean[j]!;
-    const u2 = across.mean[j]!;
+    const u1 = along.mean[j];
+    const u2 = across.mean[j];
     mean[2 * j] = t[0] * u1 + t[1] * u2;
     mean[2 * j + 1] = t[2] * u1 + t[3] * u2;
     const [turnShift, [b1, b2, elevationVarM2]] = errorsOf(j, u1, u2);
     shared.set(turnShift, 2 * j);
     const eO = t[0] * b1 + t[1] * b2;
     const eH = t[2] * b1 + t[3] * b2;
-    covariance[2 * j * size + 2 * j]! += elevationVarM2 * eO * eO;
-    covariance[2 * j * size + 2 * j + 1]! += elevationVarM2 * eO * eH;
-    covariance[(2 * j + 1) * size + 2 * j]! += elevationVarM2 * eO * eH;
-    covariance[(2 * j + 1) * size + 2 * j + 1]! += elevationVarM2 * eH * eH;
+    covariance[2 * j * size + 2 * j] += elevationVarM2 * eO * eO;
+    covariance[2 * j * size + 2 * j + 1] += elevationVarM2 * eO * eH;
+    covariance[(2 * j + 1) * size + 2 * j] += elevationVarM2 * eO * eH;
+    covariance[(2 * j + 1) * size + 2 * j + 1] += elevationVarM2 * eH * eH;
   }
   for (let j = 0; j < m; j++) {
     for (let k = 0; k < m; k++) {
-      const v1 = along.covariance[j * m + k]!;
-      const v2 = across.covariance[j * m + k]!;
+      const v1 = along.covariance[j * m + k];
+      const v2 = across.covariance[j * m + k];
       for (let a = 0; a < 2; a++) {
         for (let b = 0; b < 2; b++) {
-          covariance[(2 * j + a) * size + 2 * k + b]! +=
-            t[2 * a]! * t[2 * b]! * v1 +
-            t[2 * a + 1]! * t[2 * b + 1]! * v2 +
-            shared[2 * j + a]! * shared[2 * k + b]!;
+          covariance[(2 * j + a) * size + 2 * k + b] +=
+            t[2 * a] * t[2 * b] * v1 +
+            t[2 * a + 1] * t[2 * b + 1] * v2 +
+            shared[2 * j + a] * shared[2 * k + b];
         }
       }
     }

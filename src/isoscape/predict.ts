@@ -82,26 +82,26 @@ export function predictPlaces(
     const mean = isoscape.isotopes === 'd18O' ? out.d18O : out.d2H;
     const variance = isoscape.isotopes === 'd18O' ? out.varD18O : out.varD2H;
     for (let j = 0; j < count; j++) {
-      mean[j] = answer!.mean[j]!;
-      variance[j] = answer!.variance[j]! + nuggets[0]! + places.elevationVarM2[j]! * slopes[0]! ** 2;
+      mean[j] = answer.mean[j];
+      variance[j] = answer.variance[j] + nuggets[0] + places.elevationVarM2[j] * slopes[0] ** 2;
     }
     return;
   }
   const back = ready.back!;
   const [along, across] = answers;
   for (let j = 0; j < count; j++) {
-    const u1 = along!.mean[j]!;
-    const u2 = across!.mean[j]!;
+    const u1 = along.mean[j];
+    const u2 = across.mean[j];
     out.d18O[j] = back[0] * u1 + back[1] * u2;
     out.d2H[j] = back[2] * u1 + back[3] * u2;
     let [varO, cov, varH] = pairCovariance(
       back,
-      along!.variance[j]! + nuggets[0]!,
-      across!.variance[j]! + nuggets[1]!,
+      along.variance[j] + nuggets[0],
+      across.variance[j] + nuggets[1],
     );
     const shared = [
-      turnError(ready, u1, u2, along!.otherMean?.[j] ?? u2, across!.otherMean?.[j] ?? u1),
-      scaled(back, slopes[0]!, slopes[1]!, Math.sqrt(places.elevationVarM2[j]!)),
+      turnError(ready, u1, u2, along.otherMean?.[j] ?? u2, across.otherMean?.[j] ?? u1),
+      scaled(back, slopes[0], slopes[1], Math.sqrt(places.elevationVarM2[j])),
     ];
     for (const [eO, eH] of shared) {
       varO += eO * eO;
@@ -117,7 +117,7 @@ export function predictPlaces(
 /** Averaged elevation coefficients of the fields, per metre; 0 where elevation is no term. */
 export function elevationSlopes(ready: PreparedIsoscape): number[] {
   return ready.fields.map((field) =>
-    ready.elevationColumn < 0 ? 0 : field.coefficients[ready.elevationColumn]! / 1000,
+    ready.elevationColumn < 0 ? 0 : field.coefficients[ready.elevationColumn] / 1000,
   );
 }
 

@@ -21,7 +21,7 @@ export function refitOn(isoscape: Isoscape, stationIndices: ArrayLike<number>): 
     trendMatrix(isoscape.terms, stations.latDeg, stations.elevationM),
     isoscape.terms.length + 1,
   );
-  const pick = (values: Float64Array) => Float64Array.from(Array.from(stationIndices), (i) => values[i]!);
+  const pick = (values: Float64Array) => Float64Array.from(Array.from(stationIndices), (i) => values[i]);
   const id = contentHash({ from: isoscape.id, stations: stations.id });
   const { family } = isoscape;
   if (isoscape.isotopes !== 'both') {

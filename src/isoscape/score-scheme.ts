@@ -56,11 +56,11 @@ function scoreVariable(
     { method: 'isoscape', ...own, scores: scoreSeries({ observed, ...own }, level) },
   ];
   // Baselines are scored where the isoscape has a prediction, so that a failed fold does not skew the comparison.
-  const comparable = observed.map((value, i) => (Number.isNaN(own.mean[i]!) ? Number.NaN : value));
+  const comparable = observed.map((value, i) => (Number.isNaN(own.mean[i]) ? Number.NaN : value));
   (['mean', 'regression', 'nearest'] as const).forEach((method, b) => {
     const mean = new Float64Array(observed.length);
     const variance = new Float64Array(observed.length);
-    for (const heldOut of heldOutSets) baselines[b]!(observed, heldOut, mean, variance);
+    for (const heldOut of heldOutSets) baselines[b](observed, heldOut, mean, variance);
     methods.push({
       method,
       mean,
@@ -73,7 +73,7 @@ function scoreVariable(
 
 export function observedValues(isoscape: Isoscape, variable: ValidatedVariable): Float64Array {
   const { d18O, d2H } = isoscape.stations;
-  if (variable === 'dexcess') return d18O.map((value, i) => dExcess(value, d2H[i]!));
+  if (variable === 'dexcess') return d18O.map((value, i) => dExcess(value, d2H[i]));
   return variable === 'd18O' ? d18O : d2H;
 }
 
@@ -87,6 +87,6 @@ function medianNearestKm(neighbours: Neighbours, heldOutSets: readonly (readonly
   distances.sort((a, b) => a - b);
   const middle = distances.length >> 1;
   const chord =
-    distances.length % 2 === 1 ? distances[middle]! : (distances[middle - 1]! + distances[middle]!) / 2;
+    distances.length % 2 === 1 ? distances[middle] : (distances[middle - 1] + distances[middle]) / 2;
   return arcFromChordKm(chord);
 }

@@ -38,7 +38,7 @@ export function readIsoscape(text: string): Isoscape {
   checkVersion(body.schemaVersion);
   const parsed = fileSchema.safeParse(body);
   if (!parsed.success) {
-    const issue = parsed.error.issues[0]!;
+    const issue = parsed.error.issues[0];
     const where = issue.path.join('.') || '(top)';
     throw new RainprintError('ISOSCAPE_DAMAGED', `isoscape member "${where}": ${issue.message}`, {
       member: where,

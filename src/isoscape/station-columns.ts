@@ -44,10 +44,10 @@ function compareStations(a: StationMean, b: StationMean): number {
 /** The stations at some indices, in the order given. */
 export function selectStations(columns: StationColumns, indices: ArrayLike<number>): StationColumns {
   const at = Array.from(indices);
-  const pick = (values: Float64Array) => Float64Array.from(at, (i) => values[i]!);
+  const pick = (values: Float64Array) => Float64Array.from(at, (i) => values[i]);
   return {
-    id: at.map((i) => columns.id[i]!),
-    name: at.map((i) => columns.name[i]!),
+    id: at.map((i) => columns.id[i]),
+    name: at.map((i) => columns.name[i]),
     lonDeg: pick(columns.lonDeg),
     latDeg: pick(columns.latDeg),
     elevationM: pick(columns.elevationM),

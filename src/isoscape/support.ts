@@ -43,7 +43,7 @@ function largestNeighbourSpacingKm({ lonDeg, latDeg }: StationColumns): number {
   for (let i = 0; i < lonDeg.length; i++) {
     let nearest = Number.POSITIVE_INFINITY;
     for (let j = 0; j < lonDeg.length; j++) {
-      if (j !== i) nearest = Math.min(nearest, chordKm(lonDeg[i]!, latDeg[i]!, lonDeg[j]!, latDeg[j]!));
+      if (j !== i) nearest = Math.min(nearest, chordKm(lonDeg[i], latDeg[i], lonDeg[j], latDeg[j]));
     }
     largest = Math.max(largest, nearest);
   }
@@ -63,7 +63,7 @@ export function createSupport(isoscape: Isoscape): Support {
   const nearestStationKm = (lonDeg: number, latDeg: number): number => {
     let nearest = Number.POSITIVE_INFINITY;
     for (let i = 0; i < stations.lonDeg.length; i++) {
-      nearest = Math.min(nearest, greatCircleKm(lonDeg, latDeg, stations.lonDeg[i]!, stations.latDeg[i]!));
+      nearest = Math.min(nearest, greatCircleKm(lonDeg, latDeg, stations.lonDeg[i], stations.latDeg[i]));
     }
     return nearest;
   };
@@ -94,7 +94,7 @@ export function createSupport(isoscape: Isoscape): Support {
 function createHull({ lonDeg, latDeg }: StationColumns): (lonDeg: number, latDeg: number) => boolean {
   const centre = meanDirection(lonDeg, latDeg);
   const toPlane = gnomonic(centre);
-  const planar = Array.from(lonDeg, (lon, i) => toPlane(lon, latDeg[i]!));
+  const planar = Array.from(lonDeg, (lon, i) => toPlane(lon, latDeg[i]));
   if (planar.some((position) => position === null)) return () => true;
   const points = featureCollection(planar.map((position) => point(position!)));
   const hull = convex(points);
@@ -108,8 +108,8 @@ function createHull({ lonDeg, latDeg }: StationColumns): (lonDeg: number, latDeg
 function meanDirection(lonDeg: Float64Array, latDeg: Float64Array): [number, number, number] {
   const sum: [number, number, number] = [0, 0, 0];
   for (let i = 0; i < lonDeg.length; i++) {
-    const unit = unitVector(lonDeg[i]!, latDeg[i]!);
-    for (let axis = 0; axis < 3; axis++) sum[axis]! += unit[axis]!;
+    const unit = unitVector(lonDeg[i], latDeg[i]);
+    for (let axis = 0; axis < 3; axis++) sum[axis] += unit[axis];
   }
   const length = Math.hypot(...sum);
   return length > 1e-9 ? [sum[0] / length, sum[1] / length, sum[2] / length] : [1, 0, 0];
@@ -125,14 +125,14 @@ function gnomonic(centre: [number, number, number]) {
   const horizontal = Math.hypot(centre[0], centre[1]);
   const east = horizontal > 1e-12 ? [-centre[1] / horizontal, centre[0] / horizontal, 0] : [0, 1, 0];
   const north = [
-    centre[1] * east[2]! - centre[2] * east[1]!,
-    centre[2] * east[0]! - centre[0] * east[2]!,
-    centre[0] * east[1]! - centre[1] * east[0]!,
+    centre[1] * east[2] - centre[2] * east[1],
+    centre[2] * east[0] - centre[0] * east[2],
+    centre[0] * east[1] - centre[1] * east[0],
   ];
   const least = Math.cos(GNOMONIC_LIMIT_DEG * RAD);
   return (lonDeg: number, latDeg: number): [number, number] | null => {
     const v = unitVector(lonDeg, latDeg);
-    const dot = (a: readonly number[]) => v[0] * a[0]! + v[1] * a[1]! + v[2] * a[2]!;
+    const dot = (a: readonly number[]) => v[0] * a[0] + v[1] * a[1] + v[2] * a[2];
     const depth = dot(centre);
     return depth > least ? [dot(east) / depth, dot(north) / depth] : null;
   };

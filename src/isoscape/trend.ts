@@ -34,7 +34,7 @@ export function writeTrendRow(
 ): void {
   const x = Math.sin((latDeg * Math.PI) / 180);
   out[offset] = 1;
-  for (let k = 0; k < terms.length; k++) out[offset + 1 + k] = termValue(terms[k]!, x, elevationM);
+  for (let k = 0; k < terms.length; k++) out[offset + 1 + k] = termValue(terms[k], x, elevationM);
 }
 
 /** Legendre polynomials in closed form (Abramowitz & Stegun 1964, table 22.9); elevation in km. */
@@ -62,7 +62,7 @@ export function trendMatrix(
   const columnCount = terms.length + 1;
   const matrix = new Float64Array(latDeg.length * columnCount);
   for (let i = 0; i < latDeg.length; i++) {
-    writeTrendRow(terms, latDeg[i]!, elevationM[i]!, matrix, i * columnCount);
+    writeTrendRow(terms, latDeg[i], elevationM[i], matrix, i * columnCount);
   }
   return matrix;
 }

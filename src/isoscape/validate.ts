@@ -121,13 +121,13 @@ function outlyingStations(isoscape: Isoscape, scheme: SchemeResult): OutlyingSta
       result.observed,
       (observed, i): OutlyingStation => ({
         stationIndex: i,
-        id: id[i]!,
-        name: name[i]!,
+        id: id[i],
+        name: name[i],
         variable: result.variable,
         observed,
-        predicted: mean[i]!,
-        sd: Math.sqrt(variance[i]!),
-        z: standardisedError(observed, mean[i]!, variance[i]!),
+        predicted: mean[i],
+        sd: Math.sqrt(variance[i]),
+        z: standardisedError(observed, mean[i], variance[i]),
       }),
     );
   });

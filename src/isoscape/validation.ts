@@ -89,12 +89,12 @@ export function seriesOf(
   if (variable === 'd18O') return { mean: d18O, variance: varD18O };
   if (variable === 'd2H') return { mean: d2H, variance: varD2H };
   return {
-    mean: d18O.map((each, i) => dExcess(each, d2H[i]!)),
-    variance: varD18O.map((each, i) => dExcessVariance(each, cov[i]!, varD2H[i]!)),
+    mean: d18O.map((each, i) => dExcess(each, d2H[i])),
+    variance: varD18O.map((each, i) => dExcessVariance(each, cov[i], varD2H[i])),
   };
 }
 
 /** The result of one method; every scheme has all four. */
 export function methodResult(result: VariableResult, method: ValidationMethod): MethodResult {
-  return result.methods[VALIDATION_METHODS.indexOf(method)]!;
+  return result.methods[VALIDATION_METHODS.indexOf(method)];
 }

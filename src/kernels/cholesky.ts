@@ -25,8 +25,8 @@ export function choleskyInPlace(a: Float64Array, n: number): void {
 function factorPanel(a: Float64Array, n: number, start: number, end: number): void {
   for (let j = start; j < end; j++) {
     const rowJ = j * n;
-    let pivot = a[rowJ + j]!;
-    for (let k = start; k < j; k++) pivot -= a[rowJ + k]! * a[rowJ + k]!;
+    let pivot = a[rowJ + j];
+    for (let k = start; k < j; k++) pivot -= a[rowJ + k] * a[rowJ + k];
     if (!(pivot > 0)) {
       throw new RainprintError(
         'MATRIX_NOT_POSITIVE_DEFINITE',
@@ -39,8 +39,8 @@ function factorPanel(a: Float64Array, n: number, start: number, end: number): vo
     const inverse = 1 / diagonal;
     for (let i = j + 1; i < n; i++) {
       const rowI = i * n;
-      let sum = a[rowI + j]!;
-      for (let k = start; k < j; k++) sum -= a[rowI + k]! * a[rowJ + k]!;
+      let sum = a[rowI + j];
+      for (let k = start; k < j; k++) sum -= a[rowI + k] * a[rowJ + k];
       a[rowI + j] = sum * inverse;
     }
   }
@@ -53,11 +53,11 @@ function updateTrailing(a: Float64Array, n: number, start: number, end: number):
     let j = end;
     for (; j + 3 <= i; j += 4) subtractTile2x4(a, n, i, j, start, end);
     for (; j <= i + 1; j++) {
-      if (j <= i) a[i * n + j]! -= dot(a, i * n, a, j * n, start, end);
-      a[(i + 1) * n + j]! -= dot(a, (i + 1) * n, a, j * n, start, end);
+      if (j <= i) a[i * n + j] -= dot(a, i * n, a, j * n, start, end);
+      a[(i + 1) * n + j] -= dot(a, (i + 1) * n, a, j * n, start, end);
     }
   }
-  if (i < n) for (let j = end; j <= i; j++) a[i * n + j]! -= dot(a, i * n, a, j * n, start, end);
+  if (i < n) for (let j = end; j <= i; j++) a[i * n + j] -= dot(a, i * n, a, j * n, start, end);
 }
 
 function subtractTile2x4(a: Float64Array, n: number, i: number, j: number, start: number, end: number): void {
@@ -76,12 +76,12 @@ function subtractTile2x4(a: Float64Array, n: number, i: number, j: number, start
   let s12 = 0;
   let s13 = 0;
   for (let k = start; k < end; k++) {
-    const x0 = a[i0 + k]!;
-    const x1 = a[i1 + k]!;
-    const y0 = a[j0 + k]!;
-    const y1 = a[j1 + k]!;
-    const y2 = a[j2 + k]!;
-    const y3 = a[j3 + k]!;
+    const x0 = a[i0 + k];
+    const x1 = a[i1 + k];
+    const y0 = a[j0 + k];
+    const y1 = a[j1 + k];
+    const y2 = a[j2 + k];
+    const y3 = a[j3 + k];
     s00 += x0 * y0;
     s01 += x0 * y1;
     s02 += x0 * y2;
@@ -91,14 +91,14 @@ function subtractTile2x4(a: Float64Array, n: number, i: number, j: number, start
     s12 += x1 * y2;
     s13 += x1 * y3;
   }
-  a[i0 + j]! -= s00;
-  a[i0 + j + 1]! -= s01;
-  a[i0 + j + 2]! -= s02;
-  a[i0 + j + 3]! -= s03;
-  a[i1 + j]! -= s10;
-  a[i1 + j + 1]! -= s11;
-  a[i1 + j + 2]! -= s12;
-  a[i1 + j + 3]! -= s13;
+  a[i0 + j] -= s00;
+  a[i0 + j + 1] -= s01;
+  a[i0 + j + 2] -= s02;
+  a[i0 + j + 3] -= s03;
+  a[i1 + j] -= s10;
+  a[i1 + j + 1] -= s11;
+  a[i1 + j + 2] -= s12;
+  a[i1 + j + 3] -= s13;
 }
 
 /** Σ_k x[xOffset + k]·y[yOffset + k] for start ≤ k < end, in four partial sums. */
@@ -116,11 +116,11 @@ export function dot(
   let s3 = 0;
   let k = start;
   for (; k + 3 < end; k += 4) {
-    s0 += x[xOffset + k]! * y[yOffset + k]!;
-    s1 += x[xOffset + k + 1]! * y[yOffset + k + 1]!;
-    s2 += x[xOffset + k + 2]! * y[yOffset + k + 2]!;
-    s3 += x[xOffset + k + 3]! * y[yOffset + k + 3]!;
+    s0 += x[xOffset + k] * y[yOffset + k];
+    s1 += x[xOffset + k + 1] * y[yOffset + k + 1];
+    s2 += x[xOffset + k + 2] * y[yOffset + k + 2];
+    s3 += x[xOffset + k + 3] * y[yOffset + k + 3];
   }
-  for (; k < end; k++) s0 += x[xOffset + k]! * y[yOffset + k]!;
+  for (; k < end; k++) s0 += x[xOffset + k] * y[yOffset + k];
   return s0 + s1 + (s2 + s3);
 }

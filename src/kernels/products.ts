@@ -27,8 +27,8 @@ export function crossProduct(
     const rowA = r * aWidth;
     const rowB = r * bWidth;
     for (let i = 0; i < aWidth; i++) {
-      const x = a[rowA + i]!;
-      for (let j = 0; j < bWidth; j++) out[i * bWidth + j]! += x * b[rowB + j]!;
+      const x = a[rowA + i];
+      for (let j = 0; j < bWidth; j++) out[i * bWidth + j] += x * b[rowB + j];
     }
   }
 }

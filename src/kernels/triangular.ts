@@ -6,16 +6,16 @@ import { dot } from './cholesky.js';
  * @param x  n; b on entry, the solution on return
  */
 export function solveLowerInPlace(l: Float64Array, n: number, x: Float64Array): void {
-  for (let i = 0; i < n; i++) x[i] = (x[i]! - dot(l, i * n, x, 0, 0, i)) / l[i * n + i]!;
+  for (let i = 0; i < n; i++) x[i] = (x[i] - dot(l, i * n, x, 0, 0, i)) / l[i * n + i];
 }
 
 /** Solves Lᵀ·x = b in place for one right-hand side; arguments as `solveLowerInPlace`. */
 export function solveLowerTransposedInPlace(l: Float64Array, n: number, x: Float64Array): void {
   for (let i = n - 1; i >= 0; i--) {
     const row = i * n;
-    const value = x[i]! / l[row + i]!;
+    const value = x[i] / l[row + i];
     x[i] = value;
-    for (let k = 0; k < i; k++) x[k]! -= l[row + k]! * value;
+    for (let k = 0; k < i; k++) x[k] -= l[row + k] * value;
   }
 }
 
@@ -28,13 +28,13 @@ export function solveLowerManyInPlace(l: Float64Array, n: number, b: Float64Arra
   for (; i + 3 < n; i += 4) {
     subtractFourRows(l, n, b, width, i);
     for (let r = i; r < i + 4; r++) {
-      for (let k = i; k < r; k++) subtractScaledRow(b, width, r, k, l[r * n + k]!);
-      scaleRow(b, width, r, 1 / l[r * n + r]!);
+      for (let k = i; k < r; k++) subtractScaledRow(b, width, r, k, l[r * n + k]);
+      scaleRow(b, width, r, 1 / l[r * n + r]);
     }
   }
   for (; i < n; i++) {
-    for (let k = 0; k < i; k++) subtractScaledRow(b, width, i, k, l[i * n + k]!);
-    scaleRow(b, width, i, 1 / l[i * n + i]!);
+    for (let k = 0; k < i; k++) subtractScaledRow(b, width, i, k, l[i * n + k]);
+    scaleRow(b, width, i, 1 / l[i * n + i]);
   }
 }
 
@@ -50,23 +50,23 @@ function subtractFourRows(l: Float64Array, n: number, b: Float64Array, width: nu
   const r3 = r2 + width;
   // i is a multiple of 4, so k runs in whole pairs.
   for (let k = 0; k < i; k += 2) {
-    const a0 = l[l0 + k]!;
-    const a1 = l[l1 + k]!;
-    const a2 = l[l2 + k]!;
-    const a3 = l[l3 + k]!;
-    const c0 = l[l0 + k + 1]!;
-    const c1 = l[l1 + k + 1]!;
-    const c2 = l[l2 + k + 1]!;
-    const c3 = l[l3 + k + 1]!;
+    const a0 = l[l0 + k];
+    const a1 = l[l1 + k];
+    const a2 = l[l2 + k];
+    const a3 = l[l3 + k];
+    const c0 = l[l0 + k + 1];
+    const c1 = l[l1 + k + 1];
+    const c2 = l[l2 + k + 1];
+    const c3 = l[l3 + k + 1];
     const rowK = k * width;
     const rowK1 = rowK + width;
     for (let j = 0; j < width; j++) {
-      const x = b[rowK + j]!;
-      const y = b[rowK1 + j]!;
-      b[r0 + j]! -= a0 * x + c0 * y;
-      b[r1 + j]! -= a1 * x + c1 * y;
-      b[r2 + j]! -= a2 * x + c2 * y;
-      b[r3 + j]! -= a3 * x + c3 * y;
+      const x = b[rowK + j];
+      const y = b[rowK1 + j];
+      b[r0 + j] -= a0 * x + c0 * y;
+      b[r1 + j] -= a1 * x + c1 * y;
+      b[r2 + j] -= a2 * x + c2 * y;
+      b[r3 + j] -= a3 * x + c3 * y;
     }
   }
 }
@@ -74,12 +74,12 @@ function subtractFourRows(l: Float64Array, n: number, b: Float64Array, width: nu
 function subtractScaledRow(b: Float64Array, width: number, to: number, from: number, factor: number): void {
   const toRow = to * width;
   const fromRow = from * width;
-  for (let j = 0; j < width; j++) b[toRow + j]! -= factor * b[fromRow + j]!;
+  for (let j = 0; j < width; j++) b[toRow + j] -= factor * b[fromRow + j];
 }
 
 function scaleRow(b: Float64Array, width: number, row: number, factor: number): void {
   const offset = row * width;
-  for (let j = 0; j < width; j++) b[offset + j]! *= factor;
+  for (let j = 0; j < width; j++) b[offset + j] *= factor;
 }
 
 /**
@@ -99,7 +99,7 @@ export function inverseFromCholesky(l: Float64Array, n: number, work: Float64Arr
     for (; j + 3 <= i; j += 4) dotFourRows(work, n, i, j, out);
     for (; j <= i; j++) out[i * n + j] = dot(work, i * n, work, j * n, i, n);
   }
-  for (let i = 0; i < n; i++) for (let j = 0; j < i; j++) out[j * n + i] = out[i * n + j]!;
+  for (let i = 0; i < n; i++) for (let j = 0; j < i; j++) out[j * n + i] = out[i * n + j];
 }
 
 function invertTransposed(l: Float64Array, n: number, u: Float64Array): void {
@@ -107,15 +107,15 @@ function invertTransposed(l: Float64Array, n: number, u: Float64Array): void {
   for (; j + 3 < n; j += 4) {
     u.fill(0, j * n, (j + 4) * n);
     for (let r = j; r < j + 4; r++) {
-      u[r * n + r] = 1 / l[r * n + r]!;
-      for (let k = r + 1; k < j + 4; k++) u[r * n + k] = -dot(l, k * n, u, r * n, r, k) / l[k * n + k]!;
+      u[r * n + r] = 1 / l[r * n + r];
+      for (let k = r + 1; k < j + 4; k++) u[r * n + k] = -dot(l, k * n, u, r * n, r, k) / l[k * n + k];
     }
     for (let k = j + 4; k < n; k++) extendFourRows(l, n, u, j, k);
   }
   for (; j < n; j++) {
     u.fill(0, j * n, (j + 1) * n);
-    u[j * n + j] = 1 / l[j * n + j]!;
-    for (let k = j + 1; k < n; k++) u[j * n + k] = -dot(l, k * n, u, j * n, j, k) / l[k * n + k]!;
+    u[j * n + j] = 1 / l[j * n + j];
+    for (let k = j + 1; k < n; k++) u[j * n + k] = -dot(l, k * n, u, j * n, j, k) / l[k * n + k];
   }
 }
 
@@ -131,13 +131,13 @@ function extendFourRows(l: Float64Array, n: number, u: Float64Array, j: number, 
   let s2 = 0;
   let s3 = 0;
   for (let m = j; m < k; m++) {
-    const x = l[row + m]!;
-    s0 += x * u[u0 + m]!;
-    s1 += x * u[u1 + m]!;
-    s2 += x * u[u2 + m]!;
-    s3 += x * u[u3 + m]!;
+    const x = l[row + m];
+    s0 += x * u[u0 + m];
+    s1 += x * u[u1 + m];
+    s2 += x * u[u2 + m];
+    s3 += x * u[u3 + m];
   }
-  const scale = -1 / l[row + k]!;
+  const scale = -1 / l[row + k];
   u[u0 + k] = s0 * scale;
   u[u1 + k] = s1 * scale;
   u[u2 + k] = s2 * scale;
@@ -156,11 +156,11 @@ function dotFourRows(u: Float64Array, n: number, i: number, j: number, out: Floa
   let s2 = 0;
   let s3 = 0;
   for (let k = i; k < n; k++) {
-    const x = u[row + k]!;
-    s0 += x * u[u0 + k]!;
-    s1 += x * u[u1 + k]!;
-    s2 += x * u[u2 + k]!;
-    s3 += x * u[u3 + k]!;
+    const x = u[row + k];
+    s0 += x * u[u0 + k];
+    s1 += x * u[u1 + k];
+    s2 += x * u[u2 + k];
+    s3 += x * u[u3 + k];
   }
   out[row + j] = s0;
   out[row + j + 1] = s1;
