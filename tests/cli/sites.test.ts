@@ -262,7 +262,7 @@ describe('one isotope', () => {
     const { path } = await fitInvented(folder, 'd2H', {}, ['--isotope', 'd2H']);
     const run = await runCaptured(['sites', path, table('two.csv', TWO_SITES)]);
     expect(run.stdout.split('\r\n')[0]).toBe(
-      'plot,lon,lat,elevation,water,d2H,d2H_se,d2H_low,d2H_high,' + ADDED.slice(13).join(','),
+      `plot,lon,lat,elevation,water,d2H,d2H_se,d2H_low,d2H_high,${ADDED.slice(13).join(',')}`,
     );
     const row = parseCsv(run.stdout)[0];
     expect(Number(row.d2H_low)).toBeLessThan(Number(row.d2H));

@@ -81,7 +81,7 @@ function meanRows(
     const [errorO, errorH] = recordError(normal).map((error) => error / Math.sqrt(recordCount));
     const place = `${station.id},${station.lonDeg},${station.latDeg},${station.elevationM}`;
     const values = `${(station.trueD18O + errorO).toFixed(3)},${(station.trueD2H + errorH).toFixed(2)}`;
-    return place + ',' + values + (spread === '' ? '' : `,${recordCount},${RECORD_SD_D18O},${RECORD_SD_D2H}`);
+    return `${place},${values}${spread === '' ? '' : `,${recordCount},${RECORD_SD_D18O},${RECORD_SD_D2H}`}`;
   });
   return `id,lon,lat,elevation_m,d18O,d2H${spread}\n${rows.join('\n')}\n`;
 }

@@ -1,9 +1,9 @@
 import { createHash } from 'node:crypto';
 import { type Isoscape, readIsoscape } from '../../isoscape/index.js';
+import { bundledElevationPath } from '../../raster/index.js';
 import { type ColumnOverrides, openTable, type Table } from '../../stations/index.js';
 import type { CliContext } from '../context.js';
 import { openInput, readInputText } from '../input-file.js';
-import { writeOutput } from '../output-file.js';
 import { createProgress } from '../progress.js';
 import { createExplainer } from './explanations.js';
 import { assertJointSize, MAX_JOINT_SITES, writeJoint } from './joint-file.js';
@@ -32,6 +32,41 @@ export interface SitesCall {
 /** Reads sites, predicts them batch by batch, writes them as they come. */
 export async function runSites(call: SitesCall, context: CliContext): Promise<void> {
   const { options } = call;
+  const input = await openSites(call);
+  const { isoscape } = input;
+  const elevations = await createSiteElevations(options.elevationPath, isoscape.terms.includes('elevation'));
+  const tally = new SitesTally();
+  try {
+    const elevationPath = options.elevationPath ?? bundledElevationPath();
+    const outputs = await openSitesOutputs(
+      options,
+      [call.isoscapePath, call.sitesPath, elevationPath],
+      context,
+    );
+    try {
+      const predict = createSitePredictor(isoscape, elevations, options);
+      await streamSites({ ...input, predict, outputs, options, tally, context });
+      const facts = {
+        ...call,
+        isoscape,
+        isoscapeSha256: input.isoscapeSha256,
+        sitesSha256: await input.source.digest(),
+        elevationGrid: elevations.gridSource(),
+        siteCount: tally.rowCount,
+        problemCount: tally.problemCount,
+        toolVersion: context.toolVersion,
+      };
+      await outputs.commit((outputSha256) => runRecord({ ...facts, outputSha256 }, options));
+    } finally {
+      await outputs.abort();
+    }
+  } finally {
+    await elevations.close();
+  }
+  tally.report(options, context);
+}
+
+async function openSites(call: SitesCall) {
   const isoscapeText = await readInputText(call.isoscapePath, MAX_ISOSCAPE_BYTES);
   const isoscape = readIsoscape(isoscapeText);
   const source = hashed(await openInput(call.sitesPath));
@@ -40,38 +75,13 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
     columnOverrides: call.columns,
     placeMeanings: SITE_PLACE,
   });
-  const readRow = createSiteReader(table);
-  const elevations = await createSiteElevations(options.elevationPath, isoscape.terms.includes('elevation'));
-  const inputs = [call.isoscapePath, call.sitesPath, options.elevationPath].filter((path) => path !== null);
-  const tally = new SitesTally();
-  try {
-    const outputs = await openSitesOutputs(options, inputs, context);
-    try {
-      const predict = createSitePredictor(isoscape, elevations, options);
-      await streamSites({ isoscape, table, readRow, predict, outputs, options, tally, context });
-      const sitesSha256 = await source.digest();
-      const outputSha256 = await outputs.commit();
-      if (options.recordPath !== null && (options.recordAsked || outputs.mainIsFile)) {
-        const facts = {
-          ...call,
-          isoscape,
-          isoscapeSha256: createHash('sha256').update(isoscapeText).digest('hex'),
-          sitesSha256,
-          outputSha256,
-          elevationGrid: elevations.gridSource(),
-          siteCount: tally.rowCount,
-          problemCount: tally.problemCount,
-          toolVersion: context.toolVersion,
-        };
-        await writeOutput(options.recordPath, runRecord(facts, options), inputs);
-      }
-    } finally {
-      await outputs.abort();
-    }
-  } finally {
-    await elevations.close();
-  }
-  tally.report(options, context);
+  return {
+    isoscape,
+    isoscapeSha256: createHash('sha256').update(isoscapeText).digest('hex'),
+    source,
+    table,
+    readRow: createSiteReader(table),
+  };
 }
 
 interface Stream {

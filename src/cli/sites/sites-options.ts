@@ -1,3 +1,4 @@
+import { resolve } from 'node:path';
 import { RainprintError } from '../../errors.js';
 import type { SitesFormat } from './site-writers.js';
 
@@ -78,7 +79,8 @@ function assertDistinct(options: SitesOptions): void {
   const paths = [options.outputPath, options.jointPath, options.recordPath, explainPath].filter(
     (p) => p !== null,
   );
-  const twice = paths.find((path, i) => paths.indexOf(path) !== i);
+  const resolved = paths.map((path) => resolve(path));
+  const twice = paths.find((_, i) => resolved.indexOf(resolved[i]) !== i);
   if (twice !== undefined) {
     throw new RainprintError('OPTION_INVALID', `${twice} is named for two outputs; each needs its own file`, {
       path: twice,

@@ -7,12 +7,10 @@ import type { SitesOptions } from './sites-options.js';
 /** Where a run writes; files appear under their names only at `commit`. */
 export interface SitesOutputs {
   readonly main: TextOutput;
-  /** False for standard output, a device or a pipe: nothing can stand beside those. */
-  readonly mainIsFile: boolean;
   readonly explain: TextOutput | null;
   readonly joint: OutputFile | null;
-  /** Names all files; returns the SHA-256 of the main output. */
-  commit(): Promise<string>;
+  /** Gives all files their names; the record is made from the SHA-256 of the main output. */
+  commit(record: (outputSha256: string) => string): Promise<void>;
   /** Leaves no half-written file; harmless after `commit`. */
   abort(): Promise<void>;
 }
@@ -45,17 +43,19 @@ export async function openSitesOutputs(
       await writeText(context.stdout, text);
     };
     const joint = options.jointPath === null ? null : await opened(options.jointPath);
+    // By default the record stands beside the output: nothing can stand beside a device or a pipe.
+    const recorded = options.recordAsked || main?.regular === true;
+    const record = recorded && options.recordPath !== null ? await opened(options.recordPath) : null;
     const explain = await explainOutput(options, context, opened);
     return {
       main: { forPeople: false, write: main === null ? toStdout : (text) => main.write(text) },
-      mainIsFile: main?.regular ?? false,
       explain,
       joint,
       abort,
-      async commit() {
-        const hashes = new Map<OutputFile, string>();
-        for (const file of files) hashes.set(file, await file.commit());
-        return main === null ? stdoutHash.digest('hex') : hashes.get(main)!;
+      async commit(textOf) {
+        const mainHash = main === null ? stdoutHash.digest('hex') : await main.commit();
+        await record?.write(textOf(mainHash));
+        for (const file of files) if (file !== main) await file.commit();
       },
     };
   } catch (error) {
