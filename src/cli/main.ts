@@ -5,6 +5,7 @@ import { reportFailure } from './failure.js';
 import { registerFit } from './fit.js';
 import { registerGrid } from './grid.js';
 import { registerSites } from './sites.js';
+import { registerValidate } from './validate.js';
 
 /**
  * Runs one call of the command line and returns its exit code: 0 done, 2 the input or the call is wrong,
@@ -36,7 +37,7 @@ export function createProgram(context: CliContext): Command {
       outputError: () => {}, // said once, with its code, in reportFailure
     })
     .showSuggestionAfterError(true);
-  for (const register of [registerCheck, registerFit, registerSites, registerGrid])
+  for (const register of [registerCheck, registerFit, registerValidate, registerSites, registerGrid])
     register(program, context);
   return program;
 }
