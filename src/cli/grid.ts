@@ -1,10 +1,27 @@
 import type { Command } from 'commander';
 import { RainprintError } from '../errors.js';
-import { type Isoscape, predictPlaces, readIsoscape } from '../isoscape/index.js';
-import { makeGrid, parseBounds, parseCell, planGrid } from '../jobs/index.js';
-import { bundledElevationPath, openElevation } from '../raster/index.js';
+import {
+  createSupport,
+  type Isoscape,
+  type Places,
+  type Predictions,
+  predictPlaces,
+  readIsoscape,
+  type Target,
+} from '../isoscape/index.js';
+import {
+  type GridPlan,
+  type GridResult,
+  makeGrid,
+  parseBounds,
+  parseCell,
+  planGrid,
+  type SupportAsker,
+} from '../jobs/index.js';
+import { bundledElevationPath, type ElevationGrid, openElevation } from '../raster/index.js';
 import type { CliContext } from './context.js';
 import { readInputText } from './input-file.js';
+import { EXIT_INTERRUPTED, runInterruptible } from './interrupt.js';
 import { openOutput } from './output-file.js';
 import { createProgress } from './progress.js';
 
@@ -17,12 +34,8 @@ interface GridFlags {
   readonly plugIn?: boolean;
 }
 
-type Target = 'site' | 'field';
-
 /** An isoscape of 10,000 stations is a few megabytes. */
 const MAX_ISOSCAPE_BYTES = 2 ** 28;
-/** A shell's own code for a command stopped by SIGINT (128 + 2, POSIX). */
-const EXIT_INTERRUPTED = 130;
 /** Keeps a turn of the event loop near a tenth of a second: a place costs about n² operations. */
 const OPERATIONS_PER_TURN = 2 ** 24;
 
@@ -53,47 +66,78 @@ async function runGrid(isoscapePath: string, flags: GridFlags, context: CliConte
   const plan = planGrid(parseBounds(flags.bounds), parseCell(flags.cell));
   const isoscape = readIsoscape(await readInputText(isoscapePath, MAX_ISOSCAPE_BYTES));
   const elevationPath = flags.elevation ?? bundledElevationPath();
-  await checkOutput(flags.output, [isoscapePath, elevationPath]);
   if (plan.extended) {
+    const { westDeg, southDeg, eastDeg, northDeg } = plan;
     context.stderr.write(
-      `rainprint: bounds moved outwards to whole cells: ${plan.westDeg},${plan.southDeg},${plan.eastDeg},${plan.northDeg}\n`,
+      `rainprint: bounds moved outwards to whole cells: ${westDeg},${southDeg},${eastDeg},${northDeg}\n`,
     );
   }
-  const elevation = await openElevation(elevationPath);
+  const call = { plan, isoscape, target, plugIn: flags.plugIn === true, output: flags.output };
+  const finished = await runInterruptible(async (signal) => {
+    await checkOutput(flags.output, [isoscapePath, elevationPath]);
+    const elevation = await openElevation(elevationPath);
+    try {
+      const result = await writeGrid(call, elevation, signal, context);
+      context.stderr.write(summary(flags.output, result));
+    } finally {
+      await elevation.close();
+    }
+  });
+  if (finished) return;
+  context.stderr.write(`rainprint: stopped; ${flags.output} was not written\n`);
+  context.setExitCode(EXIT_INTERRUPTED);
+}
+
+interface GridCall {
+  readonly plan: GridPlan;
+  readonly isoscape: Isoscape;
+  readonly target: Target;
+  readonly plugIn: boolean;
+  readonly output: string;
+}
+
+async function writeGrid(
+  call: GridCall,
+  elevation: ElevationGrid,
+  signal: AbortSignal,
+  context: CliContext,
+): Promise<GridResult> {
+  const { plan, isoscape, target, plugIn } = call;
   const progress = createProgress(context, 'grid');
-  const stop = new AbortController();
-  const onInterrupt = () => stop.abort();
-  process.once('SIGINT', onInterrupt);
-  process.once('SIGTERM', onInterrupt);
+  const request = {
+    plan,
+    isotopes: isoscape.isotopes,
+    predict: (places: Places, out: Predictions) => predictPlaces(isoscape, places, out, { target, plugIn }),
+    support: supportAsker(isoscape),
+    placesPerTurn: placesPerTurn(isoscape),
+    elevation,
+    items: provenance(call, elevation.source, context.toolVersion),
+    software: `rainprint ${context.toolVersion}`,
+  };
   try {
-    const plugIn = flags.plugIn === true;
-    const result = await makeGrid(
-      flags.output,
-      {
-        plan,
-        isotopes: isoscape.isotopes,
-        predict: (places, out) => predictPlaces(isoscape, places, out, { target, plugIn }),
-        placesPerTurn: placesPerTurn(isoscape),
-        elevation,
-        items: provenance(isoscape, target, plugIn, elevation.source, context.toolVersion),
-        software: `rainprint ${context.toolVersion}`,
-      },
-      { signal: stop.signal, onProgress: (done, total) => progress.update(done, total) },
-    );
-    progress.end();
-    context.stderr.write(
-      `rainprint: ${flags.output}: ${result.width} × ${result.height} cells, ${result.landCells} of them land\n`,
-    );
-  } catch (error) {
-    progress.end();
-    if (!stop.signal.aborted) throw error;
-    context.stderr.write(`rainprint: stopped; ${flags.output} was not written\n`);
-    context.setExitCode(EXIT_INTERRUPTED);
+    return await makeGrid(call.output, request, {
+      signal,
+      onProgress: (done, total) => progress.update(done, total),
+    });
   } finally {
-    process.off('SIGINT', onInterrupt);
-    process.off('SIGTERM', onInterrupt);
-    await elevation.close();
+    progress.end();
   }
+}
+
+/** That elevations come from a grid holds for every cell and is no news. */
+function supportAsker(isoscape: Isoscape): SupportAsker {
+  const support = createSupport(isoscape);
+  return (lonDeg, latDeg, elevationM) => support.flags(lonDeg, latDeg, elevationM, false);
+}
+
+function summary(path: string, result: GridResult): string {
+  const { width, height, landCells, flaggedCells, flags } = result;
+  const lines = [`${path}: ${width} × ${height} cells, ${landCells} of them land`];
+  if (flaggedCells > 0) {
+    const reasons = Object.entries(flags).map(([flag, cells]) => `${flag} ${cells}`);
+    lines.push(`${flaggedCells} land cells lean on little (${reasons.join(', ')}): read them with care`);
+  }
+  return lines.map((line) => `rainprint: ${line}\n`).join('');
 }
 
 function parseTarget(text: string): Target {
@@ -113,13 +157,8 @@ function placesPerTurn(isoscape: Isoscape): number {
 }
 
 /** What someone who finds the file needs to know, as metadata items of the file. */
-function provenance(
-  isoscape: Isoscape,
-  target: Target,
-  plugIn: boolean,
-  elevationSource: string,
-  toolVersion: string,
-): Record<string, string> {
+function provenance(call: GridCall, elevationSource: string, toolVersion: string): Record<string, string> {
+  const { isoscape, target, plugIn } = call;
   return {
     isoscape_id: isoscape.id,
     network: isoscape.networkName,

@@ -15,4 +15,5 @@ export {
   type GridRun,
   makeGrid,
   type PlacePredictor,
+  type SupportAsker,
 } from './make-grid.js';

@@ -9,10 +9,14 @@ import type { GridPlan } from './grid-plan.js';
 /** The one door to the model: fills `out` for flat columns of places. */
 export type PlacePredictor = (places: Places, out: Predictions) => void;
 
+/** Names why a prediction at a place leans on little; empty where it does not. */
+export type SupportAsker = (lonDeg: number, latDeg: number, elevationM: number) => readonly string[];
+
 export interface GridRequest {
   readonly plan: GridPlan;
   readonly isotopes: IsotopeChoice;
   readonly predict: PlacePredictor;
+  readonly support: SupportAsker;
   /** Places predicted between two looks at progress and cancelling. */
   readonly placesPerTurn: number;
   readonly elevation: ElevationGrid;
@@ -31,6 +35,9 @@ export interface GridResult {
   readonly height: number;
   /** Cells that are land and have a prediction. */
   readonly landCells: number;
+  /** Cells that some reason says lean on little, and how many each reason names. */
+  readonly flaggedCells: number;
+  readonly flags: Readonly<Record<string, number>>;
 }
 
 export const GRID_NODATA = -9999;
@@ -47,7 +54,7 @@ export async function makeGrid(path: string, request: GridRequest, run: GridRun 
   const { plan, isotopes, elevation } = request;
   const bands = gridBands(isotopes);
   const cellCount = plan.width * plan.height;
-  let landCells = 0;
+  const tally: Tally = { landCells: 0, flaggedCells: 0, flags: {} };
   const fillRows = async (firstRow: number, rowCount: number): Promise<Float32Array[]> => {
     const rows = bands.map(() => new Float32Array(plan.width * rowCount).fill(Number.NaN));
     for (const block of rowBlocks(firstRow, rowCount, plan.width)) {
@@ -59,9 +66,9 @@ export async function makeGrid(path: string, request: GridRequest, run: GridRun 
       const cells = await elevation.sampleGrid(part);
       const start = (block.firstRow - firstRow) * plan.width;
       const onCells = (done: number) => run.onProgress?.(block.firstRow * plan.width + done, cellCount);
-      landCells += await fillBlock(request, part, cells, rows, start, onCells, run.signal);
+      await fillBlock(request, part, cells, { rows, start, tally, onCells }, run.signal);
     }
-    if (firstRow + rowCount === plan.height && landCells === 0) throw gridEmpty(elevation.source);
+    if (firstRow + rowCount === plan.height && tally.landCells === 0) throw gridEmpty(elevation.source);
     return rows;
   };
   await writeGeoTiff(
@@ -87,34 +94,53 @@ export async function makeGrid(path: string, request: GridRequest, run: GridRun 
     fillRows,
     run.signal === undefined ? {} : { signal: run.signal },
   );
-  return { width: plan.width, height: plan.height, landCells };
+  return { width: plan.width, height: plan.height, ...tally };
 }
 
-/** Predicts the land cells of some whole rows and writes them into the bands from `start` on; returns their number. */
+interface Tally {
+  landCells: number;
+  flaggedCells: number;
+  readonly flags: Record<string, number>;
+}
+
+/** Where the predictions of some whole rows go: bands from cell `start` on, counts, progress. */
+interface BlockSink {
+  readonly rows: readonly Float32Array[];
+  readonly start: number;
+  readonly tally: Tally;
+  readonly onCells: (done: number) => void;
+}
+
+/** Predicts the land cells of some whole rows. */
 async function fillBlock(
   request: GridRequest,
   grid: LonLatGrid,
   cells: ElevationCells,
-  bands: readonly Float32Array[],
-  start: number,
-  onCells: (done: number) => void,
+  sink: BlockSink,
   signal: AbortSignal | undefined,
-): Promise<number> {
+): Promise<void> {
   const land = landIndices(cells);
   for (let first = 0; first < land.length; first += request.placesPerTurn) {
     signal?.throwIfAborted();
     const some = land.subarray(first, first + request.placesPerTurn);
+    const places = placesOf(grid, cells, some);
     const predictions = createPredictions(some.length);
-    request.predict(placesOf(grid, cells, some), predictions);
+    request.predict(places, predictions);
     for (let i = 0; i < some.length; i++) {
-      writeBandCell(request.isotopes, predictions, i, bands, start + some[i]!);
+      writeBandCell(request.isotopes, predictions, i, sink.rows, sink.start + some[i]!);
+      count(sink.tally, request.support(places.lonDeg[i]!, places.latDeg[i]!, places.elevationM[i]!));
     }
-    onCells(some[some.length - 1]! + 1);
+    sink.onCells(some[some.length - 1]! + 1);
     await nextTurn(); // lets signals and the terminal in
   }
   signal?.throwIfAborted();
-  onCells(grid.width * grid.height);
-  return land.length;
+  sink.onCells(grid.width * grid.height);
+}
+
+function count(tally: Tally, flags: readonly string[]): void {
+  tally.landCells++;
+  if (flags.length > 0) tally.flaggedCells++;
+  for (const flag of flags) tally.flags[flag] = (tally.flags[flag] ?? 0) + 1;
 }
 
 function landIndices(cells: ElevationCells): Uint32Array {

@@ -42,6 +42,7 @@ const request = (bounds: string, cellDeg: number, change: Partial<GridRequest> =
   plan: planGrid(parseBounds(bounds), cellDeg),
   isotopes: 'both',
   predict,
+  support: () => [],
   placesPerTurn: 100,
   elevation: elevation(() => true),
   items: { isoscape_id: 'x' },
@@ -79,7 +80,7 @@ describe('makeGrid', () => {
         if (Math.abs(bands[b]![k]! - value) > 1e-5) expect(bands[b]![k]).toBeCloseTo(value, 5);
       });
     }
-    expect(result).toEqual({ width: 300, height: 200, landCells: land });
+    expect(result).toEqual({ width: 300, height: 200, landCells: land, flaggedCells: 0, flags: {} });
   });
 
   it('has a d-excess of its own pair and an error of the joint error', async () => {
@@ -126,6 +127,19 @@ describe('makeGrid', () => {
       const [value] = await readBands(path);
       expect(value![0]).toBeCloseTo(isotopes === 'd18O' ? 0.05 : 1.5 + 0.1015, 5);
     }
+  });
+
+  it('counts the land cells that lean on little, by reason', async () => {
+    const support = (lonDeg: number, latDeg: number) => [
+      ...(lonDeg > 5 ? ['far-from-stations'] : []),
+      ...(latDeg > 5 ? ['outside-hull'] : []),
+    ];
+    const result = await makeGrid(newPath(), request('0,0,10,10', 1, { support }));
+    expect(result).toMatchObject({
+      landCells: 100,
+      flaggedCells: 75,
+      flags: { 'far-from-stations': 50, 'outside-hull': 50 },
+    });
   });
 
   it('tells how far it is, up to the last cell', async () => {

@@ -1,0 +1,362 @@
+import { spawn } from 'node:child_process';
+import { existsSync, readdirSync, readFileSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+import { fileURLToPath } from 'node:url';
+import { fromFile } from 'geotiff';
+import { beforeAll, describe, expect, it } from 'vitest';
+import { createPlaces, createPredictions, predictPlaces, readIsoscape } from '../../src/isoscape/index.js';
+import { dExcessVariance } from '../../src/isotope/index.js';
+import { openElevation, writeGeoTiff } from '../../src/raster/index.js';
+import { runCaptured } from '../support/captured-run.js';
+import { inventNetwork } from '../support/invented-network.js';
+import { describeWithTool, runTool } from '../support/outside-tool.js';
+import { scratchFolder } from '../support/scratch.js';
+
+const folder = scratchFolder();
+const isoscapePath = join(folder, 'isoscape.json');
+const singlePath = join(folder, 'single.json');
+const landPath = join(folder, 'land.tif');
+const BOUNDS = '-34,-50,-26,-42';
+
+let fileCount = 0;
+const newPath = () => join(folder, `grid-${fileCount++}.tif`);
+const grid = (path: string, ...words: string[]) =>
+  runCaptured(['grid', isoscapePath, '-o', path, '--elevation', landPath, ...words]);
+
+/** The invented land: a cone in the invented network's stretch of ocean, 0.1° cells. */
+async function writeInventedLand(path: string): Promise<void> {
+  const width = 100;
+  const heightM = (k: number) => {
+    const x = (k % width) - 49.5;
+    const y = Math.floor(k / width) - 49.5;
+    const radius = Math.hypot(x, y);
+    return radius > 38 ? Number.NaN : 1500 - 39 * radius;
+  };
+  const cells = Float32Array.from({ length: width * width }, (_, k) => heightM(k));
+  await writeGeoTiff(
+    path,
+    {
+      width,
+      height: width,
+      sampleType: 'float32',
+      tileSizePx: 32,
+      crs: 'EPSG:4326',
+      transform: { originX: -35, originY: -41, cellWidth: 0.1, cellHeight: 0.1 },
+      pixelIs: 'area',
+      nodata: -9999,
+      bands: [{ name: 'elevation', unit: 'm', longName: 'invented' }],
+      items: {},
+      software: 'test',
+    },
+    (first, count) => [cells.subarray(first * width, (first + count) * width)],
+  );
+}
+
+beforeAll(async () => {
+  await writeInventedLand(landPath);
+  const table = join(folder, 'stations.csv');
+  writeFileSync(table, inventNetwork({ stationCount: 40, seed: 7 }).csv);
+  expect(await runCaptured(['fit', table, '-o', isoscapePath])).toMatchObject({ exitCode: 0 });
+  const single = ['fit', table, '--isotope', 'd18O', '-o', singlePath];
+  expect(await runCaptured(single)).toMatchObject({ exitCode: 0 });
+});
+
+async function readBands(path: string): Promise<Float32Array[]> {
+  const tiff = await fromFile(path);
+  const bands = await (await tiff.getImage()).readRasters();
+  await tiff.close();
+  return Array.from(bands as unknown as Float32Array[]);
+}
+
+describe('rainprint grid', () => {
+  it('writes at each cell what the library answers for its centre, elevation error included', async () => {
+    const path = newPath();
+    const run = await grid(path, '--bounds', BOUNDS, '--cell', '0.2');
+    expect(run).toMatchObject({ exitCode: 0, stdout: '' });
+    expect(run.stderr).toMatch(/40 × 40 cells, \d+ of them land/);
+    const bands = await readBands(path);
+    const isoscape = readIsoscape(readFileSync(isoscapePath, 'utf8'));
+    const land = await openElevation(landPath);
+    const asked = { westDeg: -34, northDeg: -42, cellDeg: 0.2, width: 40, height: 40 };
+    const { elevationM, varianceM2 } = await land.sampleGrid(asked);
+    await land.close();
+    const places = createPlaces(1);
+    const out = createPredictions(1);
+    let landCells = 0;
+    for (let k = 0; k < 1600; k++) {
+      const values = bands.map((band) => band[k]!);
+      if (Number.isNaN(elevationM[k])) {
+        expect(values).toEqual(new Array(7).fill(-9999));
+        continue;
+      }
+      landCells++;
+      places.lonDeg[0] = -34 + ((k % 40) + 0.5) * 0.2;
+      places.latDeg[0] = -42 - (Math.floor(k / 40) + 0.5) * 0.2;
+      places.elevationM[0] = elevationM[k]!;
+      places.elevationVarM2[0] = varianceM2[k]!;
+      predictPlaces(isoscape, places, out);
+      const [o, h, varO, varH, cov] = [
+        out.d18O[0]!,
+        out.d2H[0]!,
+        out.varD18O[0]!,
+        out.varD2H[0]!,
+        out.cov[0]!,
+      ];
+      const expected = [
+        o,
+        Math.sqrt(varO),
+        h,
+        Math.sqrt(varH),
+        h - 8 * o,
+        Math.sqrt(dExcessVariance(varO, cov, varH)),
+        cov,
+      ];
+      // float32 keeps 24 bits: 1e-5 of values up to 100, and d-excess is made of rounded ones
+      for (const [b, value] of values.entries()) expect(Math.abs(value - expected[b]!)).toBeLessThan(3e-5);
+      expect(values[4]).toBe(Math.fround(values[2]! - 8 * values[0]!));
+    }
+    expect(landCells).toBeGreaterThan(900);
+    expect(landCells).toBeLessThan(1300);
+  });
+
+  it('says the same at a cell of the raster as `sites` says there', async () => {
+    const path = newPath();
+    await grid(path, '--bounds', '-33,-48,-28,-43', '--cell', '0.1', '--target', 'field');
+    const bands = await readBands(path);
+    const cells = [
+      [10, 20],
+      [25, 25],
+      [30, 12],
+    ] as const;
+    const table = join(folder, 'sites.csv');
+    const rows = cells.map(
+      ([c, r]) => `${(-33 + (c + 0.5) * 0.1).toFixed(2)},${(-43 - (r + 0.5) * 0.1).toFixed(2)}`,
+    );
+    writeFileSync(table, `lon,lat\n${rows.join('\n')}\n`);
+    const out = join(folder, 'sites-out.csv');
+    const run = await runCaptured([
+      'sites',
+      isoscapePath,
+      table,
+      '-o',
+      out,
+      '--elevation',
+      landPath,
+      '--target',
+      'field',
+    ]);
+    expect(run.exitCode).toBe(0);
+    const [header, ...lines] = readFileSync(out, 'utf8')
+      .trim()
+      .split(/\r?\n/)
+      .map((line) => line.split(','));
+    for (const [i, [c, r]] of cells.entries()) {
+      for (const [b, name] of ['d18O', 'd18O_se', 'd2H', 'd2H_se', 'dexcess', 'dexcess_se'].entries()) {
+        // sites prints four decimals, d-excess of the printed pair: within 8.5 units of the last
+        const said = Number(lines[i]![header!.indexOf(name)]);
+        expect(Math.abs(bands[b]![r * 50 + c]! - said)).toBeLessThan(6e-4);
+      }
+    }
+  });
+
+  it('differs between site and field, averaged and plug-in, and says in the file which it is', async () => {
+    const [site, field, plugIn] = [newPath(), newPath(), newPath()];
+    const area = ['--bounds', '-32,-48,-28,-44', '--cell', '0.5'];
+    await grid(site, ...area);
+    await grid(field, ...area, '--target', 'field');
+    await grid(plugIn, ...area, '--plug-in');
+    const [a, b, c] = [await readBands(site), await readBands(field), await readBands(plugIn)];
+    for (const [k, se] of a[3]!.entries()) expect(b[3]![k]!).toBeLessThan(se);
+    expect(a[1]).not.toEqual(c[1]);
+    const tiff = await fromFile(plugIn);
+    expect(await (await tiff.getImage()).getGDALMetadata()).toMatchObject({
+      isoscape_id: readIsoscape(readFileSync(isoscapePath, 'utf8')).id,
+      target: 'site',
+      parameters: 'plug-in',
+      season: '1-12',
+      stations: '40',
+      elevation_source: expect.stringMatching(/^land\.tif sha256:[0-9a-f]{12}$/),
+    });
+    await tiff.close();
+  });
+
+  it('gives two bands for a one-isotope isoscape', async () => {
+    const path = newPath();
+    const run = await runCaptured([
+      'grid',
+      singlePath,
+      '-o',
+      path,
+      '--elevation',
+      landPath,
+      '--bounds',
+      BOUNDS,
+      '--cell',
+      '1',
+    ]);
+    expect(run.exitCode).toBe(0);
+    const bands = await readBands(path);
+    expect(bands).toHaveLength(2);
+    const land = bands[0]!.findIndex((value) => value !== -9999);
+    expect(bands[0]![land]).toBeLessThan(0);
+    expect(bands[1]![land]).toBeGreaterThan(0);
+  });
+
+  it('reads the bundled elevations by default, over the antimeridian too, and names cells that lean on little', async () => {
+    const path = newPath();
+    const run = await runCaptured([
+      'grid',
+      isoscapePath,
+      '--bounds',
+      '176,65,-172,70',
+      '--cell',
+      '1/2',
+      '-o',
+      path,
+    ]);
+    expect(run.exitCode).toBe(0);
+    expect(run.stderr).toMatch(/land cells lean on little \(outside-hull \d+, far-from-stations \d+/);
+    const tiff = await fromFile(path);
+    expect((await tiff.getImage()).getBoundingBox()).toEqual([176, 65, 188, 70]);
+    await tiff.close();
+    const [d18O] = await readBands(path);
+    // Chukotka is land on both sides of 180°, which is column 8 of 24
+    expect(d18O!.slice(4 * 24 + 6, 4 * 24 + 10).every((value) => value !== -9999)).toBe(true);
+  });
+
+  it('says when cells had to reach beyond the bounds', async () => {
+    const run = await grid(newPath(), '--bounds', '-32,-48,-28.1,-44', '--cell', '0.5');
+    expect(run.exitCode).toBe(0);
+    expect(run.stderr).toContain('bounds moved outwards to whole cells: -32,-48,-28,-44');
+  });
+
+  it('shows progress on a terminal only', async () => {
+    const call = ['grid', isoscapePath, '--elevation', landPath, '--bounds', BOUNDS, '--cell', '0.2', '-o'];
+    expect((await runCaptured([...call, newPath()], true)).stderr).toMatch(/\rgrid [\d,]+\/1,600 \(\d+ %\)/);
+    expect((await runCaptured([...call, newPath()], false)).stderr).not.toContain('\r');
+  });
+
+  it('explains itself with an example', async () => {
+    const run = await runCaptured(['grid', '--help']);
+    expect(run.exitCode).toBe(0);
+    expect(run.stdout).toContain('rainprint grid rain.isoscape.json --bounds');
+  });
+});
+
+describe('rainprint grid refuses', () => {
+  const notTiff = join(folder, 'text.tif');
+  writeFileSync(notTiff, 'lon,lat\n');
+
+  it.each<[string, string[], string]>([
+    ['bounds of three numbers', ['--bounds', '1,2,3', '--cell', '1'], 'BOUNDS_INVALID'],
+    ['bounds upside down', ['--bounds', '-34,-42,-26,-50', '--cell', '1'], 'BOUNDS_INVALID'],
+    ['a cell of 0', ['--bounds', BOUNDS, '--cell', '0'], 'CELL_INVALID'],
+    ['too many cells', ['--bounds', '-180,-90,180,90', '--cell', '0.01'], 'GRID_TOO_LARGE'],
+    ['an unknown target', ['--bounds', BOUNDS, '--cell', '1', '--target', 'place'], 'OPTION_INVALID'],
+    ['no bounds', ['--cell', '1'], 'OPTION_INVALID'],
+    [
+      'elevations that are no raster',
+      ['--bounds', BOUNDS, '--cell', '1', '--elevation', notTiff],
+      'RASTER_NOT_TIFF',
+    ],
+    [
+      'elevations that are not there',
+      ['--bounds', BOUNDS, '--cell', '1', '--elevation', join(folder, 'no.tif')],
+      'FILE_NOT_FOUND',
+    ],
+    ['an area without land', ['--bounds', '0,0,5,5', '--cell', '1'], 'GRID_EMPTY'],
+  ])('%s', async (_, words, code) => {
+    const path = newPath();
+    const run = await grid(path, ...words);
+    expect(run.exitCode).toBe(2);
+    expect(run.stderr).toContain(`rainprint: ${code}: `);
+    expect(run.stderr).not.toMatch(/\n\s+at /);
+    expect(existsSync(path)).toBe(false);
+  });
+
+  it('to overwrite its own inputs, and a folder', async () => {
+    for (const [path, code] of [
+      [isoscapePath, 'OUTPUT_IS_INPUT'],
+      [landPath, 'OUTPUT_IS_INPUT'],
+      [folder, 'OUTPUT_PATH_INVALID'],
+      [join(folder, 'none', 'x.tif'), 'OUTPUT_PATH_INVALID'],
+    ] as const) {
+      const run = await grid(path, '--bounds', BOUNDS, '--cell', '1');
+      expect(run).toMatchObject({ exitCode: 2, stderr: expect.stringContaining(code) });
+    }
+    expect(readIsoscape(readFileSync(isoscapePath, 'utf8')).stations.id).toHaveLength(40);
+  });
+
+  it('an isoscape that is a table', async () => {
+    const run = await runCaptured([
+      'grid',
+      join(folder, 'stations.csv'),
+      '--bounds',
+      BOUNDS,
+      '--cell',
+      '1',
+      '-o',
+      newPath(),
+    ]);
+    expect(run).toMatchObject({ exitCode: 2, stderr: expect.stringContaining('ISOSCAPE_NOT_JSON') });
+  });
+});
+
+describe('rainprint grid, interrupted', () => {
+  it('leaves neither a grid nor a part of one', async () => {
+    const command = fileURLToPath(new URL('../../scripts/rainprint.mjs', import.meta.url));
+    const path = newPath();
+    const words = [
+      'grid',
+      isoscapePath,
+      '--elevation',
+      landPath,
+      '--bounds',
+      BOUNDS,
+      '--cell',
+      '0.004',
+      '-o',
+      path,
+    ];
+    const child = spawn(process.execPath, [command, ...words], { stdio: ['ignore', 'ignore', 'pipe'] });
+    let stderr = '';
+    child.stderr.on('data', (chunk: Buffer) => {
+      stderr += chunk.toString();
+    });
+    const ended = new Promise<number | null>((resolve) => child.on('exit', resolve));
+    const parts = () => readdirSync(folder).filter((name) => name.endsWith('.tmp'));
+    // 4 million cells take far longer than it takes to see a part file
+    while (parts().length === 0 && child.exitCode === null) await new Promise((next) => setTimeout(next, 20));
+    child.kill('SIGINT');
+    expect({ exitCode: await ended, stderr }).toEqual({
+      exitCode: 130,
+      stderr: `rainprint: stopped; ${path} was not written\n`,
+    });
+    expect(existsSync(path)).toBe(false);
+    expect(parts()).toEqual([]);
+  });
+});
+
+// Source: GDAL's own reader.
+describeWithTool('gdallocationinfo', 'rainprint grid, read by GDAL', () => {
+  it('shows seven named bands and the same values', async () => {
+    const path = newPath();
+    await grid(path, '--bounds', '-33,-48,-28,-43', '--cell', '0.25');
+    const bands = await readBands(path);
+    const info = JSON.parse(runTool('gdalinfo', '-json', path)) as {
+      bands: { description: string; unit: string; noDataValue: number }[];
+    };
+    expect(info.bands.map((band) => `${band.description} ${band.unit} ${band.noDataValue}`)).toEqual([
+      'd18O permil -9999',
+      'd18O_se permil -9999',
+      'd2H permil -9999',
+      'd2H_se permil -9999',
+      'dexcess permil -9999',
+      'dexcess_se permil -9999',
+      'cov_d18O_d2H permil2 -9999',
+    ]);
+    const said = runTool('gdallocationinfo', '-valonly', '-wgs84', path, '-30.6', '-45.4').trim().split('\n');
+    const k = Math.floor((-43 + 45.4) / 0.25) * 20 + Math.floor((-30.6 + 33) / 0.25);
+    expect(said.map((text) => Math.fround(Number(text)))).toEqual(bands.map((band) => band[k]));
+  });
+});
