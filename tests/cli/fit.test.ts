@@ -35,6 +35,7 @@ describe('rainprint fit', () => {
   it('ends with every part of the closing table', () => {
     for (const part of [
       'Stations: 30 used, 1 left out, 1 with one isotope only',
+      'Sampling error of the means: from the standard deviations of the table, scale 1\n',
       /elevation, ‰ per 100 m +-\d\.\d+ ± \d\.\d+ +-\d\.\d+ ± \d\.\d+ +\d\.\d+ ± \d\.\d+/,
       /5 % distance +sill +nugget/,
       /along +[\d.]+ km +[\d.]+ km/,

@@ -1,3 +1,4 @@
+import { spawnSync } from 'node:child_process';
 import { readFileSync } from 'node:fs';
 import { Writable } from 'node:stream';
 import { describe, expect, it } from 'vitest';
@@ -45,6 +46,23 @@ describe('the command line frame', () => {
     expect(result.stdout).toBe('');
     expect(result.stderr).toMatch(/^rainprint: OPTION_INVALID: .+$/m);
     expect(result.stderr).not.toMatch(/^\s+at .*:\d+/m);
+  });
+});
+
+describe('the built command', () => {
+  const command = (text: string) => spawnSync('sh', ['-c', text], { encoding: 'utf8' });
+
+  it('runs from the clone and hands its exit code on', () => {
+    const bad = command('node scripts/rainprint.mjs nonsense');
+    expect(bad.status).toBe(2);
+    expect(bad.stderr).toMatch(/^rainprint: OPTION_INVALID: unknown command 'nonsense'/);
+  });
+
+  it('takes a reader that leaves early without a word', () => {
+    const pipe = command('node scripts/rainprint.mjs --help | true');
+    expect(pipe.stderr).toBe('');
+    const verb = command('node scripts/rainprint.mjs fit --help | head -c 10');
+    expect(verb).toMatchObject({ stdout: 'Usage: rai', stderr: '' });
   });
 });
 

@@ -34,8 +34,24 @@ function stationLines(summary: FitSummary): string {
   const lacking = stationsOfOneIsotope > 0 ? `, ${stationsOfOneIsotope} with one isotope only` : '';
   return (
     `Isoscape ${isoscape.id.slice(0, 12)} of network ${isoscape.networkName}, months ${isoscape.season.label}, ${years}\n` +
-    `Stations: ${summary.stationsUsed} used, ${summary.stationsLeftOut} left out${lacking}\n`
+    `Stations: ${summary.stationsUsed} used, ${summary.stationsLeftOut} left out${lacking}\n` +
+    samplingLine(summary)
   );
+}
+
+const SAMPLING_SOURCES = {
+  records: 'known from the records',
+  'standard-deviations': 'from the standard deviations of the table',
+  none: 'not known',
+} as const;
+
+function samplingLine({ isoscape }: FitSummary): string {
+  const { sampling, samplingScale, samplingScaleFitted } = isoscape;
+  const scale =
+    sampling.kind === 'none'
+      ? ''
+      : `, scale ${significant(samplingScale, 3)}${samplingScaleFitted ? ' (fitted)' : ''}`;
+  return `Sampling error of the means: ${SAMPLING_SOURCES[sampling.kind]}${scale}\n`;
 }
 
 function effectLines(summary: FitSummary): string {
