@@ -4,8 +4,14 @@ import type { Table, TableRow } from './table/index.js';
 /** One row a record, or one row a station. */
 export type TableLayout = 'records' | 'means';
 
+const RECORDS_ONLY: readonly StationMeaning[] = ['precipitation', 'month', 'year', 'date'];
 const PEEKED_ROWS = 20_000;
 const MEANS_ONLY: readonly StationMeaning[] = ['season', 'n', 'sd_d18O', 'sd_d2H', 'se_d18O', 'se_d2H'];
+
+/** Whether a column of that meaning plays a part: months do not in a table of means, SDs do not in one of records. */
+export function isUsedBy(layout: TableLayout, meaning: StationMeaning): boolean {
+  return !(layout === 'records' ? MEANS_ONLY : RECORDS_ONLY).includes(meaning);
+}
 
 /**
  * Decides what a row of the table is. A month or date makes it a record; a number of records, SDs, SEs or a season

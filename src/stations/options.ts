@@ -45,7 +45,7 @@ export interface ReadSettings {
 }
 
 const Options = z.strictObject({
-  name: z.string().min(1).max(200).default('network'),
+  name: z.string().min(1).max(1000).default('network'),
   format: z.enum(['csv', 'geojson', 'auto']).default('auto'),
   isotopes: z.enum(['both', 'd18O', 'd2H']).default('both'),
   season: z.string().optional(),

@@ -1,7 +1,7 @@
 import { type Candidate, candidateFromMeans, candidateFromRecords } from './candidates.js';
 import { flagSuspiciousCoordinates } from './coordinate-suspicion.js';
 import { IssueLog } from './issue-log.js';
-import { decideLayout, type TableLayout } from './layout.js';
+import { decideLayout, isUsedBy, type TableLayout } from './layout.js';
 import { MeansBook } from './means-book.js';
 import type { Network, Season } from './network.js';
 import { checkOptions, type ReadNetworkOptions, type ReadSettings } from './options.js';
@@ -63,7 +63,7 @@ async function openStationTable(
   source: AsyncIterable<Uint8Array>,
   settings: ReadSettings,
 ): Promise<Table<StationMeaning>> {
-  const table = await openTable(source, {
+  const table = await openTable<StationMeaning>(source, {
     vocabulary: STATION_VOCABULARY,
     columnOverrides: settings.columns,
     format: settings.format,
@@ -73,7 +73,12 @@ async function openStationTable(
   const needed: StationMeaning[] = ['id', 'lon', 'lat', 'elevation'];
   if (settings.isotopes !== 'd2H') needed.push('d18O');
   if (settings.isotopes !== 'd18O') needed.push('d2H');
-  for (const meaning of needed) requireColumn(table, STATION_VOCABULARY, meaning);
+  const other = table.columns.has('d18O') ? 'd18O' : 'd2H';
+  const hint = settings.isotopes === 'both' ? `, or use one isotope alone (--isotope ${other})` : '';
+  for (const meaning of needed) {
+    const isIsotope = meaning === 'd18O' || meaning === 'd2H';
+    requireColumn(table, STATION_VOCABULARY, meaning, isIsotope && table.columns.has(other) ? hint : '');
+  }
   return table;
 }
 
@@ -165,7 +170,7 @@ function reportOf(
   const hasWithin = knowledge.kind !== 'none';
   return {
     name: network.name,
-    table: describeTable(table),
+    table: describeTable(table, layout),
     isotopes: network.isotopes,
     season: network.season.label,
     years: network.years,
@@ -195,16 +200,16 @@ function reportOf(
   };
 }
 
-function describeTable(table: Table<StationMeaning>): CheckReport['table'] {
-  const matched = [...table.columns].map(([meaning, column]) => [meaning, table.header[column]] as const);
-  const usedColumns = new Set(table.columns.values());
+function describeTable(table: Table<StationMeaning>, layout: TableLayout): CheckReport['table'] {
+  const used = [...table.columns].filter(([meaning]) => isUsedBy(layout, meaning));
+  const usedColumns = new Set(used.map(([, column]) => column));
   return {
     format: table.format,
     encoding: table.encoding(),
     delimiter:
       table.delimiter === null ? null : (DELIMITER_NAMES[table.delimiter] as 'comma' | 'semicolon' | 'tab'),
     decimal: table.decimal === '.' ? 'point' : 'comma',
-    columns: Object.fromEntries(matched),
+    columns: Object.fromEntries(used.map(([meaning, column]) => [meaning, table.header[column]])),
     unusedColumns: table.header.filter((name, column) => !usedColumns.has(column) && name !== ''),
   };
 }

@@ -77,8 +77,9 @@ export async function openTable<M extends string>(
   const text = readText(source, lineLimit(options));
   if (options.format === 'geojson') text.liftLineLimit();
   const sample = await readSample(text);
-  if (sample.text.trim() === '' && sample.ended) {
-    throw new RainprintError('EMPTY_FILE', 'the file has no text in it; a header and rows are expected');
+  if (sample.text.trim() === '') {
+    const where = sample.ended ? 'in it' : 'in its beginning, only blank lines';
+    throw new RainprintError('EMPTY_FILE', `the file has no text ${where}; a header and rows are expected`);
   }
   const format = options.format ?? 'auto';
   if (format === 'geojson' || (format === 'auto' && /^\s*[{[]/.test(sample.text))) {
@@ -100,18 +101,19 @@ export async function openTable<M extends string>(
   };
 }
 
-/** @throws COLUMN_MISSING naming the meaning, common spellings and the header as read */
+/** @throws COLUMN_MISSING naming the meaning, common spellings, the header as read and the hint */
 export function requireColumn<M extends string>(
   table: Table<M>,
   vocabulary: Vocabulary<M>,
   meaning: M,
+  hint = '',
 ): number {
   const column = table.columns.get(meaning);
   if (column !== undefined) return column;
   throw new RainprintError(
     'COLUMN_MISSING',
     `no column for ${meaning} (spelled like ${vocabulary[meaning].tiers[0].slice(0, 4).join(', ')}); ` +
-      `the header has ${quotedList(table.header)}; name it with --column ${meaning}=Header`,
+      `the header has ${quotedList(table.header)}; name it with --column ${meaning}=Header${hint}`,
     { meaning, header: table.header.slice(0, 30) },
   );
 }
