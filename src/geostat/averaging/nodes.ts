@@ -32,45 +32,63 @@ export function parameterNodes(
   const likelihood = new FieldLikelihood(geometry, correlationFunction(family), errorVariance);
   const points = posteriorGrid(likelihood, z, fit, geometry.n);
   const parameters = points.map((point) => parametersAt(fit.space, point.coordinates));
-  const { features, width } = probeFeatures(geometry, family, z, errorVariance, parameters);
   const weights = Float64Array.from(points, (point) => point.weight);
+  const { features, width } = probeFeatures(geometry, family, z, errorVariance, parameters, weights);
   return compressWeights(weights, features, width, MAX_NODES).map(({ index, weight }) => ({
-    ...parameters[index]!,
+    ...parameters[index],
     weight,
   }));
 }
 
-/** û and v + û² at the probes for every parameter set: J × 2·probes, row-major. */
+/**
+ * What the average must keep, at each probe for every parameter set, in units of the mixture's own standard error
+ * s: (û − m)/s and (v + (û − m)²)/s² about the mixture's mean m. J × 2·probes, row-major.
+ */
 function probeFeatures(
   geometry: FieldGeometry,
   family: CovarianceFamily,
   z: Float64Array,
   errorVariance: Float64Array,
   parameters: readonly FieldParameters[],
+  weights: Float64Array,
 ): { features: Float64Array; width: number } {
   const probes = createProbes(geometry);
-  const width = 2 * probes.count;
+  const { count } = probes;
+  const width = 2 * count;
   const features = new Float64Array(parameters.length * width);
-  const mean = new Float64Array(probes.count);
-  const variance = new Float64Array(probes.count);
+  const mean = new Float64Array(count);
+  const variance = new Float64Array(count);
   const workspace = createBlupWorkspace(geometry.n, geometry.p);
   parameters.forEach((set, row) => {
     const system = new FieldSystem(geometry, family, set, errorVariance);
     const data = [system.solveData(z)];
-    predictField(
-      system,
-      probes.positionsKm,
-      probes.trendRows,
-      probes.count,
-      data,
-      [mean],
-      variance,
-      workspace,
-    );
-    for (let k = 0; k < probes.count; k++) {
-      features[row * width + k] = mean[k]!;
-      features[row * width + probes.count + k] = variance[k]! + set.nugget + mean[k]! ** 2;
-    }
+    predictField(system, probes.positionsKm, probes.trendRows, count, data, [mean], variance, workspace);
+    features.set(mean, row * width);
+    for (let k = 0; k < count; k++) features[row * width + count + k] = variance[k] + set.nugget;
   });
+  for (let k = 0; k < count; k++) standardise(features, width, k, count + k, weights);
   return { features, width };
+}
+
+/** Means (column a) and variances (column b) of one probe to units of the mixture's standard error, in place. */
+function standardise(
+  features: Float64Array,
+  width: number,
+  a: number,
+  b: number,
+  weights: Float64Array,
+): void {
+  const average = (valueAt: (row: number) => number) =>
+    weights.reduce((sum, weight, row) => sum + weight * valueAt(row), 0);
+  const mean = average((row) => features[row * width + a]);
+  weights.forEach((_, row) => {
+    features[row * width + a] -= mean;
+    features[row * width + b] += features[row * width + a] ** 2;
+  });
+  const variance = average((row) => features[row * width + b]);
+  if (!(variance > 0)) return;
+  weights.forEach((_, row) => {
+    features[row * width + a] /= Math.sqrt(variance);
+    features[row * width + b] /= variance;
+  });
 }

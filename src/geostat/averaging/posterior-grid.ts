@@ -1,6 +1,7 @@
 import type { FieldFit } from '../fit-field.js';
 import type { FieldLikelihood } from '../likelihood.js';
 import { parametersAt, type SearchSpace } from '../search-space.js';
+import { integrateScale, type ScaleIntegral, scaleAtOptimum, scaleMoments } from './scale-integral.js';
 
 /** A point of the dense rule: coordinates in the search space and the share of the posterior it stands for. */
 export interface PosteriorPoint {
@@ -10,43 +11,40 @@ export interface PosteriorPoint {
 
 /** Stations up to which the fine rule is affordable (a likelihood costs n³/3 operations). */
 const FINE_RULE_STATIONS = 400;
-/** Points on the range and nugget-share axes. */
-const FINE = { range: 11, share: 7, scaleSpread: true } as const;
+/**
+ * Points on the range and nugget-share axes; steps of the scale in its own posterior standard deviations (the
+ * trapezoidal rule errs by 2e^(−2π²/step²) on a Gaussian) and the fall of ln density at which they end.
+ */
+const FINE = { range: 11, share: 7, scaleStepSds: 1.25, scaleFall: 6, scaleSpread: true } as const;
 /** For large networks the posterior is narrow and nearly Gaussian; the scale's own spread is below 1/n. */
-const COARSE = { range: 7, share: 5, scaleSpread: false } as const;
+const COARSE = { range: 7, share: 5, scaleStepSds: 2, scaleFall: 3, scaleSpread: false } as const;
+type Rule = typeof FINE | typeof COARSE;
 /** First window about the optimum, in Laplace standard deviations, and when it is moved. */
 const WINDOW_SDS = 3;
 const EDGE_DENSITY = 1e-3;
 const MAX_LINE_MOVES = 6;
 const MAX_WINDOW_MOVES = 3;
-/** Half width of the parabola through the scale: one posterior standard deviation, √(2/n), but no more than this. */
-const MAX_SCALE_STEP = 0.15;
-/** Parabolas tried while walking to the scale's conditional mode. */
-const MAX_SCALE_WALK = 12;
-
-/** Below this curvature of ln likelihood in the scale, the scale is unbounded for every practical purpose. */
-const FLAT_CURVATURE = 1e-3;
-
 interface AxisWindow {
   /** Index in the search space, or −1 where the parameter is fixed. */
   readonly axis: number;
   readonly points: number;
+  /** Points crowd towards `low` (as squares): where the box ends at nugget 0 the density often peaks there. */
+  graded: boolean;
   low: number;
   high: number;
 }
 
-interface Cell {
-  readonly coordinates: Float64Array;
-  readonly logDensity: number;
-  /** Standard deviation of the scale coordinate in this cell; 0 where it is fixed. */
-  readonly scaleSd: number;
+/** One pair of range and share: density over the two, the scale integrated out. */
+interface Cell extends ScaleIntegral {
+  /** ln of the area of range and share the cell stands for. */
+  readonly logArea: number;
 }
 
 /**
  * Dense quadrature of the posterior of the covariance parameters: restricted likelihood times the uniform prior
  * of the search box. Midpoints over a window of ln range and of the nugget share (moved until its edges hold less
- * than a thousandth of the peak, or reach the box); in each cell the scale is integrated about its conditional
- * mode by Laplace's method (its posterior is close to log-gamma with n − p degrees of freedom).
+ * than a thousandth of the peak, or reach the box); in each cell the scale is integrated by the trapezoidal rule,
+ * walking outward until the density has fallen (skewed where few stations set it, flat where sampling errors do).
  *
  * Deterministic. Weights sum to 1.
  */
@@ -62,15 +60,13 @@ export function posteriorGrid(
   const range = firstWindow(fit, 'lnRange', rule.range);
   const share = firstWindow(fit, 'nuggetShare', rule.share);
   const scaleAxis = space.axes.findIndex((axis) => axis.name === 'lnTotal' || axis.name === 'lnSill');
-  const scaleStep = Math.min(MAX_SCALE_STEP, Math.sqrt(2 / stationCount));
-  const evaluate = (r: AxisWindow, s: AxisWindow) =>
-    evaluateCells(likelihood, z, fit, r, s, scaleAxis, scaleStep);
+  const evaluate = (r: AxisWindow, s: AxisWindow) => evaluateCells(likelihood, z, fit, r, s, scaleAxis, rule);
   // One axis at a time through the optimum first, which is cheap; then the whole, whose ridge may need more room.
-  const held: AxisWindow = { axis: -1, points: 1, low: 0, high: 0 };
+  const held: AxisWindow = { axis: -1, points: 1, graded: false, low: 0, high: 0 };
   moveUntilSettled([range], () => evaluate(range, held), space, MAX_LINE_MOVES);
   moveUntilSettled([share], () => evaluate(held, share), space, MAX_LINE_MOVES);
   const cells = moveUntilSettled([range, share], () => evaluate(range, share), space, MAX_WINDOW_MOVES);
-  return toPoints(cells, scaleAxis, rule.scaleSpread, space);
+  return toPoints(cells, scaleAxis, rule.scaleSpread);
 }
 
 function moveUntilSettled(
@@ -90,23 +86,35 @@ function moveUntilSettled(
 
 function firstWindow(fit: FieldFit, name: 'lnRange' | 'nuggetShare', points: number): AxisWindow {
   const axis = fit.space.axes.findIndex((candidate) => candidate.name === name);
-  if (axis < 0) return { axis, points: 1, low: 0, high: 0 };
-  const bounds = fit.space.axes[axis]!;
+  if (axis < 0) return { axis, points: 1, graded: false, low: 0, high: 0 };
+  const bounds = fit.space.axes[axis];
   const width = fit.space.axes.length;
-  const information = fit.information[axis * width + axis]!;
+  const information = fit.information[axis * width + axis];
   const sd = information > 0 ? 1 / Math.sqrt(information) : bounds.high - bounds.low;
-  const mode = fit.coordinates[axis]!;
-  return {
-    axis,
-    points,
-    low: Math.max(bounds.low, mode - WINDOW_SDS * sd),
-    high: Math.min(bounds.high, mode + WINDOW_SDS * sd),
-  };
+  const mode = fit.coordinates[axis];
+  const low = Math.max(bounds.low, mode - WINDOW_SDS * sd);
+  const high = Math.min(bounds.high, mode + WINDOW_SDS * sd);
+  return { axis, points, graded: name === 'nuggetShare' && low === bounds.low, low, high };
 }
 
-function midpoints(window: AxisWindow): number[] {
-  const step = (window.high - window.low) / window.points;
-  return Array.from({ length: window.points }, (_, i) => window.low + (i + 0.5) * step);
+interface AxisPoint {
+  readonly value: number;
+  /** ln of the width it stands for; 0 where the parameter is fixed. */
+  readonly logWidth: number;
+}
+
+function midpoints(window: AxisWindow): AxisPoint[] {
+  if (window.axis < 0) return [{ value: Number.NaN, logWidth: 0 }];
+  return Array.from({ length: window.points }, (_, i) => ({
+    value: positionIn(window, i + 0.5),
+    logWidth: Math.log(positionIn(window, i + 1) - positionIn(window, i)),
+  }));
+}
+
+/** Value at a share i/points of the window. */
+function positionIn({ low, high, points, graded }: AxisWindow, i: number): number {
+  const share = i / points;
+  return low + (high - low) * (graded ? share * share : share);
 }
 
 function evaluateCells(
@@ -116,84 +124,42 @@ function evaluateCells(
   range: AxisWindow,
   share: AxisWindow,
   scaleAxis: number,
-  scaleStep: number,
+  rule: Rule,
 ): Cell[] {
   const cells: Cell[] = [];
-  for (const r of range.axis < 0 ? [Number.NaN] : midpoints(range)) {
-    let scale = scaleAxis < 0 ? Number.NaN : fit.coordinates[scaleAxis]!;
-    for (const s of share.axis < 0 ? [Number.NaN] : midpoints(share)) {
+  const firstScale = scaleAxis < 0 ? null : scaleAtOptimum(fit, scaleAxis);
+  for (const r of midpoints(range)) {
+    // Each cell starts from its neighbour's scale: the conditional mode moves little from one to the next.
+    let scale = firstScale;
+    for (const s of midpoints(share)) {
       const x = Float64Array.from(fit.coordinates);
-      if (range.axis >= 0) x[range.axis] = r;
-      if (share.axis >= 0) x[share.axis] = s;
-      if (scaleAxis < 0) {
+      if (range.axis >= 0) x[range.axis] = r.value;
+      if (share.axis >= 0) x[share.axis] = s.value;
+      const logArea = r.logWidth + s.logWidth;
+      if (scale === null) {
         cells.push({
           coordinates: x,
           logDensity: likelihood.evaluate(z, parametersAt(fit.space, x)),
-          scaleSd: 0,
+          logArea,
+          scales: [],
         });
         continue;
       }
-      x[scaleAxis] = scale;
-      const cell = integrateScale(likelihood, z, fit.space, x, scaleAxis, scaleStep);
+      const cell = { ...integrateScale(likelihood, z, fit.space, x, scaleAxis, scale, rule), logArea };
       cells.push(cell);
-      if (Number.isFinite(cell.logDensity)) scale = cell.coordinates[scaleAxis]!;
+      if (Number.isFinite(cell.logDensity)) scale = scaleMoments(cell);
     }
   }
   return cells;
 }
 
-/**
- * Conditional mode of the scale by fitted parabolas, and Laplace's integral over it:
- * ln ∫ e^ℓ ≈ ℓ(mode) + ½ ln(2π/curvature); the constant is left out.
- */
-function integrateScale(
-  likelihood: FieldLikelihood,
-  z: Float64Array,
-  space: SearchSpace,
-  start: Float64Array,
-  scaleAxis: number,
-  scaleStep: number,
-): Cell {
-  const axis = space.axes[scaleAxis]!;
-  const x = Float64Array.from(start);
-  const at = (scale: number): number => {
-    x[scaleAxis] = scale;
-    return likelihood.evaluate(z, parametersAt(space, x));
-  };
-  const clamp = (scale: number) => Math.min(axis.high - scaleStep, Math.max(axis.low + scaleStep, scale));
-  let centre = clamp(start[scaleAxis]!);
-  let mode = centre;
-  let logPeak = Number.NEGATIVE_INFINITY;
-  let curvature = FLAT_CURVATURE;
-  for (let step = 0; step < MAX_SCALE_WALK; step++) {
-    const middle = at(centre);
-    const below = at(centre - scaleStep);
-    const above = at(centre + scaleStep);
-    const slope = (above - below) / (2 * scaleStep);
-    const bend = -(above - 2 * middle + below) / (scaleStep * scaleStep);
-    // Far from the mode the curve is no parabola: then walk uphill by a bounded step.
-    const wanted = bend > FLAT_CURVATURE ? slope / bend : Math.sign(slope);
-    mode = clamp(centre + Math.max(-1.5, Math.min(1.5, wanted)));
-    curvature = Math.max(bend, FLAT_CURVATURE);
-    const moved = mode - centre;
-    logPeak = middle + slope * moved - 0.5 * curvature * moved * moved;
-    if (Math.abs(moved) < scaleStep || !Number.isFinite(middle)) break;
-    centre = mode;
-  }
-  x[scaleAxis] = mode;
-  const scaleSd = 1 / Math.sqrt(curvature);
-  return { coordinates: x, logDensity: logPeak + Math.log(scaleSd), scaleSd };
-}
-
 /** Largest log density at each point of one axis. */
 function marginal(cells: readonly Cell[], window: AxisWindow): number[] {
   if (window.axis < 0) return [];
-  const values = midpoints(window);
-  return values.map((value) =>
-    Math.max(
-      ...cells
-        .filter((cell) => Math.abs(cell.coordinates[window.axis]! - value) < 1e-9)
-        .map((cell) => cell.logDensity),
+  return midpoints(window).map(({ value }) =>
+    cells.reduce(
+      (most, cell) => (cell.coordinates[window.axis] === value ? Math.max(most, cell.logDensity) : most),
+      Number.NEGATIVE_INFINITY,
     ),
   );
 }
@@ -201,56 +167,52 @@ function marginal(cells: readonly Cell[], window: AxisWindow): number[] {
 /** Moves a window whose edge still holds density outward, or narrows one that is mostly empty. True if changed. */
 function adjustWindow(window: AxisWindow, profile: readonly number[], space: SearchSpace): boolean {
   if (window.axis < 0) return false;
-  const bounds = space.axes[window.axis]!;
-  const peak = Math.max(...profile);
-  const width = window.high - window.low;
-  const cut = peak + Math.log(EDGE_DENSITY);
-  const before = [window.low, window.high];
+  const bounds = space.axes[window.axis];
+  const { low, high } = window;
+  const width = high - low;
+  const cut = profile.reduce((a, b) => Math.max(a, b)) + Math.log(EDGE_DENSITY);
   const last = profile.length - 1;
-  if (profile[0]! > cut) window.low = Math.max(bounds.low, window.low - 0.6 * width);
-  if (profile[last]! > cut) window.high = Math.min(bounds.high, window.high + 0.6 * width);
-  if (before[0] !== window.low || before[1] !== window.high) return true;
-  // Empty cells at either end beyond one are cut off.
-  const step = width / window.points;
-  const first = profile.findIndex((value) => value > cut);
-  const lastUsed = profile.findLastIndex((value) => value > cut);
-  if (first >= 2) window.low += (first - 1) * step;
-  if (lastUsed <= last - 2) window.high -= (last - 1 - lastUsed) * step;
-  return window.high - window.low < 0.7 * width;
+  if (profile[0] > cut) window.low = Math.max(bounds.low, low - 0.6 * width);
+  if (profile[last] > cut) window.high = Math.min(bounds.high, high + 0.6 * width);
+  if (low === window.low && high === window.high) {
+    // Empty cells at either end beyond one are cut off.
+    const first = profile.findIndex((value) => value > cut);
+    const lastUsed = profile.findLastIndex((value) => value > cut);
+    const from = first >= 2 ? positionIn(window, first - 1) : low;
+    const to = lastUsed <= last - 2 ? positionIn(window, lastUsed + 2) : high;
+    window.low = from;
+    window.high = to;
+  }
+  window.graded = space.axes[window.axis].name === 'nuggetShare' && window.low === bounds.low;
+  return window.low < low || window.high > high || window.high - window.low < 0.7 * width;
 }
 
-/** Three-point Gauss–Hermite nodes of the scale (Abramowitz & Stegun 1964, table 25.10). */
-const SCALE_NODES = [
-  { offset: -Math.sqrt(3), weight: 1 / 6 },
-  { offset: 0, weight: 2 / 3 },
-  { offset: Math.sqrt(3), weight: 1 / 6 },
-];
-/** Points below this share of the posterior are dropped: together they hold less than 0.1 %. */
-const NEGLIGIBLE = 1e-6;
+/** Points below this share of the heaviest are dropped: together they hold less than 0.1 %. */
+const NEGLIGIBLE = 1e-5;
 
-function toPoints(
-  cells: readonly Cell[],
-  scaleAxis: number,
-  scaleSpread: boolean,
-  space: SearchSpace,
-): PosteriorPoint[] {
-  const peak = Math.max(...cells.map((cell) => cell.logDensity));
-  const points: { coordinates: Float64Array; weight: number }[] = [];
-  let total = 0;
-  for (const cell of cells) {
-    const weight = Math.exp(cell.logDensity - peak);
-    if (!(weight > NEGLIGIBLE)) continue;
-    const spread = scaleAxis >= 0 && scaleSpread;
-    for (const node of spread ? SCALE_NODES : [{ offset: 0, weight: 1 }]) {
-      const coordinates = Float64Array.from(cell.coordinates);
-      if (spread) {
-        const axis = space.axes[scaleAxis]!;
-        const value = coordinates[scaleAxis]! + node.offset * cell.scaleSd;
-        coordinates[scaleAxis] = Math.min(axis.high, Math.max(axis.low, value));
-      }
-      points.push({ coordinates, weight: weight * node.weight });
-      total += weight * node.weight;
+function toPoints(cells: readonly Cell[], scaleAxis: number, scaleSpread: boolean): PosteriorPoint[] {
+  const points: { coordinates: Float64Array; logWeight: number }[] = [];
+  for (const { coordinates, logDensity, logArea, scales } of cells) {
+    if (!scaleSpread || scales.length === 0) {
+      points.push({ coordinates, logWeight: logDensity + logArea });
+      continue;
+    }
+    const peak = scales.reduce((most, scale) => Math.max(most, scale.logDensity), Number.NEGATIVE_INFINITY);
+    const sum = scales.reduce((total, scale) => total + Math.exp(scale.logDensity - peak), 0);
+    for (const scale of scales) {
+      const at = Float64Array.from(coordinates);
+      at[scaleAxis] = scale.value;
+      points.push({
+        coordinates: at,
+        logWeight: logDensity + logArea + scale.logDensity - peak - Math.log(sum),
+      });
     }
   }
-  return points.map((point) => ({ coordinates: point.coordinates, weight: point.weight / total }));
+  const heaviest = points.reduce((most, point) => Math.max(most, point.logWeight), Number.NEGATIVE_INFINITY);
+  const kept = points.filter((point) => point.logWeight > heaviest + Math.log(NEGLIGIBLE));
+  const total = kept.reduce((sum, point) => sum + Math.exp(point.logWeight - heaviest), 0);
+  return kept.map(({ coordinates, logWeight }) => ({
+    coordinates,
+    weight: Math.exp(logWeight - heaviest) / total,
+  }));
 }

@@ -9,20 +9,19 @@ export interface Probes {
 }
 
 const PROBE_STATIONS = 8;
-/** How far outward from the centre a probe beyond the network stands. */
-const OUTWARD = 1.5;
+/** Shares of the way to the nearest station at which the probes near a station stand, in turn. */
+const NEAR = [0.05, 0.4] as const;
+/** How far outward from the centre the probes beyond the network stand, in turn. */
+const OUTWARD = [1.5, 2.5] as const;
 
 /**
- * Probes near stations (a third of the way to the nearest one), between distant stations, and outside the network:
- * the three situations in which covariance parameters matter differently.
+ * Probes near stations (at shares of the way to the nearest one), between distant stations, and outside the network,
+ * where the trend is carried outward too: the three situations in which covariance parameters matter differently.
  */
 export function createProbes(geometry: FieldGeometry): Probes {
   const { n, p, positionsKm, trend } = geometry;
-  const centre = [0, 1, 2].map((axis) => {
-    let sum = 0;
-    for (let i = 0; i < n; i++) sum += positionsKm[3 * i + axis]!;
-    return sum / n;
-  });
+  const centre = columnMeans(positionsKm, n, 3);
+  const centreRow = columnMeans(trend, n, p);
   const stations = Math.min(PROBE_STATIONS, n);
   const count = 3 * stations;
   const positions = new Float64Array(count * 3);
@@ -30,23 +29,32 @@ export function createProbes(geometry: FieldGeometry): Probes {
   const mix = (probe: number, i: number, j: number, share: number): void => {
     for (let axis = 0; axis < 3; axis++) {
       positions[3 * probe + axis] =
-        (1 - share) * positionsKm[3 * i + axis]! + share * positionsKm[3 * j + axis]!;
+        (1 - share) * positionsKm[3 * i + axis] + share * positionsKm[3 * j + axis];
     }
     for (let c = 0; c < p; c++) {
-      rows[probe * p + c] = (1 - share) * trend[i * p + c]! + share * trend[j * p + c]!;
+      rows[probe * p + c] = (1 - share) * trend[i * p + c] + share * trend[j * p + c];
     }
   };
   for (let k = 0; k < stations; k++) {
     const i = Math.floor((k * n) / stations);
-    mix(3 * k, i, nearestOther(geometry, i), 1 / 3);
+    mix(3 * k, i, nearestOther(geometry, i), NEAR[k % 2]);
     mix(3 * k + 1, i, (i + Math.floor(n / 2)) % n, 1 / 2);
-    mix(3 * k + 2, i, i, 0);
+    const beyond = 3 * k + 2;
+    const outward = OUTWARD[k % 2]!;
     for (let axis = 0; axis < 3; axis++) {
-      positions[3 * (3 * k + 2) + axis] =
-        centre[axis]! + OUTWARD * (positionsKm[3 * i + axis]! - centre[axis]!);
+      positions[3 * beyond + axis] = centre[axis] + outward * (positionsKm[3 * i + axis] - centre[axis]);
+    }
+    for (let c = 0; c < p; c++) {
+      rows[beyond * p + c] = centreRow[c] + outward * (trend[i * p + c] - centreRow[c]);
     }
   }
   return { count, positionsKm: positions, trendRows: rows };
+}
+
+function columnMeans(values: Float64Array, rows: number, columns: number): Float64Array {
+  const means = new Float64Array(columns);
+  for (let i = 0; i < rows; i++) for (let c = 0; c < columns; c++) means[c] += values[i * columns + c] / rows;
+  return means;
 }
 
 function nearestOther(geometry: FieldGeometry, i: number): number {

@@ -1,0 +1,93 @@
+import type { FieldFit } from '../fit-field.js';
+import type { FieldLikelihood } from '../likelihood.js';
+import { parametersAt, type SearchSpace } from '../search-space.js';
+
+/** Steps in posterior standard deviations of the scale, and the fall of ln density at which they end. */
+export interface ScaleRule {
+  readonly scaleStepSds: number;
+  readonly scaleFall: number;
+}
+
+/** The scale's density on a lattice of its own, its mean put into the coordinates, and ln of its integral. */
+export interface ScaleIntegral {
+  readonly coordinates: Float64Array;
+  readonly logDensity: number;
+  readonly scales: readonly { readonly value: number; readonly logDensity: number }[];
+}
+
+/** Bounds of the scale's standard deviation that sets the steps: √(2/n) of a million stations, a factor e. */
+const SCALE_SD_LOW = 1e-3;
+const SCALE_SD_HIGH = 1;
+/** Steps of the scale tried on either side. */
+const MAX_SCALE_STEPS = 30;
+
+/** What is known of the scale before a cell is integrated: where its density lies and how wide it is. */
+export interface ScaleMoments {
+  readonly mean: number;
+  readonly sd: number;
+}
+
+export function scaleAtOptimum(fit: FieldFit, scaleAxis: number): ScaleMoments {
+  const information = fit.information[scaleAxis * fit.space.axes.length + scaleAxis];
+  return {
+    mean: fit.coordinates[scaleAxis],
+    sd: boundedSd(information > 0 ? 1 / Math.sqrt(information) : 1),
+  };
+}
+
+export function scaleMoments({ scales, logDensity }: ScaleIntegral): ScaleMoments {
+  let total = 0;
+  let first = 0;
+  let second = 0;
+  const centre = scales[0].value;
+  for (const { value, logDensity: density } of scales) {
+    const weight = Math.exp(density - logDensity);
+    total += weight;
+    first += weight * (value - centre);
+    second += weight * (value - centre) ** 2;
+  }
+  const mean = first / total;
+  return { mean: centre + mean, sd: boundedSd(Math.sqrt(Math.max(0, second / total - mean * mean))) };
+}
+
+function boundedSd(sd: number): number {
+  return Math.min(SCALE_SD_HIGH, Math.max(SCALE_SD_LOW, sd));
+}
+
+/** Trapezoidal rule over the scale, outward from a start until ln density has fallen below the largest found. */
+export function integrateScale(
+  likelihood: FieldLikelihood,
+  z: Float64Array,
+  space: SearchSpace,
+  start: Float64Array,
+  scaleAxis: number,
+  guess: ScaleMoments,
+  rule: ScaleRule,
+): ScaleIntegral {
+  const axis = space.axes[scaleAxis];
+  const x = Float64Array.from(start);
+  const step = rule.scaleStepSds * guess.sd;
+  const centre = Math.min(axis.high, Math.max(axis.low, guess.mean));
+  const scales: { value: number; logDensity: number }[] = [];
+  let peak = Number.NEGATIVE_INFINITY;
+  const visit = (value: number): boolean => {
+    if (value < axis.low || value > axis.high) return false;
+    x[scaleAxis] = value;
+    const logDensity = likelihood.evaluate(z, parametersAt(space, x));
+    if (!Number.isFinite(logDensity)) return false;
+    scales.push({ value, logDensity });
+    const rising = logDensity > peak;
+    peak = Math.max(peak, logDensity);
+    return rising || logDensity > peak - rule.scaleFall;
+  };
+  visit(centre);
+  for (const sign of [-1, 1]) {
+    for (let k = 1; k <= MAX_SCALE_STEPS; k++) if (!visit(centre + sign * k * step)) break;
+  }
+  const coordinates = Float64Array.from(start);
+  if (scales.length === 0) return { coordinates, logDensity: Number.NEGATIVE_INFINITY, scales };
+  const sum = scales.reduce((total, { logDensity }) => total + Math.exp(logDensity - peak), 0);
+  const cell = { coordinates, logDensity: peak + Math.log(sum * step), scales };
+  coordinates[scaleAxis] = scaleMoments(cell).mean;
+  return cell;
+}
