@@ -166,8 +166,6 @@ function reportOf(
   log: IssueLog,
 ): CheckReport {
   const { settings, layout } = reading;
-  const { knowledge } = sampling;
-  const hasWithin = knowledge.kind !== 'none';
   return {
     name: network.name,
     table: describeTable(table, layout),
@@ -179,12 +177,7 @@ function reportOf(
       layout === 'means' ? 'given' : table.columns.has('precipitation') ? 'amount-weighted' : 'unweighted',
     counts: describeCounts(network, reading, log),
     reasons: log.summaries(),
-    sampling: {
-      knowledge,
-      note: sampling.note,
-      within: hasWithin ? summarizeWithin(knowledge.within) : null,
-      withinTotal: hasWithin ? summarizeWithin(knowledge.withinTotal) : null,
-    },
+    sampling: describeSampling(sampling),
     thresholds: {
       minRecords: settings.minRecords,
       minCoverage: settings.minCoverage,
@@ -198,6 +191,12 @@ function reportOf(
     warnings: networkWarnings(network, table, log),
     usable: network.stations.length >= MIN_STATIONS,
   };
+}
+
+function describeSampling({ knowledge, note }: Sampling): CheckReport['sampling'] {
+  if (knowledge.kind === 'none') return { knowledge, note, within: null, withinTotal: null };
+  const { within, withinTotal } = knowledge;
+  return { knowledge, note, within: summarizeWithin(within), withinTotal: summarizeWithin(withinTotal) };
 }
 
 function describeTable(table: Table<StationMeaning>, layout: TableLayout): CheckReport['table'] {

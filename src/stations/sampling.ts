@@ -17,7 +17,8 @@ export interface Sampling {
 export function samplingOfRecords(used: readonly Candidate[], amountWeighted: boolean): Sampling {
   const pooled = poolWithin(used.map((candidate) => candidate.state.sums));
   if (pooled === null) {
-    const note = 'no station has two records: the sampling error is not known and sits in the nugget';
+    const why = used.length === 0 ? 'no station remains' : 'no station has two records';
+    const note = `${why}: the sampling error is not known and sits in the nugget`;
     return { knowledge: { kind: 'none' }, used, pooled, note };
   }
   const { within, withinTotal, recordCount } = pooled;
