@@ -5,8 +5,8 @@ import { chooseTrend, commonPart, type FitContext } from './fit-context.js';
 import { finishField } from './fitted-field.js';
 import type { JointIsoscape } from './isoscape.js';
 import { describeFit } from './notes.js';
-import { startFrom, turnVariance } from './pair-fit.js';
-import { choosePairFamily, choosePairTrend, searchTurn } from './pair-search.js';
+import { nameAxes, startFrom, turnVariance } from './pair-fit.js';
+import { choosePairFamily, choosePairTrend, fieldsAlike, searchTurn } from './pair-search.js';
 import { fitSamplingScale } from './sampling-scale.js';
 import { reciprocalRecords, withinCovariance } from './sampling-variance.js';
 import { type TermName, trendMatrix } from './trend.js';
@@ -42,6 +42,8 @@ export function fitJoint(context: FitContext): JointIsoscape {
   }
   const turnFixed = input.fix.turnDeg !== undefined;
   const turnVarianceRad2 = turnFixed ? 0 : turnVariance(profile, fit);
+  // Axes and values a user holds are named by the user; else the names follow the axes.
+  if (!turnFixed && fieldsAlike(input)) fit = nameAxes(fit);
   const along = new Float64Array(y1.length);
   const across = new Float64Array(y1.length);
   const turnRad = normaliseTurn(fit.turnRad);

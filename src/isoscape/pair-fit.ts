@@ -9,7 +9,7 @@ import {
   type FixedParameters,
   fitField,
 } from '../geostat/index.js';
-import { turn } from './axes.js';
+import { normaliseTurn, turn } from './axes.js';
 
 /** Two whitened value columns on one set of places, with the sampling variances both share. */
 export interface PairProblem {
@@ -113,15 +113,17 @@ const SCAN_ANGLES = 8;
 const QUARTER_TURN = Math.PI / 2;
 
 /**
- * Best of eight angles over the quarter turn centred on the leading axis of the whitened values: φ + 90° only
- * swaps the two fields, and this centring makes the along field the one that varies more.
+ * Best of eight angles over the quarter turn about 0, where the along axis is the within-station regression line:
+ * φ ± 90° only swaps the two fields. Where a field's parameters are held the two are no longer alike, and the half
+ * turn is looked through.
  */
-export function scanTurn(problem: PairProblem, profile: TurnProfile): PairFit {
-  const centre = leadingAngle(problem.y1, problem.y2);
+export function scanTurn(profile: TurnProfile, fieldsAlike: boolean): PairFit {
+  const width = fieldsAlike ? QUARTER_TURN : 2 * QUARTER_TURN;
+  const angles = fieldsAlike ? SCAN_ANGLES : 2 * SCAN_ANGLES;
   let best: PairFit | null = null;
   let previous: PairFit | null = null;
-  for (let k = 0; k < SCAN_ANGLES; k++) {
-    const angle = centre - QUARTER_TURN / 2 + ((k + 0.5) * QUARTER_TURN) / SCAN_ANGLES;
+  for (let k = 0; k < angles; k++) {
+    const angle = -width / 2 + ((k + 0.5) * width) / angles;
     const fit = profile.at(angle, previous === null ? null : startFrom(previous), 'look');
     if (best === null || fit.logLikelihood > best.logLikelihood) best = fit;
     previous = fit;
@@ -129,20 +131,19 @@ export function scanTurn(problem: PairProblem, profile: TurnProfile): PairFit {
   return profile.at(best!.turnRad, startFrom(best!), 'full');
 }
 
-/** Angle of the leading eigenvector of the 2 × 2 covariance of the whitened values (½ atan2 form). */
-export function leadingAngle(y1: Float64Array, y2: Float64Array): number {
-  const n = y1.length;
-  const mean1 = y1.reduce((sum, v) => sum + v, 0) / n;
-  const mean2 = y2.reduce((sum, v) => sum + v, 0) / n;
-  let s11 = 0;
-  let s12 = 0;
-  let s22 = 0;
-  for (let i = 0; i < n; i++) {
-    s11 += (y1[i] - mean1) ** 2;
-    s12 += (y1[i] - mean1) * (y2[i] - mean2);
-    s22 += (y2[i] - mean2) ** 2;
-  }
-  return 0.5 * Math.atan2(2 * s12, s11 - s22);
+/**
+ * The same fit with the turn in (−45°, 45°], so that `along` is the axis nearer the within-station line. Turning by
+ * a further 90° makes the old across field the along field (up to its sign).
+ */
+export function nameAxes(fit: PairFit): PairFit {
+  const turnRad = normaliseTurn(fit.turnRad);
+  if (turnRad > -QUARTER_TURN / 2 && turnRad <= QUARTER_TURN / 2) return { ...fit, turnRad };
+  return {
+    ...fit,
+    turnRad: turnRad - Math.sign(turnRad) * QUARTER_TURN,
+    along: fit.across,
+    across: fit.along,
+  };
 }
 
 /** Step of the first bracket, and how close the root is driven: 10⁻⁸ rad moves no prediction by 10⁻⁶ of its SE. */

@@ -1,15 +1,7 @@
 import { COVARIANCE_FAMILIES, type CovarianceFamily, type FieldGeometry } from '../geostat/index.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import type { FamilyCandidate, TrendCandidate } from './isoscape.js';
-import {
-  type PairFit,
-  type PairProblem,
-  type PairStart,
-  refineTurn,
-  scanTurn,
-  startFrom,
-  TurnProfile,
-} from './pair-fit.js';
+import { type PairFit, type PairStart, refineTurn, scanTurn, startFrom, TurnProfile } from './pair-fit.js';
 import type { TermName } from './trend.js';
 import { aicc, bestCandidate } from './trend-choice.js';
 
@@ -32,15 +24,14 @@ function profileOf(
   geometry: FieldGeometry,
   family: CovarianceFamily,
   criterion: 'restricted' | 'maximum',
-): { problem: PairProblem; profile: TurnProfile } {
+): TurnProfile {
   const problem = { geometry, y1: input.y1, y2: input.y2, errorVariance: input.errorVariance };
-  const profile = new TurnProfile(problem, {
+  return new TurnProfile(problem, {
     family,
     criterion,
     fixedAlong: input.fix.along ?? {},
     fixedAcross: input.fix.across ?? {},
   });
-  return { problem, profile };
 }
 
 /** Best fit over the turn, from a scan (no start given) or from a start nearby. */
@@ -51,29 +42,33 @@ export function searchTurn(
   criterion: 'restricted' | 'maximum',
   start: { turnRad: number; parameters: PairStart } | null,
 ): { fit: PairFit; profile: TurnProfile } {
-  const { problem, profile } = profileOf(input, geometry, family, criterion);
+  const profile = profileOf(input, geometry, family, criterion);
   if (input.fix.turnDeg !== undefined) {
     const turnRad = (input.fix.turnDeg * Math.PI) / 180;
     return { fit: profile.at(turnRad, start?.parameters ?? null, 'full'), profile };
   }
-  const first = start === null ? firstFit(problem, profile, input, geometry, family, criterion) : null;
+  const first = start === null ? firstFit(profile, input, geometry, family, criterion) : null;
   const from = first ?? profile.at(start!.turnRad, start!.parameters, 'full');
   return { fit: refineTurn(profile, from), profile };
 }
 
+/** True where nothing distinguishes the two fields but their axes. */
+export function fieldsAlike({ fix }: PairInput): boolean {
+  return [fix.along, fix.across].every((held) => held === undefined || Object.keys(held).length === 0);
+}
+
 /** Scan of the quarter turn: on all stations, or on a thinned set whose best angle and parameters then start all. */
 function firstFit(
-  problem: PairProblem,
   profile: TurnProfile,
   input: PairInput,
   geometry: FieldGeometry,
   family: CovarianceFamily,
   criterion: 'restricted' | 'maximum',
 ): PairFit {
-  if (geometry.n <= FULL_SEARCH_STATIONS) return scanTurn(problem, profile);
+  if (geometry.n <= FULL_SEARCH_STATIONS) return scanTurn(profile, fieldsAlike(input));
   const thinned = thinGeometry(geometry, input);
   const small = profileOf(thinned.input, thinned.geometry, family, criterion);
-  const best = scanTurn(small.problem, small.profile);
+  const best = scanTurn(small, fieldsAlike(input));
   return profile.at(best.turnRad, startFrom(best), 'full');
 }
 
@@ -122,7 +117,7 @@ export function choosePairTrend(
     onProgress({ stage: 'choosing the trend', done, total: candidates.length });
     const held = start !== null && geometry.n > FULL_SEARCH_STATIONS;
     const fit: PairFit = held
-      ? profileOf(input, geometry, used, 'maximum').profile.at(start!.turnRad, start!.parameters, 'warm')
+      ? profileOf(input, geometry, used, 'maximum').at(start!.turnRad, start!.parameters, 'warm')
       : searchTurn(input, geometry, used, 'maximum', start).fit;
     start = { turnRad: fit.turnRad, parameters: startFrom(fit) };
     const free = fit.along.space.axes.length + fit.across.space.axes.length;
