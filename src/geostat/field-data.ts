@@ -75,6 +75,18 @@ export function createGeometry(
   return { n, p, positionsKm, metric, trend, distancesKm, smallestSpacingKm, diameterKm, logDetFtF };
 }
 
+/** Two stations at one place without a known error between them, which only a nugget can tell apart; null if none. */
+export function coincidentPair(
+  { n, distancesKm }: FieldGeometry,
+  errorVariance: Float64Array,
+): readonly [number, number] | null {
+  for (let i = 0; i < n; i++) {
+    if (errorVariance[i]! > 0) continue;
+    for (let j = 0; j < i; j++) if (distancesKm[i * n + j] === 0 && errorVariance[j] === 0) return [j, i];
+  }
+  return null;
+}
+
 /** Ratio of the largest to the smallest singular value of F with its columns scaled to unit length. */
 export function scaledCondition(trend: Float64Array, n: number, p: number): number {
   const scaled = new Matrix(toRows(trend, n, p));

@@ -1,6 +1,6 @@
 import { RainprintError } from '../errors.js';
 import { type CovarianceFamily, correlationFunction } from './covariance/families.js';
-import { type FieldGeometry, ordinaryLeastSquares } from './field-data.js';
+import { coincidentPair, type FieldGeometry, ordinaryLeastSquares } from './field-data.js';
 import { type Criterion, FieldLikelihood, type FieldParameters } from './likelihood.js';
 import { boxed, type LocalDerivatives, newtonStep, updateSecant } from './newton-step.js';
 import {
@@ -54,7 +54,7 @@ const CONVERGED_DECREMENT = 1e-13;
  *
  * @param z              n values
  * @param errorVariance  n known variances, 0 where there is none
- * @throws LIKELIHOOD_NOT_CONVERGED, PARAMETER_OUT_OF_RANGE
+ * @throws LIKELIHOOD_NOT_CONVERGED, PARAMETER_OUT_OF_RANGE, STATIONS_COINCIDENT (same place, no error, nugget held at 0)
  */
 export function fitField(
   geometry: FieldGeometry,
@@ -65,7 +65,9 @@ export function fitField(
   likelihood = new FieldLikelihood(geometry, correlationFunction(family), errorVariance, options.criterion),
 ): FieldFit {
   const scale = options.scaleVariance ?? ordinaryLeastSquares(geometry, z).residualVariance;
-  const space = createSearchSpace(geometry, scale, options.fixed ?? {});
+  const coincident = coincidentPair(geometry, errorVariance);
+  const space = createSearchSpace(geometry, scale, options.fixed ?? {}, coincident !== null);
+  if (coincident !== null) refuseWithoutNugget(coincident, options.fixed);
   const starts = startingPoints(geometry, z, space, likelihood, options);
   let best: FieldFit | null = null;
   for (const start of starts) {
@@ -82,6 +84,17 @@ export function fitField(
   // Leave the likelihood's state at the optimum, so that the caller can ask for Qz there.
   likelihood.evaluate(z, best.parameters);
   return best;
+}
+
+/** Two values at one place and no error of either kind: V is singular, and rounding would pass for a covariance. */
+function refuseWithoutNugget([i, j]: readonly [number, number], fixed: FixedParameters | undefined): void {
+  if (fixed?.nugget !== 0) return;
+  throw new RainprintError(
+    'STATIONS_COINCIDENT',
+    `stations ${i + 1} and ${j + 1} (in the model's order) stand at the same place: with the nugget fixed at 0 and no ` +
+      'sampling error known, nothing tells them apart; give a nugget above 0 or leave one of them out',
+    { stations: [i, j] },
+  );
 }
 
 function startingPoints(

@@ -15,6 +15,8 @@ const RANGE_HIGH_DIAMETERS = 2;
 /** Below this share of the diameter no network of any size resolves a range. */
 const RANGE_LOW_DIAMETERS = 1e-4;
 const NUGGET_SHARE_MAX = 0.99;
+/** Least share where two stations without errors share a place: equal values there would drive it to 0, V singular. */
+const NUGGET_SHARE_COINCIDENT = 1e-6;
 const TOTAL_LOW = 1e-4;
 /** Far above the residual variance: at the longest range only sill/range counts, and the sill must follow. */
 const TOTAL_HIGH = 1e3;
@@ -40,11 +42,15 @@ export interface SearchSpace {
   readonly residualVariance: number;
 }
 
-/** @throws PARAMETER_OUT_OF_RANGE for a fixed value that is not finite, or not positive where it must be */
+/**
+ * @param coincident  two stations without known errors share a place, so that the nugget must stay above 0
+ * @throws PARAMETER_OUT_OF_RANGE for a fixed value that is not finite, or not positive where it must be
+ */
 export function createSearchSpace(
   geometry: FieldGeometry,
   residualVariance: number,
   fixed: FixedParameters,
+  coincident = false,
 ): SearchSpace {
   checkFixed(fixed);
   // A network that fits its trend exactly still needs a scale for the bounds.
@@ -63,7 +69,7 @@ export function createSearchSpace(
     });
   }
   const total = { low: Math.log(TOTAL_LOW * scale), high: Math.log(TOTAL_HIGH * scale), maxStep: 2 };
-  const share = { low: 0, high: NUGGET_SHARE_MAX, maxStep: 0.3 };
+  const share = { low: coincident ? NUGGET_SHARE_COINCIDENT : 0, high: NUGGET_SHARE_MAX, maxStep: 0.3 };
   if (fixed.sill === undefined && fixed.nugget === undefined) {
     axes.push({ name: 'lnTotal', ...total }, { name: 'nuggetShare', ...share });
   } else if (fixed.sill === undefined) {
