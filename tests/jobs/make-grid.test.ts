@@ -11,7 +11,7 @@ const folder = scratchFolder();
 let fileCount = 0;
 const newPath = () => join(folder, `grid-${fileCount++}.tif`);
 
-/** Land everywhere but in the south-west quarter of each grid asked for; heights tell the place. */
+/** Elevations without a file: land where the test says, heights that tell the place. */
 const elevation = (isLand: (lonDeg: number, latDeg: number) => boolean): ElevationGrid => ({
   source: 'invented',
   sample: () => Promise.reject(new Error('a grid asks for cells')),
@@ -69,7 +69,7 @@ describe('makeGrid', () => {
       const lonDeg = -10 + ((k % 300) + 0.5) * 0.1;
       const latDeg = 60 - (Math.floor(k / 300) + 0.5) * 0.1;
       if (!isLand(lonDeg, latDeg)) {
-        for (const band of bands) expect(band[k]).toBe(-9999);
+        if (!bands.every((band) => band[k] === -9999)) expect(bands.map((band) => band[k])).toEqual([]);
         continue;
       }
       land++;

@@ -3,50 +3,13 @@ import { join } from 'node:path';
 import fc from 'fast-check';
 import { fromFile } from 'geotiff';
 import { describe, expect, it } from 'vitest';
-import { type GeoTiffSpec, type RowSource, writeGeoTiff } from '../../src/raster/index.js';
-import { seededUniform } from '../reference/seeded.js';
-import { describeWithTool, runTool } from '../support/outside-tool.js';
+import { type RowSource, writeGeoTiff } from '../../src/raster/index.js';
 import { scratchFolder } from '../support/scratch.js';
+import { asStored, bandsOf, spec } from './seeded-raster.js';
 
 const folder = scratchFolder();
 let fileCount = 0;
 const newPath = () => join(folder, `raster-${fileCount++}.tif`);
-
-const spec = (change: Partial<GeoTiffSpec> = {}): GeoTiffSpec => ({
-  width: 300,
-  height: 70,
-  sampleType: 'float32',
-  tileSizePx: 64,
-  crs: 'EPSG:4326',
-  transform: { originX: -10, originY: 60, cellWidth: 0.05, cellHeight: 0.1 },
-  pixelIs: 'area',
-  nodata: -9999,
-  bands: [
-    { name: 'd18O', unit: 'permil', longName: 'δ18O of "rain" & <snow>' },
-    { name: 'cov_d18O_d2H', unit: 'permil2', longName: 'covariance' },
-  ],
-  items: { isoscape_id: 'abc<123>&"x"', season: '4-9' },
-  software: 'rainprint test',
-  ...change,
-});
-
-/** Rows of seeded values, and the whole bands for comparison. */
-function bandsOf(s: GeoTiffSpec, seed: number) {
-  const next = seededUniform(seed);
-  const make = () =>
-    s.sampleType === 'int16'
-      ? Int16Array.from({ length: s.width * s.height }, () => Math.floor(next() * 65536) - 32768)
-      : Float32Array.from({ length: s.width * s.height }, () =>
-          next() < 0.1 ? Number.NaN : next() * 200 - 100,
-        );
-  const bands = s.bands.map(make);
-  const rows: RowSource = (first, count) =>
-    bands.map((b) => b.subarray(first * s.width, (first + count) * s.width));
-  return { bands, rows };
-}
-
-const asStored = (band: Int16Array | Float32Array, nodata: number) =>
-  band.map((value) => (Number.isNaN(value) ? nodata : value));
 
 describe('writeGeoTiff', () => {
   it('is read back bit for bit by npm geotiff, whatever the shape', async () => {
@@ -197,82 +160,6 @@ describe('writeGeoTiff, when something goes wrong', () => {
       [new Int16Array(300 * 64), new Int16Array(300 * 64)],
     ]) {
       await expect(writeGeoTiff(newPath(), s, () => rows)).rejects.toMatchObject({ code: 'INTERNAL' });
-    }
-  });
-});
-
-// Source: GDAL's own reader, an implementation independent of ours.
-describeWithTool('gdalinfo', 'writeGeoTiff, read by GDAL', () => {
-  interface GdalInfo {
-    size: [number, number];
-    geoTransform: number[];
-    coordinateSystem: { wkt: string };
-    metadata: Record<string, Record<string, string>>;
-    bands: {
-      description: string;
-      unit: string;
-      noDataValue: number;
-      type: string;
-      metadata: Record<string, Record<string, string>>;
-    }[];
-  }
-
-  it('shows georeference, nodata, names, units and items', async () => {
-    const path = newPath();
-    const s = spec();
-    await writeGeoTiff(path, s, bandsOf(s, 4).rows);
-    const info = JSON.parse(runTool('gdalinfo', '-json', path)) as GdalInfo;
-    expect(info.size).toEqual([300, 70]);
-    expect(info.geoTransform).toEqual([-10, 0.05, 0, 60, 0, -0.1]);
-    expect(info.coordinateSystem.wkt).toContain('ID["EPSG",4326]');
-    expect(info.metadata['']).toMatchObject({
-      isoscape_id: 'abc<123>&"x"',
-      season: '4-9',
-      AREA_OR_POINT: 'Area',
-    });
-    expect(info.bands.map((b) => [b.description, b.unit, b.noDataValue, b.type])).toEqual([
-      ['d18O', 'permil', -9999, 'Float32'],
-      ['cov_d18O_d2H', 'permil2', -9999, 'Float32'],
-    ]);
-    expect(info.bands[0]!.metadata['']!.long_name).toBe('δ18O of "rain" & <snow>');
-  });
-
-  it.each(['int16', 'float32'] as const)('holds the same %s values in every cell', async (sampleType) => {
-    const path = newPath();
-    const bands = Array.from({ length: 7 }, (_, k) => ({ name: `b${k}`, unit: 'm', longName: 'x' }));
-    const s = spec({ sampleType, bands, width: 301, height: 131 });
-    const { bands: values, rows } = bandsOf(s, 6);
-    await writeGeoTiff(path, s, rows);
-    const raw = newPath();
-    runTool('gdal_translate', '-q', '-of', 'ENVI', '-co', 'INTERLEAVE=BSQ', path, raw);
-    const expected = Buffer.concat(
-      values.map((band) => Buffer.from(asStored(band, s.nodata).buffer as ArrayBuffer)),
-    );
-    expect(readFileSync(raw).equals(expected)).toBe(true);
-  });
-
-  it('has each value at its place', async () => {
-    const path = newPath();
-    const s = spec();
-    const { bands, rows } = bandsOf(s, 7);
-    await writeGeoTiff(path, s, rows);
-    for (const [column, row] of [
-      [0, 0],
-      [299, 69],
-      [63, 64],
-      [64, 63],
-      [150, 40],
-    ] as const) {
-      const lonDeg = -10 + (column + 0.5) * 0.05;
-      const latDeg = 60 - (row + 0.5) * 0.1;
-      const said = runTool('gdallocationinfo', '-valonly', '-wgs84', path, String(lonDeg), String(latDeg));
-      const expected = bands.map((b) => asStored(b, -9999)[row * 300 + column]);
-      expect(
-        said
-          .trim()
-          .split('\n')
-          .map((text) => Math.fround(Number(text))),
-      ).toEqual(expected);
     }
   });
 });
