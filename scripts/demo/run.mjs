@@ -14,7 +14,7 @@ import { LAND_NAME } from './names.mjs';
 import { outReadme } from './out-readme.mjs';
 import { plantedFound } from './planted-found.mjs';
 import { recordTable, siteTable, truthTable } from './tables.mjs';
-import { ROOT, runVerb, typed } from './verb.mjs';
+import { ROOT, shown, startVerb, typed } from './verb.mjs';
 import { createWorld, DEMO_SEED } from './world.mjs';
 
 const LEVEL = 0.9;
@@ -33,14 +33,9 @@ async function runDemo({ seed, folder }) {
   const world = createWorld(seed);
   const file = (name) => typed(join(folder, name));
   await writeInputs(world, folder);
-  checkPlanted(world, folder, file);
-  runVerb(['fit', file('invented-records.csv'), '-o', file('isoscape.json')], { lines: 70 });
-  runVerb(['validate', file('isoscape.json'), '--report', file('validation.html')]);
-  const elevation = ['--elevation', file('invented-elevation.tif')];
-  predictSites(folder, file, elevation);
-  const { westDeg, southDeg, eastDeg, northDeg } = BOUNDS;
-  const bounds = `--bounds=${[westDeg, southDeg, eastDeg, northDeg].join(',')}`;
-  runVerb(['grid', file('isoscape.json'), bounds, '--cell', '0.1', ...elevation, '-o', file('grid.tif')]);
+  await checkPlanted(world, folder, file);
+  await shown(startVerb(['fit', file('invented-records.csv'), '-o', file('isoscape.json')]), { lines: 70 });
+  await useIsoscape(folder, file);
   compare(world, folder);
   const seconds = ((performance.now() - startMs) / 1000).toFixed(1);
   say(`Everything is in ${typed(folder)}/, and all of it is invented. ${seconds} s.`);
@@ -67,10 +62,12 @@ async function writeInputs(world, folder) {
   );
 }
 
-/** Runs check for people, then for machines, and holds the second against what was planted. */
-function checkPlanted(world, folder, file) {
-  runVerb(['check', file('invented-records.csv')], { lines: 26 });
-  const report = runVerb(['check', file('invented-records.csv'), '--json'], { quiet: true });
+/** Runs check for people and for machines, and holds the second against what was planted. */
+async function checkPlanted(world, folder, file) {
+  const forPeople = startVerb(['check', file('invented-records.csv')]);
+  const forMachines = startVerb(['check', file('invented-records.csv'), '--json']);
+  await shown(forPeople, { lines: 26 });
+  const report = await shown(forMachines, { quiet: true });
   writeFileSync(join(folder, 'check.json'), report);
   const issues = JSON.parse(report).reasons.flatMap((reason) => reason.first);
   const mistakes = plantedFound(world.planted, issues);
@@ -78,20 +75,30 @@ function checkPlanted(world, folder, file) {
   if (mistakes.some(({ found }) => found === null)) throw new Error('check missed a planted mistake');
 }
 
-function predictSites(folder, file, elevation) {
-  const level = ['--level', String(LEVEL)];
+/** The three verbs that read an isoscape, two at a time for two cores. */
+async function useIsoscape(folder, file) {
+  const isoscape = file('isoscape.json');
+  const elevation = ['--elevation', file('invented-elevation.tif')];
+  const { westDeg, southDeg, eastDeg, northDeg } = BOUNDS;
+  const bounds = `--bounds=${[westDeg, southDeg, eastDeg, northDeg].join(',')}`;
   rmSync(join(folder, 'sites.csv'), { force: true }); // so that an old one is never read for a new one
-  runVerb([
+  const validate = startVerb(['validate', isoscape, '--report', file('validation.html')]);
+  const level = ['--level', String(LEVEL)];
+  const sites = startVerb([
     'sites',
-    file('isoscape.json'),
+    isoscape,
     file('invented-sites.csv'),
     ...elevation,
     ...level,
     '-o',
     file('sites.csv'),
   ]);
-  const lines = readFileSync(join(folder, 'sites.csv'), 'utf8').split('\n');
-  say(lines.slice(0, 4).join('\n'));
+  await sites.catch(() => {}); // told below
+  const grid = startVerb(['grid', isoscape, bounds, '--cell', '0.1', ...elevation, '-o', file('grid.tif')]);
+  await shown(validate);
+  await shown(sites);
+  say(readFileSync(join(folder, 'sites.csv'), 'utf8').split('\n').slice(0, 4).join('\n'));
+  await shown(grid);
 }
 
 /** What only an invented land allows: the predictions as written, against the truth. */

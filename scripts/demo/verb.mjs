@@ -1,4 +1,4 @@
-import { spawnSync } from 'node:child_process';
+import { execFile } from 'node:child_process';
 import { relative } from 'node:path';
 import { fileURLToPath } from 'node:url';
 
@@ -6,23 +6,30 @@ export const ROOT = fileURLToPath(new URL('../..', import.meta.url));
 const COMMAND = fileURLToPath(new URL('../rainprint.mjs', import.meta.url));
 const NEED_QUOTES = /[^\w./:=,@%+-]/;
 
-/**
- * Runs one verb of the real command line from the project's folder and shows the call with what it printed, cut to
- * `lines` lines a stream. Returns its standard output; any other exit code than 0 ends the demo.
- */
-export function runVerb(args, { lines = 40, quiet = false } = {}) {
-  const shown = args.map((word) => (NEED_QUOTES.test(word) ? `'${word}'` : word)).join(' ');
-  process.stdout.write(`\n$ npx rainprint ${shown}\n`);
+/** Starts one verb of the real command line in the project's folder; its output is kept until `shown`. */
+export function startVerb(args) {
   const startMs = performance.now();
-  const options = { cwd: ROOT, encoding: 'utf8', maxBuffer: 2 ** 28 };
-  const { status, stdout, stderr, error } = spawnSync(process.execPath, [COMMAND, ...args], options);
-  if (error !== undefined) throw error;
-  if (status !== 0) {
-    process.stderr.write(stderr);
-    throw new Error(`rainprint ${args[0]} ended with exit code ${status}`);
-  }
-  process.stdout.write(cut(stderr, lines) + (quiet ? '' : cut(stdout, lines)));
-  process.stdout.write(`(${((performance.now() - startMs) / 1000).toFixed(1)} s)\n`);
+  const done = new Promise((resolve, reject) => {
+    const options = { cwd: ROOT, encoding: 'utf8', maxBuffer: 2 ** 28 };
+    execFile(process.execPath, [COMMAND, ...args], options, (error, stdout, stderr) => {
+      const seconds = (performance.now() - startMs) / 1000;
+      if (error === null) resolve({ args, stdout, stderr, seconds });
+      else reject(new Error(`rainprint ${args[0]} ended with exit code ${error.code}\n${stderr}`));
+    });
+  });
+  done.catch(() => {}); // a verb that fails while another is waited for is reported when its turn comes
+  return done;
+}
+
+/**
+ * Waits for a started verb, shows the call with what it printed, cut to `lines` lines a stream, and returns its
+ * standard output. Any other exit code than 0 ends the demo.
+ */
+export async function shown(started, { lines = 40, quiet = false } = {}) {
+  const { args, stdout, stderr, seconds } = await started;
+  const call = args.map((word) => (NEED_QUOTES.test(word) ? `'${word}'` : word)).join(' ');
+  const output = cut(stderr, lines) + (quiet ? '' : cut(stdout, lines));
+  process.stdout.write(`\n$ npx rainprint ${call}\n${output}(${seconds.toFixed(1)} s)\n`);
   return stdout;
 }
 
