@@ -1,5 +1,6 @@
 import { RainprintError } from '../errors.js';
 import { canonicalJson, contentHash } from './canonical-json.js';
+import { findInconsistency } from './file-consistency.js';
 import { fileSchema } from './file-schema.js';
 import { ISOSCAPE_SCHEMA_VERSION, type Isoscape } from './isoscape.js';
 
@@ -18,7 +19,8 @@ export function writeIsoscape(isoscape: Isoscape): string {
 /**
  * Reads an isoscape file.
  * @throws ISOSCAPE_NOT_JSON (no JSON, or none of ours), ISOSCAPE_OLDER, ISOSCAPE_NEWER (schema version),
- *         ISOSCAPE_DAMAGED (a member missing or of the wrong kind, or a checksum that does not fit)
+ *         ISOSCAPE_DAMAGED (a member missing or of the wrong kind, members that do not fit each other, or a
+ *         checksum that does not fit)
  */
 export function readIsoscape(text: string): Isoscape {
   const content = parseJson(text);
@@ -53,8 +55,15 @@ export function readIsoscape(text: string): Isoscape {
       {},
     );
   }
-  const { format: _format, ...isoscape } = parsed.data;
-  return isoscape as unknown as Isoscape;
+  const { format: _format, ...rest } = parsed.data;
+  const isoscape = rest as unknown as Isoscape;
+  const found = findInconsistency(isoscape);
+  if (found !== null) {
+    throw new RainprintError('ISOSCAPE_DAMAGED', `isoscape member "${found.member}": ${found.reason}`, {
+      member: found.member,
+    });
+  }
+  return isoscape;
 }
 
 function parseJson(text: string): unknown {
