@@ -72,7 +72,7 @@ async function runValidate(path: string, flags: ValidateFlags, context: CliConte
     await reportFile?.write(
       validationPage(isoscape, result, {
         toolVersion: context.toolVersion,
-        command: rerunCommand(basename(path), result, flags.report ?? ''),
+        command: rerunCommand(basename(path), result, basename(flags.report ?? '')),
       }),
     );
     await scoresFile?.write(scores);

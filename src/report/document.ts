@@ -34,6 +34,12 @@ export function element(
   return made;
 }
 
+/** The page's title. The DOM in memory prints a title's text as it stands, so it is escaped here. */
+export function pageTitle(document: PageDocument, text: string): PageElement {
+  const escaped = text.replaceAll('&', '&amp;').replaceAll('<', '&lt;').replaceAll('>', '&gt;');
+  return element(document, 'title', {}, escaped);
+}
+
 /** A heading with what belongs under it. */
 export function section(
   document: PageDocument,

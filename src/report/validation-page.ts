@@ -1,6 +1,13 @@
 import type { Isoscape } from '../isoscape/isoscape.js';
 import type { ValidationResult } from '../isoscape/validation.js';
-import { createDocument, element, type PageDocument, type PageElement, section } from './document.js';
+import {
+  createDocument,
+  element,
+  type PageDocument,
+  type PageElement,
+  pageTitle,
+  section,
+} from './document.js';
 import { dualIsotopeFigure } from './figures/dual-isotope.js';
 import { errorMapFigure } from './figures/error-map.js';
 import { observedPredictedFigure } from './figures/observed-predicted.js';
@@ -35,7 +42,7 @@ export function validationPage(
     element(document, 'meta', { 'http-equiv': 'Content-Security-Policy', content: CONTENT_SECURITY_POLICY }),
     element(document, 'meta', { name: 'viewport', content: 'width=device-width, initial-scale=1' }),
     element(document, 'meta', { name: 'generator', content: `Rainprint ${context.toolVersion}` }),
-    element(document, 'title', {}, title),
+    pageTitle(document, title),
     element(document, 'style', {}, STYLE),
   );
   const parts = sections(document, isoscape, validation, context);

@@ -15,8 +15,9 @@ const LARGEST_Z = 4;
 const KEY_Z = [-3, -2, -1, 0, 1, 2, 3] as const;
 
 interface Mark {
-  readonly lonDeg: number;
-  readonly latDeg: number;
+  /** Longitude and latitude in degrees on a map; z and 0 in the key. */
+  readonly x: number;
+  readonly y: number;
   readonly z: number;
 }
 
@@ -28,11 +29,12 @@ export function errorMapFigure(
 ): PageElement {
   const { lonDeg, latDeg } = isoscape.stations;
   const extent = extentOf(lonDeg, latDeg);
+  const radius = radiusOf(lonDeg.length);
   return figure(
     document,
     [
-      ...validation.leaveOneOut.variables.map((result) => mapOf(document, isoscape, extent, result)),
-      keyPlot(document),
+      ...validation.leaveOneOut.variables.map((result) => mapOf(document, isoscape, extent, result, radius)),
+      keyPlot(document, radius),
     ],
     'Standardised leave-one-out errors, (observed − predicted) / SD. Triangles up: observed above the prediction; ' +
       'down: below; larger: further off. Neighbours of one sign over a whole area are a pattern the model has missed. ' +
@@ -45,6 +47,7 @@ function mapOf(
   isoscape: Isoscape,
   extent: MapExtent,
   result: VariableResult,
+  radius: (mark: Mark) => number,
 ): PageElement {
   const marks = marksOf(isoscape, result);
   const lines = graticule(extent);
@@ -66,19 +69,15 @@ function mapOf(
       Plot.geo({ type: 'MultiLineString', coordinates: lines.lines as never }, { stroke: COLOUR.light }),
       Plot.text(side('south'), { ...place, text: 'text', dy: 10, ...quiet }),
       Plot.text(side('west'), { ...place, text: 'text', dx: -4, textAnchor: 'end', ...quiet }),
-      ...errorMarks(
-        marks,
-        (each) => each.lonDeg,
-        (each) => each.latDeg,
-      ),
+      ...errorMarks(marks, radius),
       Plot.text([label], { frameAnchor: 'top-left', dx: -30, dy: -20, fontWeight: 'bold' }),
     ],
   });
 }
 
 /** What the sizes and signs mean, drawn as the maps draw them. */
-function keyPlot(document: PageDocument): PageElement {
-  const marks = KEY_Z.map((z): Mark => ({ lonDeg: z, latDeg: 0, z }));
+function keyPlot(document: PageDocument, radius: (mark: Mark) => number): PageElement {
+  const marks = KEY_Z.map((z): Mark => ({ x: z, y: 0, z }));
   return draw(document, 'Key: size of the mark by standardised error', {
     width: PLOT_WIDTH.third,
     height: 52,
@@ -89,16 +88,11 @@ function keyPlot(document: PageDocument): PageElement {
       ticks: [...KEY_Z],
       tickSize: 0,
       label: null,
-      labelArrow: 'none',
       tickFormat: signed,
     },
     y: { axis: null, domain: [-1, 1] },
     r: { type: 'identity' },
-    marks: errorMarks(
-      marks,
-      (each) => each.lonDeg,
-      (each) => each.latDeg,
-    ),
+    marks: errorMarks(marks, radius),
   });
 }
 
@@ -107,12 +101,8 @@ function signed(z: number): string {
   return z > 0 ? `+${z}` : `−${-z}`;
 }
 
-function errorMarks(
-  marks: readonly Mark[],
-  x: (mark: Mark) => number,
-  y: (mark: Mark) => number,
-): Plot.Markish[] {
-  const shape = { x, y, r: radius, symbol: 'triangle', stroke: 'white', strokeWidth: 0.6 } as const;
+function errorMarks(marks: readonly Mark[], radius: (mark: Mark) => number): Plot.Markish[] {
+  const shape = { x: 'x', y: 'y', r: radius, symbol: 'triangle', stroke: 'white', strokeWidth: 0.6 } as const;
   const above = marks.filter((mark) => mark.z > 0);
   const below = marks.filter((mark) => mark.z <= 0);
   return [
@@ -121,8 +111,10 @@ function errorMarks(
   ];
 }
 
-function radius(mark: Mark): number {
-  return 1.8 + 1.7 * Math.min(LARGEST_Z, Math.abs(mark.z));
+/** Radius in px by |z|; smaller marks where many stand close. */
+function radiusOf(stationCount: number): (mark: Mark) => number {
+  const size = stationCount <= 150 ? 1 : stationCount <= 500 ? 0.7 : 0.5;
+  return (mark) => size * (1.8 + 1.7 * Math.min(LARGEST_Z, Math.abs(mark.z)));
 }
 
 function marksOf(isoscape: Isoscape, result: VariableResult): Mark[] {
@@ -130,8 +122,8 @@ function marksOf(isoscape: Isoscape, result: VariableResult): Mark[] {
   const marks = Array.from(
     result.observed,
     (observed, i): Mark => ({
-      lonDeg: isoscape.stations.lonDeg[i],
-      latDeg: isoscape.stations.latDeg[i],
+      x: isoscape.stations.lonDeg[i],
+      y: isoscape.stations.latDeg[i],
       z: standardisedError(observed, mean[i], variance[i]),
     }),
   ).filter((mark) => !Number.isNaN(mark.z));

@@ -5,6 +5,11 @@ const MOST_LINES = 6;
 /** A parallel is no straight line on the map: it is drawn through points this many degrees apart, or closer. */
 const BEND_DEG = 1;
 
+/** On a wider map meridians crowd towards its foot: every second is labelled. */
+const WIDE_DEG = 180;
+/** Labels keep this far inside the western edge: on it, a map of the whole Earth has two sides. */
+const EDGE_DEG = 1e-3;
+
 export interface MapExtent {
   /** Meridian the map is centred on; longitudes below run from lonDeg − 180 to lonDeg + 180 about it. */
   readonly centreLonDeg: number;
@@ -53,24 +58,27 @@ export function graticule(extent: MapExtent): Graticule {
   const step =
     STEPS_DEG.find((each) => Math.max(eastDeg - westDeg, northDeg - southDeg) / each <= MOST_LINES) ?? 60;
   const meridians = multiples(step, westDeg, eastDeg);
-  const parallels = multiples(step, southDeg, northDeg);
+  const parallels = multiples(step, southDeg, northDeg).filter((lat) => Math.abs(lat) < 90); // a pole is no line
+  const isWide = eastDeg - westDeg > WIDE_DEG;
   return {
     lines: [
       ...meridians.map((lon) => walk(southDeg, northDeg).map((lat): [number, number] => [lon, lat])),
       ...parallels.map((lat) => walk(westDeg, eastDeg).map((lon): [number, number] => [lon, lat])),
     ],
     labels: [
-      ...meridians.map(
-        (lon): GraticuleLabel => ({
-          lonDeg: lon,
-          latDeg: southDeg,
-          text: degrees(wrapDeg(lon), 'E', 'W', step),
-          side: 'south',
-        }),
-      ),
+      ...meridians
+        .filter((_, k) => !isWide || k % 2 === 0)
+        .map(
+          (lon): GraticuleLabel => ({
+            lonDeg: lon,
+            latDeg: southDeg,
+            text: degrees(wrapDeg(lon), 'E', 'W', step),
+            side: 'south',
+          }),
+        ),
       ...parallels.map(
         (lat): GraticuleLabel => ({
-          lonDeg: westDeg,
+          lonDeg: westDeg + EDGE_DEG,
           latDeg: lat,
           text: degrees(lat, 'N', 'S', step),
           side: 'west',

@@ -6,6 +6,9 @@ import { figure, type PageDocument, type PageElement } from '../document.js';
 import { COLOUR, dotRadius, draw, PLOT_WIDTH, shortName } from '../plot.js';
 import { levelText, VARIABLE_LABEL } from '../wording.js';
 
+/** More names than these would hide each other; the page lists all of them. */
+const MOST_NAMES = 5;
+
 const NAME = {
   text: (point: Point) => shortName(point.name),
   fontSize: 10,
@@ -20,7 +23,8 @@ interface Point {
   readonly predicted: number;
   readonly low: number;
   readonly high: number;
-  readonly outlying: boolean;
+  /** Rank among the errors beyond three standard deviations, the largest 0; −1 within them. */
+  readonly rank: number;
 }
 
 /** Observed station means against their leave-one-out predictions, one plot a variable. */
@@ -33,8 +37,8 @@ export function observedPredictedFigure(
     document,
     validation.leaveOneOut.variables.map((result) => plotOf(document, isoscape, validation, result)),
     'Observed station means against their leave-one-out predictions. On the line the two agree; bars are the ' +
-      `${levelText(validation.level)} intervals of the prediction. Named diamonds: errors beyond three standard ` +
-      'deviations.',
+      `${levelText(validation.level)} intervals of the prediction. Diamonds: errors beyond three standard ` +
+      'deviations, the largest with their station’s name.',
   );
 }
 
@@ -46,8 +50,8 @@ function plotOf(
 ): PageElement {
   const points = pointsOf(isoscape, validation, result);
   const label = VARIABLE_LABEL[result.variable];
-  const ordinary = points.filter((point) => !point.outlying);
-  const odd = points.filter((point) => point.outlying);
+  const ordinary = points.filter((point) => point.rank < 0);
+  const odd = points.filter((point) => point.rank >= 0).sort((a, b) => a.rank - b.rank);
   const ends = points.flatMap(({ observed, predicted }) => [observed, predicted]);
   const [low, high] = [Math.min(...ends), Math.max(...ends)];
   const room = (high - low || 1) * 0.04;
@@ -78,14 +82,14 @@ function plotOf(
   });
 }
 
-/** Named diamonds; names run towards the middle of the plot, so that none leaves it. */
+/** Diamonds, the furthest off with their names, which run towards the middle of the plot, so that none leaves it. */
 function oddMarks(odd: readonly Point[], middle: number): Plot.Markish[] {
   const place = { x: 'predicted', y: 'observed' } as const;
   return [
     Plot.dot(odd, { ...place, symbol: 'diamond', r: 4.5, fill: COLOUR.vermilion, stroke: 'white' }),
     ...(['start', 'end'] as const).map((textAnchor) =>
       Plot.text(
-        odd.filter((point) => point.predicted > middle === (textAnchor === 'end')),
+        odd.slice(0, MOST_NAMES).filter((point) => point.predicted > middle === (textAnchor === 'end')),
         { ...place, ...NAME, textAnchor, dx: textAnchor === 'end' ? -7 : 7 },
       ),
     ),
@@ -95,9 +99,9 @@ function oddMarks(odd: readonly Point[], middle: number): Plot.Markish[] {
 function pointsOf(isoscape: Isoscape, validation: ValidationResult, result: VariableResult): Point[] {
   const { mean, variance } = methodResult(result, 'isoscape');
   const halfWidth = gaussianQuantile(0.5 + validation.level / 2);
-  const odd = new Set(
-    validation.outlying.filter((each) => each.variable === result.variable).map((each) => each.stationIndex),
-  );
+  const odd = validation.outlying
+    .filter((each) => each.variable === result.variable)
+    .map((each) => each.stationIndex);
   return Array.from(result.observed, (observed, i): Point => {
     const reach = halfWidth * Math.sqrt(variance[i]);
     return {
@@ -106,7 +110,7 @@ function pointsOf(isoscape: Isoscape, validation: ValidationResult, result: Vari
       predicted: mean[i],
       low: mean[i] - reach,
       high: mean[i] + reach,
-      outlying: odd.has(i),
+      rank: odd.indexOf(i),
     };
   });
 }
