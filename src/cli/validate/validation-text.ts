@@ -42,7 +42,7 @@ function schemeText(title: string, scheme: SchemeResult, level: number): string 
       decimals(scores.meanSquaredZ, 2),
     ]),
   );
-  const covers = levels.map((each) => `${levelText(each)} covers`);
+  const covers = levels.map((each) => `${levelText(each).replace('\u00a0', ' ')} covers`); // plain space: grep finds it
   const header = ['variable', 'predictor', 'n', 'RMSE ‰', 'MAE ‰', 'bias ‰', 'CRPS ‰', ...covers, 'mean z²'];
   return (
     `${title} (nearest station left in: ${decimals(scheme.medianNearestKm, 0)} km away, median)\n` +
