@@ -11,7 +11,7 @@ import {
   type StationColumns,
 } from './isoscape.js';
 import { supportLimits } from './support.js';
-import { TERM_NAMES, type TermName, trendMatrix } from './trend.js';
+import { parseTerms, type TermName, trendMatrix } from './trend.js';
 import { supportedCandidates } from './trend-choice.js';
 
 /** What the fit of a pair and of one isotope share. */
@@ -40,7 +40,7 @@ export function chooseTrend(
   const geometryOf = (terms: readonly TermName[]) =>
     createGeometry(positionsKm, trendMatrix(terms, stations.latDeg, stations.elevationM), terms.length + 1);
   if (asked !== 'auto') {
-    const terms = TERM_NAMES.filter((name) => asked.includes(name));
+    const terms = parseTerms(asked.join(','));
     return { terms, geometry: geometryOf(terms), candidates: [] };
   }
   const { candidates, best } = choose(supportedCandidates(positionsKm, stations.latDeg, stations.elevationM));

@@ -16,7 +16,7 @@ export const MIN_STATIONS = 10;
  * sampling variances), for one isotope a single field.
  *
  * @throws STATIONS_TOO_FEW, TREND_COLLINEAR, STATIONS_COINCIDENT, WITHIN_COVARIANCE_SINGULAR,
- *         PARAMETER_OUT_OF_RANGE, LIKELIHOOD_NOT_CONVERGED
+ *         PARAMETER_OUT_OF_RANGE, TERM_UNKNOWN, ISOTOPE_MISSING, LIKELIHOOD_NOT_CONVERGED
  */
 export function fitIsoscape(
   network: Network,

@@ -5,7 +5,8 @@ import type { StationColumns } from './isoscape.js';
 /**
  * Columns of the stations in a canonical order (latitude, elevation, values, longitude, id), so that the order of
  * the table changes neither the id nor a single bit of the result.
- * @throws ISOTOPE_MISSING for a station without a chosen isotope (a fault of the caller: networks list them apart)
+ * @throws ISOTOPE_MISSING for a station without a chosen isotope (a fault of the caller: networks list them apart),
+ *         PARAMETER_OUT_OF_RANGE for a number that is not finite, or records that are not above 0
  */
 export function stationColumns(network: Network): StationColumns {
   const stations = [...network.stations].sort(compareStations);
@@ -18,6 +19,7 @@ export function stationColumns(network: Network): StationColumns {
         isotope: missing,
       });
     }
+    checkNumbers(station, wanted);
   }
   const column = (pick: (station: StationMean) => number) => Float64Array.from(stations, pick);
   return {
@@ -30,6 +32,19 @@ export function stationColumns(network: Network): StationColumns {
     d2H: column((station) => (network.isotopes === 'd18O' ? Number.NaN : station.d2H)),
     effectiveRecords: column((station) => station.effectiveRecords),
   };
+}
+
+function checkNumbers(station: StationMean, isotopes: readonly ('d18O' | 'd2H')[]): void {
+  const keys = ['lonDeg', 'latDeg', 'elevationM', ...isotopes] as const;
+  const key = keys.find((name) => !Number.isFinite(station[name]));
+  const recordsFit = isMissing(station.effectiveRecords) || station.effectiveRecords > 0;
+  if (key === undefined && recordsFit) return;
+  const name = key ?? 'effectiveRecords';
+  throw new RainprintError(
+    'PARAMETER_OUT_OF_RANGE',
+    `station "${station.id}": ${name} is ${station[name]}; a finite number${key === undefined ? ' above 0' : ''} is needed`,
+    { station: station.id, member: name },
+  );
 }
 
 function compareStations(a: StationMean, b: StationMean): number {

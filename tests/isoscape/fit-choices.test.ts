@@ -177,6 +177,21 @@ describe('calls that cannot be met', () => {
     );
   });
 
+  it.each([
+    ['lonDeg', Number.NaN],
+    ['latDeg', Number.POSITIVE_INFINITY],
+    ['elevationM', Number.NaN],
+    ['d18O', Number.NEGATIVE_INFINITY],
+    ['effectiveRecords', 0],
+  ] as const)('a station whose %s is %d is named', (key, value) => {
+    const bad = withStations(network, (_, i) => (i === 4 ? { [key]: value } : {}));
+    refused(bad, FIXED, 'PARAMETER_OUT_OF_RANGE', new RegExp(`"${network.stations[4]!.id}": ${key}`));
+  });
+
+  it('a term that is not known', () => {
+    refused(network, { ...FIXED, terms: ['zonal9' as 'zonal1'] }, 'TERM_UNKNOWN', /"zonal9"/);
+  });
+
   it('a refit on too few stations', () => {
     const isoscape = fitIsoscape(network, FIXED);
     expect(() => refitOn(isoscape, [0, 1, 2])).toThrowError(
