@@ -18,10 +18,13 @@ export type Baseline = (
 
 /** Mean of the training values; variance s²(1 + 1/n). */
 export const meanBaseline: Baseline = (values, heldOut, mean, variance) => {
-  const training = trainingIndices(values.length, heldOut);
-  const n = training.length;
-  const average = training.reduce((sum, i) => sum + values[i], 0) / n;
-  const squares = training.reduce((sum, i) => sum + (values[i] - average) ** 2, 0);
+  const excluded = excludedMask(values.length, heldOut);
+  const n = values.length - heldOut.length;
+  let sum = 0;
+  for (let i = 0; i < values.length; i++) if (excluded[i] === 0) sum += values[i];
+  const average = sum / n;
+  let squares = 0;
+  for (let i = 0; i < values.length; i++) if (excluded[i] === 0) squares += (values[i] - average) ** 2;
   for (const i of heldOut) {
     mean[i] = n > 1 ? average : Number.NaN;
     variance[i] = n > 1 ? (squares / (n - 1)) * (1 + 1 / n) : Number.NaN;
@@ -40,32 +43,37 @@ const SMALLEST_SHARE = 1e-10;
 export function regressionBaseline(trend: Float64Array, p: number): Baseline {
   const count = trend.length / p;
   const rows = Array.from({ length: count }, (_, i) => Array.from(trend.subarray(i * p, (i + 1) * p)));
-  const q = new QrDecomposition(new Matrix(rows)).orthogonalMatrix;
+  const q = Float64Array.from(new QrDecomposition(new Matrix(rows)).orthogonalMatrix.to1DArray());
   return (values, heldOut, mean, variance) => {
-    const training = trainingIndices(count, heldOut);
-    const inverse = inverseOfTraining(q, heldOut);
-    const coefficients = inverse?.mmul(projection(q, values, training));
+    const excluded = excludedMask(count, heldOut);
+    const trainingCount = count - heldOut.length;
+    const inverse = trainingCount > p ? inverseOfTraining(q, p, heldOut) : undefined;
     for (const i of heldOut) {
       mean[i] = Number.NaN;
       variance[i] = Number.NaN;
     }
-    if (inverse === undefined || coefficients === undefined || training.length <= p) return;
-    const fitted = (i: number) => dot(q, i, coefficients);
-    const squares = training.reduce((sum, i) => sum + (values[i] - fitted(i)) ** 2, 0);
-    const residualVariance = squares / (training.length - p);
+    if (inverse === undefined) return;
+    const coefficients = inverse.mmul(Matrix.columnVector(projection(q, p, values, excluded))).to1DArray();
+    let squares = 0;
+    for (let i = 0; i < count; i++) {
+      if (excluded[i] === 0) squares += (values[i] - rowTimes(q, p, i, coefficients)) ** 2;
+    }
+    const residualVariance = squares / (trainingCount - p);
     for (const i of heldOut) {
-      mean[i] = fitted(i);
-      variance[i] = residualVariance * (1 + dot(q, i, inverse.mmul(q.getRowVector(i).transpose())));
+      const row = Array.from(q.subarray(i * p, (i + 1) * p));
+      const leverage = rowTimes(q, p, i, inverse.mmul(Matrix.columnVector(row)).to1DArray());
+      mean[i] = rowTimes(q, p, i, coefficients);
+      variance[i] = residualVariance * (1 + leverage);
     }
   };
 }
 
 /** (I − Q_IᵀQ_I)⁻¹ by its eigenvalues; undefined where the training places leave a direction undetermined. */
-function inverseOfTraining(q: Matrix, heldOut: readonly number[]): Matrix | undefined {
-  const left = Matrix.eye(q.columns);
+function inverseOfTraining(q: Float64Array, p: number, heldOut: readonly number[]): Matrix | undefined {
+  const left = Matrix.eye(p);
   for (const i of heldOut) {
-    for (let a = 0; a < q.columns; a++) {
-      for (let b = 0; b < q.columns; b++) left.set(a, b, left.get(a, b) - q.get(i, a) * q.get(i, b));
+    for (let a = 0; a < p; a++) {
+      for (let b = 0; b < p; b++) left.set(a, b, left.get(a, b) - q[i * p + a] * q[i * p + b]);
     }
   }
   const { realEigenvalues, eigenvectorMatrix } = new EigenvalueDecomposition(left, { assumeSymmetric: true });
@@ -74,18 +82,18 @@ function inverseOfTraining(q: Matrix, heldOut: readonly number[]): Matrix | unde
   return eigenvectorMatrix.mmul(inverted).mmul(eigenvectorMatrix.transpose());
 }
 
-/** Q_Tᵀz_T as a column. */
-function projection(q: Matrix, values: Float64Array, training: readonly number[]): Matrix {
-  const out = Matrix.zeros(q.columns, 1);
-  for (const i of training) {
-    for (let a = 0; a < q.columns; a++) out.set(a, 0, out.get(a, 0) + q.get(i, a) * values[i]);
+/** Q_Tᵀz_T. */
+function projection(q: Float64Array, p: number, values: Float64Array, excluded: Uint8Array): Float64Array {
+  const out = new Float64Array(p);
+  for (let i = 0; i < values.length; i++) {
+    if (excluded[i] === 0) for (let a = 0; a < p; a++) out[a] += q[i * p + a] * values[i];
   }
   return out;
 }
 
-function dot(q: Matrix, row: number, column: Matrix): number {
+function rowTimes(q: Float64Array, p: number, row: number, column: readonly number[]): number {
   let sum = 0;
-  for (let a = 0; a < q.columns; a++) sum += q.get(row, a) * column.get(a, 0);
+  for (let a = 0; a < p; a++) sum += q[row * p + a] * column[a];
   return sum;
 }
 
@@ -95,8 +103,7 @@ function dot(q: Matrix, row: number, column: Matrix): number {
  */
 export function nearestBaseline(neighbours: Neighbours): Baseline {
   return (values, heldOut, mean, variance) => {
-    const excluded = new Uint8Array(values.length);
-    for (const i of heldOut) excluded[i] = 1;
+    const excluded = excludedMask(values.length, heldOut);
     let squares = 0;
     let pairs = 0;
     for (let i = 0; i < values.length; i++) {
@@ -114,7 +121,8 @@ export function nearestBaseline(neighbours: Neighbours): Baseline {
   };
 }
 
-function trainingIndices(count: number, heldOut: readonly number[]): number[] {
-  const out = new Set(heldOut);
-  return Array.from({ length: count }, (_, i) => i).filter((i) => !out.has(i));
+function excludedMask(count: number, heldOut: readonly number[]): Uint8Array {
+  const mask = new Uint8Array(count);
+  for (const i of heldOut) mask[i] = 1;
+  return mask;
 }

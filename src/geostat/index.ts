@@ -1,4 +1,6 @@
 export { MAX_NODES, type ParameterNode, parameterNodes } from './averaging/nodes.js';
+export { type Baseline, meanBaseline, nearestBaseline, regressionBaseline } from './baselines.js';
+export { spatialBlocks } from './blocks.js';
 export {
   type BlupWorkspace,
   createBlupWorkspace,
@@ -14,11 +16,14 @@ export {
   correlationFunction,
   practicalRangeKm,
 } from './covariance/families.js';
+export { empiricalVariogram, type VariogramBin, type VariogramInput } from './empirical-variogram.js';
 export { createGeometry, type FieldGeometry, ordinaryLeastSquares, scaledCondition } from './field-data.js';
 export { type FieldFit, type FieldFitOptions, fitField } from './fit-field.js';
+export { gaussianCdf, gaussianDensity, gaussianQuantile } from './gaussian.js';
 export { predictFieldJointly, weightedAverage } from './joint.js';
 export { leaveGroupOutField, leaveOneOutField } from './leave-one-out.js';
 export { type Criterion, FieldLikelihood, type FieldParameters } from './likelihood.js';
+export { findNeighbours, type Neighbours } from './neighbours.js';
 export {
   arcFromChordKm,
   chordKm,
@@ -29,4 +34,15 @@ export {
   positionsOnSphereKm,
   writePositionKm,
 } from './positions.js';
+export {
+  type Coverage,
+  coverageAt,
+  crpsGaussian,
+  logScoreGaussian,
+  pitGaussian,
+  type ScoredSeries,
+  type Scores,
+  scoreSeries,
+  standardisedError,
+} from './scores.js';
 export type { FixedParameters } from './search-space.js';

@@ -35,3 +35,14 @@ export { roundPair } from './rounding.js';
 export { readIsoscape, writeIsoscape } from './serialise.js';
 export { createSupport, SUPPORT_FLAGS, type Support, type SupportFlag } from './support.js';
 export { parseTerms, TERM_NAMES, type TermName } from './trend.js';
+export { type ValidateOptions, validateIsoscape, validateLeaveOneOut } from './validate.js';
+export {
+  type MethodResult,
+  methodResult,
+  type OutlyingStation,
+  type SchemeResult,
+  type ValidatedVariable,
+  type ValidationMethod,
+  type ValidationResult,
+  type VariableResult,
+} from './validation.js';
