@@ -4,7 +4,6 @@ import { RainprintError } from '../errors.js';
 import { type Isoscape, readIsoscape } from '../isoscape/index.js';
 import { type ValidateOptions, validateIsoscape } from '../isoscape/validate.js';
 import type { ValidationResult } from '../isoscape/validation.js';
-import { validationPage } from '../report/validation-page.js';
 import type { CliContext } from './context.js';
 import { readInputText } from './input-file.js';
 import { type OutputFile, openOutput } from './output-file.js';
@@ -69,12 +68,12 @@ async function runValidate(path: string, flags: ValidateFlags, context: CliConte
     if (reportFile !== null) outputs.push(reportFile);
     const result = validateWithProgress(isoscape, options, context);
     const scores = flags.json ? validationJson(isoscape, result) : validationText(isoscape, result);
-    await reportFile?.write(
-      validationPage(isoscape, result, {
-        toolVersion: context.toolVersion,
-        command: rerunCommand(basename(path), result, basename(flags.report ?? '')),
-      }),
-    );
+    if (reportFile !== null) {
+      const command = rerunCommand(basename(path), result, basename(reportFile.path));
+      // Loaded here: the plotting library would slow the start of every other call.
+      const { validationPage } = await import('../report/validation-page.js');
+      await reportFile.write(validationPage(isoscape, result, { toolVersion: context.toolVersion, command }));
+    }
     await scoresFile?.write(scores);
     for (const file of outputs) await file.commit();
     if (scoresFile === null) await writeText(context.stdout, scores);
