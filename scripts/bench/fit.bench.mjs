@@ -87,15 +87,19 @@ async function compare(family, x, z, peer, repetitions) {
   if (!(atOurs >= atTheirs - 1e-6)) {
     throw new Error(`our restricted likelihood ${atOurs} is worse than ${atTheirs} at the peer's parameters`);
   }
-  const times = { ours: [], theirs: [] };
+  const runs = { ours: [], theirs: [] };
   for (let k = 0; k < repetitions; k++) {
-    times.ours.push(ours().seconds);
-    times.theirs.push((await peer.fit(family)).seconds);
+    runs.ours.push(ours());
+    runs.theirs.push(await peer.fit(family));
   }
+  const column = (side, key) => runs[side].map((run) => run[key]);
+  const times = { ours: column('ours', 'seconds'), theirs: column('theirs', 'seconds') };
+  const cpu = { ours: column('ours', 'cpuSeconds'), theirs: column('theirs', 'cpuSeconds') };
   const ratio = median(times.ours) / median(times.theirs);
   return [
     ...lines,
     `- ours ${spread(times.ours)}, peer ${spread(times.theirs)}, median of ${repetitions}; **ours / peer = ${ratio.toFixed(2)}**`,
+    `- processor time, all threads: ours ${spread(cpu.ours)}, peer ${spread(cpu.theirs)}`,
     `- restricted likelihood: ${atOurs.toFixed(6)} at our optimum, ${atTheirs.toFixed(6)} at the peer's`,
     `- peer: ${peer.libraries}`,
   ];
@@ -103,13 +107,15 @@ async function compare(family, x, z, peer, repetitions) {
 
 /** A fit from nothing: distances are part of it, as they are of the peer's. */
 function timeOurs(family, x, z) {
-  const begin = performance.now();
+  const [begin, cpuBegin] = [performance.now(), process.cpuUsage()];
   const geometry = createGeometry(x, new Float64Array(z.length).fill(1), 1);
   const fit = fitField(geometry, z, new Float64Array(z.length), family, {
     starts: [START],
     onlyGivenStarts: true,
   });
-  return { fit, seconds: (performance.now() - begin) / 1000 };
+  const seconds = (performance.now() - begin) / 1000;
+  const { user, system } = process.cpuUsage(cpuBegin);
+  return { fit, seconds, cpuSeconds: (user + system) / 1e6 };
 }
 
 /** The peer as a child that keeps its data and answers one fit a line; null where it is not installed. */

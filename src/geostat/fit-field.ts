@@ -46,6 +46,14 @@ const STARTS_FOLLOWED = 2;
 const MAX_ITERATIONS = 200;
 /** Newton decrement gᵀH⁻¹g below which the likelihood can gain less than this, far under any use of it. */
 const CONVERGED_DECREMENT = 1e-13;
+/** Promised gain below which a step that gains nothing has met the likelihood's rounding: no shorter one will. */
+const ROUNDING_DECREMENT = 1e-9;
+/**
+ * Decrement below which secants are learnt: far from the optimum they belong to other places of the surface and
+ * lengthen the way (measured on 18 seeded fits of 250 points: 326 likelihoods and 239 gradients with all secants, 252
+ * and 193 with these alone).
+ */
+const LEARNING_DECREMENT = 1;
 
 /**
  * Finds the covariance parameters that maximise the (restricted) likelihood of one field with known error
@@ -154,13 +162,14 @@ function climb(
     if (nextValue > value) {
       const gain = nextValue - value;
       const nextLocal = localDerivatives(likelihood, space, next);
-      updateSecant(secant, local, nextLocal, x, next);
+      if (step.decrement < LEARNING_DECREMENT) updateSecant(secant, local, nextLocal, x, next);
       x = next;
       value = nextValue;
       local = nextLocal;
       damping = damping < 1e-6 ? 0 : damping * 0.1;
       if (gain < 1e-14 * Math.max(1, Math.abs(value))) break;
     } else {
+      if (step.decrement < ROUNDING_DECREMENT) break;
       damping = Math.max(damping * 8, 1e-4);
       if (damping > 1e10) break;
     }
