@@ -161,7 +161,8 @@ async function main() {
     seconds,
     ...poolWorlds(worlds),
   };
-  const text = `${JSON.stringify(result, null, 2)}\n`;
+  const rounded = (_, value) => (typeof value === 'number' ? Number(value.toPrecision(6)) : value);
+  const text = `${JSON.stringify(result, rounded, 2)}\n`;
   if (values.output === undefined) process.stdout.write(text);
   else writeFileSync(values.output, text);
 }
