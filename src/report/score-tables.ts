@@ -98,7 +98,7 @@ export function outlyingPart(document: PageDocument, validation: ValidationResul
       number(each.observed, 2),
       number(each.predicted, 2),
       number(each.sd, 2),
-      number(each.z, 1),
+      number(each.z, 2),
     ]),
   });
 }

@@ -62,7 +62,7 @@ function outlyingText(result: ValidationResult): string {
     decimals(each.observed, 2),
     decimals(each.predicted, 2),
     decimals(each.sd, 2),
-    decimals(each.z, 1),
+    decimals(each.z, 2),
   ]);
   return (
     `Leave-one-out errors beyond 3 SD: ${result.outlying.length} (Gaussian errors would give about ${expected})\n` +

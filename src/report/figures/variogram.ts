@@ -13,6 +13,8 @@ const BIN_COUNT = 15;
 /** Bins with fewer pairs are drawn hollow (Journel & Huijbregts 1978: at least 30). */
 const FIRM_PAIRS = 30;
 const CURVE_POINTS = 160;
+/** Height of the plot over the highest point or the fitted curve. */
+const HEADROOM = 1.3;
 
 /** Empirical variogram of each field's GLS residuals with the fitted curve. */
 export function variogramFigure(document: PageDocument, isoscape: Isoscape): PageElement {
@@ -23,7 +25,7 @@ export function variogramFigure(document: PageDocument, isoscape: Isoscape): Pag
     fields.map((field) => variogramPlot(document, isoscape, field)),
     'Empirical variogram of the residuals from the fitted trend (points; numbers are pairs of stations) and the ' +
       'fitted curve, nugget + sill · (1 − correlation). Grey curves: the other parameter sets that predictions are ' +
-      'averaged over, darker where more likely. Dotted line: distance of 5 % correlation.',
+      'averaged over, darker where more likely. Dotted line, where within the plot: distance of 5 % correlation.',
     `Points are Matheron’s estimator brought to the scale of the curve: ${
       known
         ? 'the known sampling variances are taken off, and '
@@ -48,6 +50,11 @@ function variogramPlot(document: PageDocument, isoscape: Isoscape, field: Fitted
     maximumKm,
   });
   const curve = (parameters: FieldParameters) => curvePoints(isoscape, parameters, maximumKm);
+  const fitted = curve(field.parameters);
+  const shown = [...fitted.map(([, gamma]) => gamma), ...bins.map((bin) => bin.semivariance)];
+  // Curves of unlikely parameter sets end where they leave the plot, rather than flatten all else.
+  const topOfPlot = HEADROOM * Math.max(...shown) || 1;
+  const belowTop = (points: [number, number][]) => points.filter(([, gamma]) => gamma <= topOfPlot);
   const heaviest = Math.max(...field.nodes.map((node) => node.weight));
   const reach = practicalRangeKm(isoscape.family, field.parameters.rangeKm);
   const whitened = field.name === 'along' || field.name === 'across';
@@ -59,8 +66,7 @@ function variogramPlot(document: PageDocument, isoscape: Isoscape, field: Fitted
     marginBottom: 40,
     x: { domain: [0, maximumKm], label: 'distance, km', labelAnchor: 'center', labelArrow: 'none', ticks: 6 },
     y: {
-      zero: true,
-      nice: true,
+      domain: [Math.min(0, ...shown), topOfPlot],
       label: `${FIELD_LABEL[field.name]}: semivariance${whitened ? ' (whitened units²)' : ', ‰²'}`,
       labelArrow: 'none',
       ticks: 6,
@@ -69,10 +75,13 @@ function variogramPlot(document: PageDocument, isoscape: Isoscape, field: Fitted
     marks: [
       Plot.ruleY([0]),
       ...field.nodes.map((node) =>
-        Plot.line(curve(node), { stroke: COLOUR.grey, strokeOpacity: 0.08 + (0.3 * node.weight) / heaviest }),
+        Plot.line(belowTop(curve(node)), {
+          stroke: COLOUR.grey,
+          strokeOpacity: 0.08 + (0.3 * node.weight) / heaviest,
+        }),
       ),
       Plot.ruleX(reach < maximumKm ? [reach] : [], { stroke: COLOUR.ink, strokeDasharray: '1.5,3' }),
-      Plot.line(curve(field.parameters), { stroke: COLOUR.vermilion, strokeWidth: 2.2 }),
+      Plot.line(fitted, { stroke: COLOUR.vermilion, strokeWidth: 2.2 }),
       ...pointMarks(bins),
     ],
   });
