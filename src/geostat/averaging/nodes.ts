@@ -30,7 +30,7 @@ export function parameterNodes(
 ): ParameterNode[] {
   if (fit.space.axes.length === 0) return [{ ...fit.parameters, weight: 1 }];
   const likelihood = new FieldLikelihood(geometry, correlationFunction(family), errorVariance);
-  const points = posteriorGrid(likelihood, z, fit, geometry.n);
+  const points = posteriorGrid(likelihood, z, fit, errorVariance);
   const parameters = points.map((point) => parametersAt(fit.space, point.coordinates));
   const weights = Float64Array.from(points, (point) => point.weight);
   const { features, width } = probeFeatures(geometry, family, z, errorVariance, parameters, weights);

@@ -41,8 +41,8 @@ interface Cell extends ScaleIntegral {
 }
 
 /**
- * Dense quadrature of the posterior of the covariance parameters: restricted likelihood times the uniform prior
- * of the search box. Midpoints over a window of ln range and of the nugget share (moved until its edges hold less
+ * Dense quadrature of the posterior of the covariance parameters: restricted likelihood times a prior uniform in
+ * ln range and nugget share over the search box, with that of `logScalePrior` for the scale. Midpoints over a window of ln range and of the nugget share (moved until its edges hold less
  * than a thousandth of the peak, or reach the box); in each cell the scale is integrated by the trapezoidal rule,
  * walking outward until the density has fallen (skewed where few stations set it, flat where sampling errors do).
  *
@@ -52,15 +52,15 @@ export function posteriorGrid(
   likelihood: FieldLikelihood,
   z: Float64Array,
   fit: FieldFit,
-  stationCount: number,
+  errorVariance: Float64Array,
 ): PosteriorPoint[] {
   const { space } = fit;
   if (space.axes.length === 0) return [{ coordinates: new Float64Array(0), weight: 1 }];
-  const rule = stationCount <= FINE_RULE_STATIONS ? FINE : COARSE;
+  const rule = errorVariance.length <= FINE_RULE_STATIONS ? FINE : COARSE;
   const range = firstWindow(fit, 'lnRange', rule.range);
   const share = firstWindow(fit, 'nuggetShare', rule.share);
   const scaleAxis = space.axes.findIndex((axis) => axis.name === 'lnTotal' || axis.name === 'lnSill');
-  const evaluate = (r: AxisWindow, s: AxisWindow) => evaluateCells(likelihood, z, fit, r, s, scaleAxis, rule);
+  const evaluate = (r: AxisWindow, s: AxisWindow) => evaluateCells(likelihood, z, errorVariance, fit, r, s, scaleAxis, rule);
   // One axis at a time through the optimum first, which is cheap; then the whole, whose ridge may need more room.
   const held: AxisWindow = { axis: -1, points: 1, graded: false, low: 0, high: 0 };
   moveUntilSettled([range], () => evaluate(range, held), space, MAX_LINE_MOVES);
@@ -120,6 +120,7 @@ function positionIn({ low, high, points, graded }: AxisWindow, i: number): numbe
 function evaluateCells(
   likelihood: FieldLikelihood,
   z: Float64Array,
+  errorVariance: Float64Array,
   fit: FieldFit,
   range: AxisWindow,
   share: AxisWindow,
@@ -145,7 +146,7 @@ function evaluateCells(
         });
         continue;
       }
-      const cell = { ...integrateScale(likelihood, z, fit.space, x, scaleAxis, scale, rule), logArea };
+      const cell = { ...integrateScale(likelihood, z, errorVariance, fit.space, x, scaleAxis, scale, rule), logArea };
       cells.push(cell);
       if (Number.isFinite(cell.logDensity)) scale = scaleMoments(cell);
     }

@@ -1,6 +1,7 @@
 import type { FieldFit } from '../fit-field.js';
 import type { FieldLikelihood } from '../likelihood.js';
 import { parametersAt, type SearchSpace } from '../search-space.js';
+import { logScalePrior } from './scale-prior.js';
 
 /** Steps in posterior standard deviations of the scale, and the fall of ln density at which they end. */
 export interface ScaleRule {
@@ -54,10 +55,11 @@ function boundedSd(sd: number): number {
   return Math.min(SCALE_SD_HIGH, Math.max(SCALE_SD_LOW, sd));
 }
 
-/** Trapezoidal rule over the scale, outward from a start until ln density has fallen below the largest found. */
+/** Trapezoidal rule over the scale, likelihood times prior, outward from a start until ln density has fallen below the largest found. */
 export function integrateScale(
   likelihood: FieldLikelihood,
   z: Float64Array,
+  errorVariance: Float64Array,
   space: SearchSpace,
   start: Float64Array,
   scaleAxis: number,
@@ -73,7 +75,9 @@ export function integrateScale(
   const visit = (value: number): boolean => {
     if (value < axis.low || value > axis.high) return false;
     x[scaleAxis] = value;
-    const logDensity = likelihood.evaluate(z, parametersAt(space, x));
+    const parameters = parametersAt(space, x);
+    const logDensity =
+      likelihood.evaluate(z, parameters) + logScalePrior(axis.name, parameters, errorVariance);
     if (!Number.isFinite(logDensity)) return false;
     scales.push({ value, logDensity });
     const rising = logDensity > peak;
