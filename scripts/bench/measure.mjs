@@ -1,5 +1,5 @@
 // Shared by the benchmarks: seeded numbers, medians, what the machine is.
-import { cpus } from 'node:os';
+import { cpus, loadavg } from 'node:os';
 
 /** Uniform numbers in [0, 1): mulberry32 (T. Ettinger 2017, public domain). */
 export function seededUniform(seed) {
@@ -30,9 +30,11 @@ export function spread(seconds) {
   return `${show(median(seconds))} s (${show(Math.min(...seconds))} to ${show(Math.max(...seconds))})`;
 }
 
+/** What measured, and how busy it was with other work: beside a busy neighbour only ratios mean something. */
 export function machineLines() {
   const day = new Date().toISOString().slice(0, 10);
+  const processors = `${cpus()[0]?.model ?? 'unknown processor'}, ${cpus().length} cores`;
   return [
-    `Node ${process.version}, ${cpus()[0]?.model ?? 'unknown processor'}, ${cpus().length} cores, ${day}.`,
+    `Node ${process.version}, ${processors}, load average ${loadavg()[0].toFixed(1)} at the end, ${day}.`,
   ];
 }

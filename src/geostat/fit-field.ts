@@ -54,6 +54,8 @@ const ROUNDING_DECREMENT = 1e-9;
  * and 193 with these alone).
  */
 const LEARNING_DECREMENT = 1;
+/** Least damping after a step that lost: smaller ones shorten the next step too little to matter. */
+const REJECTED_DAMPING = 3e-2;
 
 /**
  * Finds the covariance parameters that maximise the (restricted) likelihood of one field with known error
@@ -170,7 +172,7 @@ function climb(
       if (gain < 1e-14 * Math.max(1, Math.abs(value))) break;
     } else {
       if (step.decrement < ROUNDING_DECREMENT) break;
-      damping = Math.max(damping * 8, 1e-4);
+      damping = Math.max(damping * 8, REJECTED_DAMPING);
       if (damping > 1e10) break;
     }
   }
