@@ -1,6 +1,7 @@
 /**
- * The average over covariance parameters a second time: brute quadrature of restricted likelihood × uniform prior over
- * the whole box of the search space, nothing of src but the box itself. The known error variance is the same at every
+ * The average over covariance parameters a second time: brute quadrature of restricted likelihood × stated prior over
+ * the whole box of the search space, nothing of src but the box itself. The prior is uniform in ln range, nugget share
+ * and, with t = sill + nugget and e the known error variance, ln(t + e), which is Jeffreys' prior for one known e. The known error variance is the same at every
  * station, so that one eigendecomposition of the correlations a range serves every sill and nugget.
  */
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
@@ -85,7 +86,8 @@ function evaluate(problem: AveragingProblem, range: Window, total: Window, share
       midpoints(share).forEach((s, k) => {
         const sum = Math.exp(lnTotal);
         const { restricted } = solve(problem, rotated, sum, s);
-        points.push({ at: [r, t, k], logDensity: restricted, total: sum, share: s });
+        const logPrior = Math.log(sum / (sum + problem.errorVariance));
+        points.push({ at: [r, t, k], logDensity: restricted + logPrior, total: sum, share: s });
       });
     });
   });

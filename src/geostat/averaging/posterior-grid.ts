@@ -2,6 +2,7 @@ import type { FieldFit } from '../fit-field.js';
 import type { FieldLikelihood } from '../likelihood.js';
 import { parametersAt, type SearchSpace } from '../search-space.js';
 import { integrateScale, type ScaleIntegral, scaleAtOptimum, scaleMoments } from './scale-integral.js';
+import { logScalePrior } from './scale-prior.js';
 
 /** A point of the dense rule: coordinates in the search space and the share of the posterior it stands for. */
 export interface PosteriorPoint {
@@ -9,21 +10,33 @@ export interface PosteriorPoint {
   readonly weight: number;
 }
 
-/** Stations up to which the fine rule is affordable (a likelihood costs n³/3 operations). */
-const FINE_RULE_STATIONS = 400;
 /**
  * Points on the range and nugget-share axes; steps of the scale in its own posterior standard deviations (the
- * trapezoidal rule errs by 2e^(−2π²/step²) on a Gaussian) and the fall of ln density at which they end.
+ * trapezoidal rule errs by 2e^(−2π²/step²) on a Gaussian) and the fall of ln density at which they end. A likelihood
+ * costs n³/3 operations and the posterior narrows with n, so larger networks get fewer points; in the largest the
+ * scale's own spread, below 1/n, is left out.
  */
-const FINE = { range: 11, share: 7, scaleStepSds: 1.25, scaleFall: 6, scaleSpread: true } as const;
-/** For large networks the posterior is narrow and nearly Gaussian; the scale's own spread is below 1/n. */
-const COARSE = { range: 7, share: 5, scaleStepSds: 2, scaleFall: 3, scaleSpread: false } as const;
-type Rule = typeof FINE | typeof COARSE;
+const RULES = [
+  { stations: 200, range: 11, share: 7, scaleStepSds: 1.25, scaleFall: 6, scaleSpread: true },
+  { stations: 500, range: 8, share: 5, scaleStepSds: 1.5, scaleFall: 4, scaleSpread: true },
+  {
+    stations: Number.POSITIVE_INFINITY,
+    range: 6,
+    share: 4,
+    scaleStepSds: 2,
+    scaleFall: 3,
+    scaleSpread: false,
+  },
+] as const;
+type Rule = (typeof RULES)[number];
 /** First window about the optimum, in Laplace standard deviations, and when it is moved. */
 const WINDOW_SDS = 3;
 const EDGE_DENSITY = 1e-3;
 const MAX_LINE_MOVES = 6;
 const MAX_WINDOW_MOVES = 3;
+/** Fall of ln density below the optimum at which a cell is not looked into any further. */
+const HOPELESS = -20;
+
 interface AxisWindow {
   /** Index in the search space, or −1 where the parameter is fixed. */
   readonly axis: number;
@@ -42,9 +55,10 @@ interface Cell extends ScaleIntegral {
 
 /**
  * Dense quadrature of the posterior of the covariance parameters: restricted likelihood times a prior uniform in
- * ln range and nugget share over the search box, with that of `logScalePrior` for the scale. Midpoints over a window of ln range and of the nugget share (moved until its edges hold less
- * than a thousandth of the peak, or reach the box); in each cell the scale is integrated by the trapezoidal rule,
- * walking outward until the density has fallen (skewed where few stations set it, flat where sampling errors do).
+ * ln range and nugget share over the search box, with that of `logScalePrior` for the scale. Midpoints over a window
+ * of ln range and of the nugget share (moved until its edges hold less than a thousandth of the peak, or reach the
+ * box); in each cell the scale is integrated by the trapezoidal rule, walking outward until the density has fallen
+ * (skewed where few stations set it, flat where sampling errors do).
  *
  * Deterministic. Weights sum to 1.
  */
@@ -56,11 +70,12 @@ export function posteriorGrid(
 ): PosteriorPoint[] {
   const { space } = fit;
   if (space.axes.length === 0) return [{ coordinates: new Float64Array(0), weight: 1 }];
-  const rule = errorVariance.length <= FINE_RULE_STATIONS ? FINE : COARSE;
+  const rule = RULES.find(({ stations }) => errorVariance.length <= stations)!;
   const range = firstWindow(fit, 'lnRange', rule.range);
   const share = firstWindow(fit, 'nuggetShare', rule.share);
   const scaleAxis = space.axes.findIndex((axis) => axis.name === 'lnTotal' || axis.name === 'lnSill');
-  const evaluate = (r: AxisWindow, s: AxisWindow) => evaluateCells(likelihood, z, errorVariance, fit, r, s, scaleAxis, rule);
+  const evaluate = (r: AxisWindow, s: AxisWindow) =>
+    evaluateCells(likelihood, z, errorVariance, fit, r, s, scaleAxis, rule);
   // One axis at a time through the optimum first, which is cheap; then the whole, whose ridge may need more room.
   const held: AxisWindow = { axis: -1, points: 1, graded: false, low: 0, high: 0 };
   moveUntilSettled([range], () => evaluate(range, held), space, MAX_LINE_MOVES);
@@ -129,6 +144,9 @@ function evaluateCells(
 ): Cell[] {
   const cells: Cell[] = [];
   const firstScale = scaleAxis < 0 ? null : scaleAtOptimum(fit, scaleAxis);
+  const atOptimum =
+    scaleAxis < 0 ? 0 : logScalePrior(fit.space.axes[scaleAxis].name, fit.parameters, errorVariance);
+  const floor = fit.logLikelihood + atOptimum + HOPELESS;
   for (const r of midpoints(range)) {
     // Each cell starts from its neighbour's scale: the conditional mode moves little from one to the next.
     let scale = firstScale;
@@ -146,9 +164,12 @@ function evaluateCells(
         });
         continue;
       }
-      const cell = { ...integrateScale(likelihood, z, errorVariance, fit.space, x, scaleAxis, scale, rule), logArea };
+      const cell = {
+        ...integrateScale(likelihood, z, errorVariance, fit.space, x, scaleAxis, scale, rule, floor),
+        logArea,
+      };
       cells.push(cell);
-      if (Number.isFinite(cell.logDensity)) scale = scaleMoments(cell);
+      if (cell.scales.length > 1) scale = scaleMoments(cell);
     }
   }
   return cells;

@@ -55,7 +55,10 @@ function boundedSd(sd: number): number {
   return Math.min(SCALE_SD_HIGH, Math.max(SCALE_SD_LOW, sd));
 }
 
-/** Trapezoidal rule over the scale, likelihood times prior, outward from a start until ln density has fallen below the largest found. */
+/**
+ * Trapezoidal rule over the scale, likelihood times prior, outward from a start until ln density has fallen below the
+ * largest found; not at all where the start lies below `floor`.
+ */
 export function integrateScale(
   likelihood: FieldLikelihood,
   z: Float64Array,
@@ -65,6 +68,7 @@ export function integrateScale(
   scaleAxis: number,
   guess: ScaleMoments,
   rule: ScaleRule,
+  floor: number,
 ): ScaleIntegral {
   const axis = space.axes[scaleAxis];
   const x = Float64Array.from(start);
@@ -85,7 +89,9 @@ export function integrateScale(
     return rising || logDensity > peak - rule.scaleFall;
   };
   visit(centre);
-  for (const sign of [-1, 1]) {
+  // A first look this far down (the guess is within a few deviations of the mode) cannot climb to where it counts.
+  const hopeless = scales.length > 0 && peak < floor;
+  for (const sign of hopeless ? [] : [-1, 1]) {
     for (let k = 1; k <= MAX_SCALE_STEPS; k++) if (!visit(centre + sign * k * step)) break;
   }
   const coordinates = Float64Array.from(start);
