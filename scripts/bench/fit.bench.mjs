@@ -73,6 +73,7 @@ async function compare(family, x, z, peer, repetitions) {
   const warm = ours();
   const lines = [
     `${family}, ${n} points: range ${warm.fit.parameters.rangeKm.toFixed(1)} km, ${warm.fit.iterations} steps.`,
+    '',
   ];
   if (peer === null) {
     const seconds = Array.from({ length: repetitions }, () => ours().seconds);
