@@ -1,4 +1,5 @@
 import type { FittedField, Isoscape } from './isoscape.js';
+import { scaleBoundReached } from './sampling-scale.js';
 
 /** Sentences a person should read beside a fit: what was assumed, chosen, or could not be told. */
 export function describeFit(isoscape: Isoscape, stationsOfUnknownRecords: number): string[] {
@@ -46,8 +47,9 @@ function samplingNotes(isoscape: Isoscape, unknown: number): string[] {
       `${unknown} stations do not give a number of records: the smallest known number was used for them`,
     );
   }
-  if (isoscape.samplingScaleFitted && isoscape.samplingScale >= 1) {
-    notes.push('the sampling scale was fitted and reached its upper bound, 1');
+  if (isoscape.samplingScaleFitted) {
+    const bound = scaleBoundReached(isoscape.samplingScale);
+    if (bound !== null) notes.push(`the sampling scale was fitted and reached its ${bound} bound`);
   }
   return notes;
 }

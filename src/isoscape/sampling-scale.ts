@@ -35,3 +35,9 @@ export function fitSamplingScale(profile: (scale: number) => number): number {
   const middle = Math.exp((low + high) / 2);
   return profile(1) >= profile(middle) ? 1 : middle;
 }
+
+/** Which bound of the search a fitted κ stands at, within the search's own tolerance. */
+export function scaleBoundReached(scale: number): string | null {
+  if (scale >= 1) return 'upper (1)';
+  return scale <= SCALE_LOW * (1 + 2 * SCALE_TOLERANCE) ? `lower (${SCALE_LOW})` : null;
+}
