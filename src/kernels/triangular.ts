@@ -121,33 +121,30 @@ function invertTransposed(l: Float64Array, n: number, u: Float64Array): void {
 
 /** Element k of rows j..j+3 of L⁻ᵀ from their elements before k. */
 function extendFourRows(l: Float64Array, n: number, u: Float64Array, j: number, k: number): void {
-  const row = k * n;
-  const u0 = j * n;
-  const u1 = u0 + n;
-  const u2 = u1 + n;
-  const u3 = u2 + n;
-  let s0 = 0;
-  let s1 = 0;
-  let s2 = 0;
-  let s3 = 0;
-  for (let m = j; m < k; m++) {
-    const x = l[row + m];
-    s0 += x * u[u0 + m];
-    s1 += x * u[u1 + m];
-    s2 += x * u[u2 + m];
-    s3 += x * u[u3 + m];
-  }
-  const scale = -1 / l[row + k];
-  u[u0 + k] = s0 * scale;
-  u[u1 + k] = s1 * scale;
-  u[u2 + k] = s2 * scale;
-  u[u3 + k] = s3 * scale;
+  fourDots(l, k * n, u, j * n, n, j, k);
+  const scale = -1 / l[k * n + k];
+  for (let r = 0; r < 4; r++) u[(j + r) * n + k] = sums[r] * scale;
 }
 
 /** out[i][j..j+3] = Σ_{k≥i} U[i][k]·U[j..][k]. */
 function dotFourRows(u: Float64Array, n: number, i: number, j: number, out: Float64Array): void {
-  const row = i * n;
-  const u0 = j * n;
+  fourDots(u, i * n, u, j * n, n, i, n);
+  for (let r = 0; r < 4; r++) out[i * n + j + r] = sums[r];
+}
+
+/** Results of `fourDots`; safe as one array, since nothing else runs between writing and reading it. */
+const sums = new Float64Array(4);
+
+/** Dot products of one row of x with four consecutive rows of u, elements from..to−1: each x is loaded once. */
+function fourDots(
+  x: Float64Array,
+  xRow: number,
+  u: Float64Array,
+  u0: number,
+  n: number,
+  from: number,
+  to: number,
+): void {
   const u1 = u0 + n;
   const u2 = u1 + n;
   const u3 = u2 + n;
@@ -155,15 +152,15 @@ function dotFourRows(u: Float64Array, n: number, i: number, j: number, out: Floa
   let s1 = 0;
   let s2 = 0;
   let s3 = 0;
-  for (let k = i; k < n; k++) {
-    const x = u[row + k];
-    s0 += x * u[u0 + k];
-    s1 += x * u[u1 + k];
-    s2 += x * u[u2 + k];
-    s3 += x * u[u3 + k];
+  for (let k = from; k < to; k++) {
+    const value = x[xRow + k];
+    s0 += value * u[u0 + k];
+    s1 += value * u[u1 + k];
+    s2 += value * u[u2 + k];
+    s3 += value * u[u3 + k];
   }
-  out[row + j] = s0;
-  out[row + j + 1] = s1;
-  out[row + j + 2] = s2;
-  out[row + j + 3] = s3;
+  sums[0] = s0;
+  sums[1] = s1;
+  sums[2] = s2;
+  sums[3] = s3;
 }

@@ -1,3 +1,5 @@
+import { seededUniform } from '../reference/seeded.js';
+
 /**
  * An invented network in open ocean (longitudes −34 to −26, latitudes −50 to −42), drawn from a known
  * truth with a seed: trend in latitude and elevation, a smooth residual, sampling errors along a steeper slope.
@@ -35,7 +37,7 @@ const RECORD_CORRELATION = 0.98;
 
 export function inventNetwork(options: InventedNetworkOptions = {}): InventedNetwork {
   const { seed = 1, stationCount = 40, recordCount = 48, table = 'means' } = options;
-  const random = seededRandom(seed);
+  const random = seededUniform(seed);
   const normal = () => Math.sqrt(-2 * Math.log(1 - random())) * Math.cos(2 * Math.PI * random());
   const waves = Array.from({ length: 6 }, () => ({
     kx: 0.6 * normal(),
@@ -122,18 +124,6 @@ function recordError(normal: () => number): [number, number] {
   const b = normal();
   const mixed = RECORD_CORRELATION * a + Math.sqrt(1 - RECORD_CORRELATION ** 2) * b;
   return [RECORD_SD_D18O * a, RECORD_SD_D2H * mixed];
-}
-
-/** Mulberry32 (a public-domain 32-bit generator): the same numbers on every machine. */
-export function seededRandom(seed: number): () => number {
-  let state = seed >>> 0;
-  return () => {
-    state = (state + 0x6d2b79f5) >>> 0;
-    let t = state;
-    t = Math.imul(t ^ (t >>> 15), t | 1);
-    t ^= t + Math.imul(t ^ (t >>> 7), t | 61);
-    return ((t ^ (t >>> 14)) >>> 0) / 4294967296;
-  };
 }
 
 function round(value: number, digits: number): number {
