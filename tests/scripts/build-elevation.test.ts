@@ -1,14 +1,15 @@
 // The bundled grid is generated: where its source is at hand, it is generated anew and must come out the same.
 import { execFileSync } from 'node:child_process';
-import { existsSync, readFileSync } from 'node:fs';
+import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
-import { describe, expect, it } from 'vitest';
+import { expect, it } from 'vitest';
+import { describeWithFile } from '../support/outside-tool.js';
 import { scratchFolder } from '../support/scratch.js';
 
 /** Of the Debian package ferret-datasets. */
 const SOURCE = '/usr/share/ferret-vis/data/etopo5.cdf';
 
-describe.skipIf(!existsSync(SOURCE))('scripts/build-elevation.mjs', () => {
+describeWithFile(SOURCE, 'scripts/build-elevation.mjs', () => {
   const folder = scratchFolder();
   it('makes the cells of the bundled grid', () => {
     const said = execFileSync(
