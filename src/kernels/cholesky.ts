@@ -1,4 +1,5 @@
 import { RainprintError } from '../errors.js';
+import { sums, tileDots } from './tile.js';
 
 /** Columns eliminated together: a panel of 48 columns of 1,000 rows (384 kB) stays in the second-level cache. */
 const PANEL_COLUMNS = 48;
@@ -51,54 +52,19 @@ function updateTrailing(a: Float64Array, n: number, start: number, end: number):
   let i = end;
   for (; i + 1 < n; i += 2) {
     let j = end;
-    for (; j + 3 <= i; j += 4) subtractTile2x4(a, n, i, j, start, end);
+    for (; j + 3 <= i; j += 4) {
+      tileDots(a, i * n, a, j * n, n, start, end);
+      for (let c = 0; c < 4; c++) {
+        a[i * n + j + c] -= sums[c];
+        a[(i + 1) * n + j + c] -= sums[4 + c];
+      }
+    }
     for (; j <= i + 1; j++) {
       if (j <= i) a[i * n + j] -= dot(a, i * n, a, j * n, start, end);
       a[(i + 1) * n + j] -= dot(a, (i + 1) * n, a, j * n, start, end);
     }
   }
   if (i < n) for (let j = end; j <= i; j++) a[i * n + j] -= dot(a, i * n, a, j * n, start, end);
-}
-
-function subtractTile2x4(a: Float64Array, n: number, i: number, j: number, start: number, end: number): void {
-  const i0 = i * n;
-  const i1 = i0 + n;
-  const j0 = j * n;
-  const j1 = j0 + n;
-  const j2 = j1 + n;
-  const j3 = j2 + n;
-  let s00 = 0;
-  let s01 = 0;
-  let s02 = 0;
-  let s03 = 0;
-  let s10 = 0;
-  let s11 = 0;
-  let s12 = 0;
-  let s13 = 0;
-  for (let k = start; k < end; k++) {
-    const x0 = a[i0 + k];
-    const x1 = a[i1 + k];
-    const y0 = a[j0 + k];
-    const y1 = a[j1 + k];
-    const y2 = a[j2 + k];
-    const y3 = a[j3 + k];
-    s00 += x0 * y0;
-    s01 += x0 * y1;
-    s02 += x0 * y2;
-    s03 += x0 * y3;
-    s10 += x1 * y0;
-    s11 += x1 * y1;
-    s12 += x1 * y2;
-    s13 += x1 * y3;
-  }
-  a[i0 + j] -= s00;
-  a[i0 + j + 1] -= s01;
-  a[i0 + j + 2] -= s02;
-  a[i0 + j + 3] -= s03;
-  a[i1 + j] -= s10;
-  a[i1 + j + 1] -= s11;
-  a[i1 + j + 2] -= s12;
-  a[i1 + j + 3] -= s13;
 }
 
 /** Σ_k x[xOffset + k]·y[yOffset + k] for start ≤ k < end, in four partial sums. */

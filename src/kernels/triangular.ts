@@ -1,4 +1,5 @@
 import { dot } from './cholesky.js';
+import { sums, tileDots } from './tile.js';
 
 /**
  * Solves L·x = b in place for one right-hand side.
@@ -94,73 +95,62 @@ function scaleRow(b: Float64Array, width: number, row: number, factor: number): 
  */
 export function inverseFromCholesky(l: Float64Array, n: number, work: Float64Array, out: Float64Array): void {
   invertTransposed(l, n, work);
-  for (let i = 0; i < n; i++) {
+  for (let i = 0; i < n; i += 2) {
+    const pair = i + 1 < n;
     let j = 0;
-    for (; j + 3 <= i; j += 4) dotFourRows(work, n, i, j, out);
-    for (; j <= i; j++) out[i * n + j] = dot(work, i * n, work, j * n, i, n);
+    for (; pair && j + 3 <= i; j += 4) multiplyTile(work, n, i, j, out);
+    for (; j <= i; j++) {
+      out[i * n + j] = dot(work, i * n, work, j * n, i, n);
+      if (pair) out[(i + 1) * n + j] = dot(work, (i + 1) * n, work, j * n, i + 1, n);
+    }
+    if (pair) out[(i + 1) * n + i + 1] = dot(work, (i + 1) * n, work, (i + 1) * n, i + 1, n);
   }
   for (let i = 0; i < n; i++) for (let j = 0; j < i; j++) out[j * n + i] = out[i * n + j];
 }
 
+/** out[i..i+1][j..j+3] = Σ_k U[i..][k]·U[j..][k]; row i + 1 of U is 0 in column i. */
+function multiplyTile(u: Float64Array, n: number, i: number, j: number, out: Float64Array): void {
+  tileDots(u, i * n, u, j * n, n, i, n);
+  for (let c = 0; c < 4; c++) {
+    out[i * n + j + c] = sums[c];
+    out[(i + 1) * n + j + c] = sums[4 + c];
+  }
+}
+
+/** L⁻ᵀ, row by row, zeros left of the diagonal. */
 function invertTransposed(l: Float64Array, n: number, u: Float64Array): void {
   let j = 0;
   for (; j + 3 < n; j += 4) {
     u.fill(0, j * n, (j + 4) * n);
     for (let r = j; r < j + 4; r++) {
       u[r * n + r] = 1 / l[r * n + r];
-      for (let k = r + 1; k < j + 4; k++) u[r * n + k] = -dot(l, k * n, u, r * n, r, k) / l[k * n + k];
+      for (let k = r + 1; k < j + 4; k++) extendRow(l, n, u, r, k);
     }
-    for (let k = j + 4; k < n; k++) extendFourRows(l, n, u, j, k);
+    let k = j + 4;
+    for (; k + 1 < n; k += 2) extendTile(l, n, u, j, k);
+    for (; k < n; k++) for (let r = j; r < j + 4; r++) extendRow(l, n, u, r, k);
   }
   for (; j < n; j++) {
     u.fill(0, j * n, (j + 1) * n);
     u[j * n + j] = 1 / l[j * n + j];
-    for (let k = j + 1; k < n; k++) u[j * n + k] = -dot(l, k * n, u, j * n, j, k) / l[k * n + k];
+    for (let k = j + 1; k < n; k++) extendRow(l, n, u, j, k);
   }
 }
 
-/** Element k of rows j..j+3 of L⁻ᵀ from their elements before k. */
-function extendFourRows(l: Float64Array, n: number, u: Float64Array, j: number, k: number): void {
-  fourDots(l, k * n, u, j * n, n, j, k);
+/** Element k of row r of L⁻ᵀ from its elements before k. */
+function extendRow(l: Float64Array, n: number, u: Float64Array, r: number, k: number): void {
+  u[r * n + k] = -dot(l, k * n, u, r * n, r, k) / l[k * n + k];
+}
+
+/** Elements k and k + 1 of rows j..j+3 of L⁻ᵀ from their elements before k. */
+function extendTile(l: Float64Array, n: number, u: Float64Array, j: number, k: number): void {
+  tileDots(l, k * n, u, j * n, n, j, k);
   const scale = -1 / l[k * n + k];
-  for (let r = 0; r < 4; r++) u[(j + r) * n + k] = sums[r] * scale;
-}
-
-/** out[i][j..j+3] = Σ_{k≥i} U[i][k]·U[j..][k]. */
-function dotFourRows(u: Float64Array, n: number, i: number, j: number, out: Float64Array): void {
-  fourDots(u, i * n, u, j * n, n, i, n);
-  for (let r = 0; r < 4; r++) out[i * n + j + r] = sums[r];
-}
-
-/** Results of `fourDots`; safe as one array, since nothing else runs between writing and reading it. */
-const sums = new Float64Array(4);
-
-/** Dot products of one row of x with four consecutive rows of u, elements from..to−1: each x is loaded once. */
-function fourDots(
-  x: Float64Array,
-  xRow: number,
-  u: Float64Array,
-  u0: number,
-  n: number,
-  from: number,
-  to: number,
-): void {
-  const u1 = u0 + n;
-  const u2 = u1 + n;
-  const u3 = u2 + n;
-  let s0 = 0;
-  let s1 = 0;
-  let s2 = 0;
-  let s3 = 0;
-  for (let k = from; k < to; k++) {
-    const value = x[xRow + k];
-    s0 += value * u[u0 + k];
-    s1 += value * u[u1 + k];
-    s2 += value * u[u2 + k];
-    s3 += value * u[u3 + k];
+  const coupling = l[(k + 1) * n + k];
+  const nextScale = -1 / l[(k + 1) * n + k + 1];
+  for (let c = 0; c < 4; c++) {
+    const value = sums[c] * scale;
+    u[(j + c) * n + k] = value;
+    u[(j + c) * n + k + 1] = (sums[4 + c] + coupling * value) * nextScale;
   }
-  sums[0] = s0;
-  sums[1] = s1;
-  sums[2] = s2;
-  sums[3] = s3;
 }
