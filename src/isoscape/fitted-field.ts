@@ -33,6 +33,8 @@ export function finishField(
     coefficientCovariance: system.coefficientCovariance(),
     nodes: parameterNodes(geometry, family, values, errorVariance, fit),
     boundsReached: fit.boundsReached,
-    longRangeLimit: fit.parameters.rangeKm >= geometry.diameterKm && fit.parameters.sill > 0,
+    // A range the user holds does not run away.
+    longRangeLimit:
+      fixed.rangeKm === undefined && fit.parameters.rangeKm >= geometry.diameterKm && fit.parameters.sill > 0,
   };
 }

@@ -1,5 +1,11 @@
 import { booleanPointInPolygon, convex, featureCollection, point } from '@turf/turf';
-import { chordKm, greatCircleKm, practicalRangeKm } from '../geostat/index.js';
+import {
+  chordKm,
+  distanceKm,
+  greatCircleKm,
+  positionsOnSphereKm,
+  practicalRangeKm,
+} from '../geostat/index.js';
 import type { FittedField, Isoscape, StationColumns, SupportLimits } from './isoscape.js';
 
 /** Why a prediction leans on little (design section 3). */
@@ -19,9 +25,14 @@ const LATITUDE_MARGIN_DEG = 1;
 const GNOMONIC_LIMIT_DEG = 85;
 const RAD = Math.PI / 180;
 
+/** Share of stations whose nearest neighbour sets the network's usual spacing: a few astray do not stretch it. */
+const SPACING_QUANTILE = 0.9;
+
 /**
- * Thresholds from the network and the fitted fields. Far from stations: beyond the largest spacing of neighbouring
- * stations *and* beyond the distance at which one of the fields has lost its correlation with the nearest one.
+ * Thresholds from the network and the fitted fields. Far from stations: beyond the usual spacing of neighbouring
+ * stations *and* beyond the distance at which one of the fields has lost its correlation with the nearest one, or
+ * half the width of the network where that is less (a range that runs away supports nothing out there). Quantiles,
+ * so that one station at a wrong place does not silence the flag.
  */
 export function supportLimits(
   stations: StationColumns,
@@ -29,8 +40,9 @@ export function supportLimits(
   fields: readonly Pick<FittedField, 'parameters'>[],
 ): SupportLimits {
   const shortest = Math.min(...fields.map((field) => practicalRangeKm(family, field.parameters.rangeKm)));
+  const spacingKm = quantile(neighbourSpacingsKm(stations), SPACING_QUANTILE);
   return {
-    farFromStationsKm: Math.max(largestNeighbourSpacingKm(stations), shortest),
+    farFromStationsKm: Math.max(spacingKm, Math.min(shortest, halfWidthKm(stations))),
     elevationMinM: stations.elevationM.reduce((a, b) => Math.min(a, b)),
     elevationMaxM: stations.elevationM.reduce((a, b) => Math.max(a, b)),
     latitudeMinDeg: stations.latDeg.reduce((a, b) => Math.min(a, b)),
@@ -38,16 +50,31 @@ export function supportLimits(
   };
 }
 
-function largestNeighbourSpacingKm({ lonDeg, latDeg }: StationColumns): number {
-  let largest = 0;
-  for (let i = 0; i < lonDeg.length; i++) {
+/** Distance of every station to its nearest other one, km. */
+function neighbourSpacingsKm({ lonDeg, latDeg }: StationColumns): Float64Array {
+  return lonDeg.map((_, i) => {
     let nearest = Number.POSITIVE_INFINITY;
     for (let j = 0; j < lonDeg.length; j++) {
       if (j !== i) nearest = Math.min(nearest, chordKm(lonDeg[i], latDeg[i], lonDeg[j], latDeg[j]));
     }
-    largest = Math.max(largest, nearest);
-  }
-  return largest;
+    return nearest;
+  });
+}
+
+/** Median distance of the stations from the network's middle (coordinate-wise median of their positions), km. */
+function halfWidthKm({ lonDeg, latDeg }: StationColumns): number {
+  const positions = positionsOnSphereKm(lonDeg, latDeg);
+  const coordinate = (axis: number) => lonDeg.map((_, i) => positions[3 * i + axis]);
+  const middle = Float64Array.from([0, 1, 2], (axis) => quantile(coordinate(axis), 0.5));
+  return quantile(
+    lonDeg.map((_, i) => distanceKm(positions, i, middle, 0, 'euclidean')),
+    0.5,
+  );
+}
+
+/** The sorted value at a share of the way, the upper of two. */
+function quantile(values: Float64Array, share: number): number {
+  return Float64Array.from(values).sort()[Math.min(values.length - 1, Math.floor(share * values.length))];
 }
 
 export interface Support {
