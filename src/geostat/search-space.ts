@@ -7,8 +7,8 @@ export type FixedParameters = Partial<FieldParameters>;
 
 /**
  * Box of the stated prior, also the bounds of the search: uniform in ln range from half the smallest spacing to
- * twice the network's diameter; uniform in the nugget's share of sill + nugget; for sill + nugget, around the variance
- * left by ordinary least squares, that of averaging/scale-prior.ts. The bounds are common practice, no source.
+ * twice the network's diameter; uniform in the square root of the nugget's share of sill + nugget; for sill + nugget,
+ * around the variance left by ordinary least squares, that of averaging/scale-prior.ts. The bounds are common practice, no source.
  */
 const RANGE_LOW_SPACINGS = 0.5;
 const RANGE_HIGH_DIAMETERS = 2;

@@ -1,7 +1,8 @@
 /**
  * The average over covariance parameters a second time: brute quadrature of restricted likelihood × stated prior over
- * the whole box of the search space, nothing of src but the box itself. The prior is uniform in ln range, nugget share
- * and, with t = sill + nugget and e the known error variance, ln(t + e), which is Jeffreys' prior for one known e. The known error variance is the same at every
+ * the whole box of the search space, nothing of src but the box itself. The prior is uniform in ln range, the
+ * square root of the nugget share and, with t = sill + nugget and e the known error variance, ln(t + e), which is
+ * Jeffreys' prior for one known e. The known error variance is the same at every
  * station, so that one eigendecomposition of the correlations a range serves every sill and nugget.
  */
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
@@ -53,7 +54,7 @@ export function bruteMixture(
   };
   const range = windowOf('lnRange', counts.range);
   const total = windowOf('lnTotal', counts.total);
-  const share = windowOf('nuggetShare', counts.share);
+  const share = rootOf(windowOf('nuggetShare', counts.share));
   const windows = [range, total, share];
   let grid = evaluate(problem, range, total, share);
   for (let zoom = 0; zoom < MAX_ZOOMS; zoom++) {
@@ -83,7 +84,8 @@ function evaluate(problem: AveragingProblem, range: Window, total: Window, share
   const points: GridPoint[] = [];
   rotations.forEach((rotated, r) => {
     midpoints(total).forEach((lnTotal, t) => {
-      midpoints(share).forEach((s, k) => {
+      midpoints(share).forEach((root, k) => {
+        const s = root ** 2;
         const sum = Math.exp(lnTotal);
         const { restricted } = solve(problem, rotated, sum, s);
         const logPrior = Math.log(sum / (sum + problem.errorVariance));
@@ -92,6 +94,10 @@ function evaluate(problem: AveragingProblem, range: Window, total: Window, share
     });
   });
   return { rotations, points };
+}
+
+function rootOf({ low, high, points }: Window): Window {
+  return { low: Math.sqrt(low), high: Math.sqrt(high), points };
 }
 
 function shrink(window: Window, grid: Grid, axis: number): boolean {

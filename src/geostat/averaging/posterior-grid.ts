@@ -41,8 +41,8 @@ interface AxisWindow {
   /** Index in the search space, or −1 where the parameter is fixed. */
   readonly axis: number;
   readonly points: number;
-  /** Points crowd towards `low` (as squares): where the box ends at nugget 0 the density often peaks there. */
-  graded: boolean;
+  /** Points are even in the square root of the parameter, as the prior of the nugget share is. */
+  readonly isRoot: boolean;
   low: number;
   high: number;
 }
@@ -54,11 +54,12 @@ interface Cell extends ScaleIntegral {
 }
 
 /**
- * Dense quadrature of the posterior of the covariance parameters: restricted likelihood times a prior uniform in
- * ln range and nugget share over the search box, with that of `logScalePrior` for the scale. Midpoints over a window
- * of ln range and of the nugget share (moved until its edges hold less than a thousandth of the peak, or reach the
- * box); in each cell the scale is integrated by the trapezoidal rule, walking outward until the density has fallen
- * (skewed where few stations set it, flat where sampling errors do).
+ * Dense quadrature of the posterior of the covariance parameters: restricted likelihood times the prior. Over the
+ * search box that is uniform in ln range; uniform in the square root of the nugget's share, which is its share of the
+ * standard deviation (a standard deviation has a sensible uniform prior at 0, a variance has not: Gelman 2006, Bayesian
+ * Anal. 1:515–534); and `logScalePrior` for the scale. Midpoints over a window of the first two (moved until its edges
+ * hold less than a thousandth of the peak, or reach the box); in each cell the scale is integrated by the trapezoidal
+ * rule, walking outward until the density has fallen (skewed where few stations set it, flat where sampling errors do).
  *
  * Deterministic. Weights sum to 1.
  */
@@ -77,7 +78,7 @@ export function posteriorGrid(
   const evaluate = (r: AxisWindow, s: AxisWindow) =>
     evaluateCells(likelihood, z, errorVariance, fit, r, s, scaleAxis, rule);
   // One axis at a time through the optimum first, which is cheap; then the whole, whose ridge may need more room.
-  const held: AxisWindow = { axis: -1, points: 1, graded: false, low: 0, high: 0 };
+  const held: AxisWindow = { axis: -1, points: 1, isRoot: false, low: 0, high: 0 };
   moveUntilSettled([range], () => evaluate(range, held), space, MAX_LINE_MOVES);
   moveUntilSettled([share], () => evaluate(held, share), space, MAX_LINE_MOVES);
   const cells = moveUntilSettled([range, share], () => evaluate(range, share), space, MAX_WINDOW_MOVES);
@@ -101,7 +102,7 @@ function moveUntilSettled(
 
 function firstWindow(fit: FieldFit, name: 'lnRange' | 'nuggetShare', points: number): AxisWindow {
   const axis = fit.space.axes.findIndex((candidate) => candidate.name === name);
-  if (axis < 0) return { axis, points: 1, graded: false, low: 0, high: 0 };
+  if (axis < 0) return { axis, points: 1, isRoot: false, low: 0, high: 0 };
   const bounds = fit.space.axes[axis];
   const width = fit.space.axes.length;
   const information = fit.information[axis * width + axis];
@@ -109,27 +110,28 @@ function firstWindow(fit: FieldFit, name: 'lnRange' | 'nuggetShare', points: num
   const mode = fit.coordinates[axis];
   const low = Math.max(bounds.low, mode - WINDOW_SDS * sd);
   const high = Math.min(bounds.high, mode + WINDOW_SDS * sd);
-  return { axis, points, graded: name === 'nuggetShare' && low === bounds.low, low, high };
+  return { axis, points, isRoot: name === 'nuggetShare', low, high };
 }
 
 interface AxisPoint {
   readonly value: number;
-  /** ln of the width it stands for; 0 where the parameter is fixed. */
+  /** ln of the prior mass it stands for, up to a constant; 0 where the parameter is fixed. */
   readonly logWidth: number;
 }
 
 function midpoints(window: AxisWindow): AxisPoint[] {
   if (window.axis < 0) return [{ value: Number.NaN, logWidth: 0 }];
-  return Array.from({ length: window.points }, (_, i) => ({
-    value: positionIn(window, i + 0.5),
-    logWidth: Math.log(positionIn(window, i + 1) - positionIn(window, i)),
-  }));
+  const { low, high, points, isRoot } = window;
+  const width = isRoot ? Math.sqrt(high) - Math.sqrt(low) : high - low;
+  const logWidth = Math.log(width / points);
+  return Array.from({ length: points }, (_, i) => ({ value: positionIn(window, i + 0.5), logWidth }));
 }
 
 /** Value at a share i/points of the window. */
-function positionIn({ low, high, points, graded }: AxisWindow, i: number): number {
+function positionIn({ low, high, points, isRoot }: AxisWindow, i: number): number {
   const share = i / points;
-  return low + (high - low) * (graded ? share * share : share);
+  if (!isRoot) return low + (high - low) * share;
+  return (Math.sqrt(low) + (Math.sqrt(high) - Math.sqrt(low)) * share) ** 2;
 }
 
 function evaluateCells(
@@ -205,7 +207,6 @@ function adjustWindow(window: AxisWindow, profile: readonly number[], space: Sea
     window.low = from;
     window.high = to;
   }
-  window.graded = space.axes[window.axis].name === 'nuggetShare' && window.low === bounds.low;
   return window.low < low || window.high > high || window.high - window.low < 0.7 * width;
 }
 

@@ -56,8 +56,16 @@ function boundedSd(sd: number): number {
 }
 
 /**
+ * What ln likelihood gains at most by rescaling the whole covariance, from zᵀQz at the last evaluation: ½(q − n − n
+ * ln(q/n)). A guess carried over from another range may stand far from this cell's scale; its own value says little.
+ */
+function rescalingGain(quadratic: number, n: number): number {
+  return 0.5 * (quadratic - n - n * Math.log(quadratic / n));
+}
+
+/**
  * Trapezoidal rule over the scale, likelihood times prior, outward from a start until ln density has fallen below the
- * largest found; not at all where the start lies below `floor`.
+ * largest found; not at all where no scale can reach `floor`.
  */
 export function integrateScale(
   likelihood: FieldLikelihood,
@@ -89,8 +97,8 @@ export function integrateScale(
     return rising || logDensity > peak - rule.scaleFall;
   };
   visit(centre);
-  // A first look this far down (the guess is within a few deviations of the mode) cannot climb to where it counts.
-  const hopeless = scales.length > 0 && peak < floor;
+  const hopeless =
+    scales.length > 0 && peak + rescalingGain(likelihood.crossWithWeights(z), z.length) < floor;
   for (const sign of hopeless ? [] : [-1, 1]) {
     for (let k = 1; k <= MAX_SCALE_STEPS; k++) if (!visit(centre + sign * k * step)) break;
   }
