@@ -25,7 +25,16 @@ export interface StationFlags {
   readonly withinCorrelation: string;
 }
 
-/** Adds those options to a verb. */
+const COLUMNS_HELP = `
+Columns are found by their headers (English, any case, units such as (m) or (permil) allowed), or
+named with --column MEANING=HEADER. The meanings:
+  every table        id, name (may be missing), lon, lat (decimal degrees), elevation (m), d18O,
+                     d2H (permil; with --isotope d18O or d2H that one alone is enough)
+  one row a record   date, or month (1-12) and year; precipitation (mm)
+  one row a station  n (number of records), sd_d18O, sd_d2H (standard deviations of records),
+                     se_d18O, se_d2H (standard errors of the means), season (such as 4-9)`;
+
+/** Adds those options to a verb, and to its help what a column may mean. */
 export function addStationOptions(command: Command): Command {
   return command
     .option(
@@ -42,11 +51,8 @@ export function addStationOptions(command: Command): Command {
     )
     .option('--min-records <n>', 'fewest records (or given n) of a station', '12')
     .option('--min-coverage <share>', "least share of the season's precipitation analysed, 0 to 1", '0.7')
-    .option(
-      '--within-correlation <r>',
-      'correlation assumed where a table gives standard deviations',
-      '0.98',
-    );
+    .option('--within-correlation <r>', 'correlation assumed where a table gives standard deviations', '0.98')
+    .addHelpText('after', COLUMNS_HELP);
 }
 
 /** The flags as options of `readNetwork`. Throws OPTION_INVALID naming the flag. */

@@ -13,7 +13,7 @@ import { type CheckedColumns, type JudgedStations, StationJudge } from './statio
 import { RowReader, type StationRow } from './station-row.js';
 import { StationState } from './station-state.js';
 import { STATION_PLACE, STATION_VOCABULARY, type StationMeaning } from './station-vocabulary.js';
-import { DELIMITER_NAMES, openTable, requireColumn, type Table } from './table/index.js';
+import { DELIMITER_NAMES, openTable, requireColumns, type Table } from './table/index.js';
 import { networkWarnings } from './warnings.js';
 
 const ROWS_PER_PROGRESS = 5_000;
@@ -73,12 +73,14 @@ async function openStationTable(
   const needed: StationMeaning[] = ['id', 'lon', 'lat', 'elevation'];
   if (settings.isotopes !== 'd2H') needed.push('d18O');
   if (settings.isotopes !== 'd18O') needed.push('d2H');
-  const other = table.columns.has('d18O') ? 'd18O' : 'd2H';
-  const hint = settings.isotopes === 'both' ? `, or use one isotope alone (--isotope ${other})` : '';
-  for (const meaning of needed) {
-    const isIsotope = meaning === 'd18O' || meaning === 'd2H';
-    requireColumn(table, STATION_VOCABULARY, meaning, isIsotope && table.columns.has(other) ? hint : '');
-  }
+  const given = (['d18O', 'd2H'] as const).filter((isotope) => table.columns.has(isotope));
+  const alone = settings.isotopes === 'both' && given.length === 1;
+  requireColumns(
+    table,
+    STATION_VOCABULARY,
+    needed,
+    alone ? `, or use one isotope alone (--isotope ${given[0]})` : '',
+  );
   return table;
 }
 

@@ -78,7 +78,7 @@ export const STATION_VOCABULARY: Vocabulary<StationMeaning> = {
   id: {
     kind: 'text',
     tiers: [
-      ['id', 'stationid', 'siteid', 'collectorid', 'gaugeid'],
+      ['id', 'stationid', 'siteid', 'gaugeid'],
       ['code', 'stationcode', 'sitecode', 'stationno', 'stationnumber'],
       ['station', 'site', 'collector', 'gauge'],
       ['name', 'stationname', 'sitename'],
@@ -95,20 +95,20 @@ export const STATION_VOCABULARY: Vocabulary<StationMeaning> = {
     kind: 'number',
     tiers: [
       withSuffixes(
-        ['longitude', 'lon', 'long', 'lng', 'decimallongitude'],
+        ['lon', 'long', 'lng', 'longitude', 'decimallongitude'],
         ['deg', 'dd', 'wgs84', 'degrees', '°'],
       ),
     ],
   },
   lat: {
     kind: 'number',
-    tiers: [withSuffixes(['latitude', 'lat', 'decimallatitude'], ['deg', 'dd', 'wgs84', 'degrees', '°'])],
+    tiers: [withSuffixes(['lat', 'latitude', 'decimallatitude'], ['deg', 'dd', 'wgs84', 'degrees', '°'])],
   },
   elevation: {
     kind: 'number',
     tiers: [
       withSuffixes(
-        ['elevation', 'elev', 'altitude', 'alt', 'height', 'masl'],
+        ['elev', 'elevation', 'alt', 'altitude', 'height', 'masl'],
         ['m', 'masl', 'meters', 'metres'],
       ),
     ],

@@ -43,7 +43,12 @@ const REFUSED: readonly [
     'DELIMITER_UNKNOWN',
     /"these are my stations"/,
   ],
-  ['numbers without a header', '1,2,3,4,5\n1,2,3,4,5\n', 'COLUMN_MISSING', /header has "1", "2"/],
+  [
+    'numbers without a header',
+    '1,2,3,4,5\n1,2,3,4,5\n',
+    'COLUMN_MISSING',
+    /id \(spelled.*lon .*d2H .*not used yet: "1", "2"/,
+  ],
   [
     'no latitude',
     'id,lon,elevation,d18O,d2H\nA,1,3,-8,-54\n',

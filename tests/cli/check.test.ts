@@ -2,7 +2,7 @@ import { existsSync, readFileSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { parse } from 'csv-parse/sync';
 import { describe, expect, it } from 'vitest';
-import type { CheckReport } from '../../src/stations/index.js';
+import { type CheckReport, STATION_VOCABULARY } from '../../src/stations/index.js';
 import { runCaptured } from '../support/captured-run.js';
 import { inventNetwork } from '../support/invented-network.js';
 import { scratchFolder } from '../support/scratch.js';
@@ -182,5 +182,25 @@ describe('rainprint check', () => {
     const { exitCode, stdout } = await runCaptured(['check', '--help']);
     expect(exitCode).toBe(0);
     expect(stdout).toContain('rainprint check records.csv --season 4-9');
+  });
+
+  it.each(['check', 'fit'])('names in the help of %s every meaning a column may have', async (verb) => {
+    const { stdout } = await runCaptured([verb, '--help']);
+    const columns = stdout.slice(stdout.indexOf('Columns are found'), stdout.indexOf('Examples:'));
+    for (const meaning of Object.keys(STATION_VOCABULARY)) {
+      expect(columns, meaning).toMatch(new RegExp(`\\b${meaning}\\b`));
+    }
+  });
+
+  it('names every missing column at once, short spellings first, and what else is there', async () => {
+    const table = fileOf('polish.csv', 'id,dlugosc,szerokosc,elevation,d18O,d2H,uwagi\nA,1,2,3,-8,-54,x\n');
+    const { exitCode, stderr } = await runCaptured(['check', table]);
+    expect(exitCode).toBe(2);
+    expect(stderr).toBe(
+      'rainprint: COLUMN_MISSING: no column for lon (spelled like lon, long, lng, longitude), ' +
+        'lat (spelled like lat, latitude, decimallatitude, latdeg); ' +
+        'columns not used yet: "dlugosc", "szerokosc", "uwagi"; ' +
+        'name them with --column lon=Header --column lat=Header\n',
+    );
   });
 });

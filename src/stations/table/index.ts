@@ -14,6 +14,7 @@ export {
   type PlaceMeanings,
   type RowProblem,
   requireColumn,
+  requireColumns,
   type Table,
   type TableFormat,
   type TableOptions,

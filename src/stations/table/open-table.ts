@@ -101,20 +101,43 @@ export async function openTable<M extends string>(
   };
 }
 
-/** @throws COLUMN_MISSING naming the meaning, common spellings, the header as read and the hint */
+/** The column of a meaning. @throws COLUMN_MISSING as `requireColumns` does */
 export function requireColumn<M extends string>(
   table: Table<M>,
   vocabulary: Vocabulary<M>,
   meaning: M,
-  hint = '',
 ): number {
-  const column = table.columns.get(meaning);
-  if (column !== undefined) return column;
+  requireColumns(table, vocabulary, [meaning]);
+  return table.columns.get(meaning)!;
+}
+
+const SPELLINGS_SHOWN = 4;
+
+/** @throws COLUMN_MISSING naming every meaning missing, common spellings, the columns not used yet, and the hint */
+export function requireColumns<M extends string>(
+  table: Table<M>,
+  vocabulary: Vocabulary<M>,
+  meanings: readonly M[],
+  hint = '',
+): void {
+  const missing = meanings.filter((meaning) => !table.columns.has(meaning));
+  if (missing.length === 0) return;
+  const wanted = missing.map((meaning) => {
+    const spellings = vocabulary[meaning].tiers[0].slice(0, SPELLINGS_SHOWN).join(', ');
+    return `${meaning} (spelled like ${spellings})`;
+  });
+  const used = new Set(table.columns.values());
+  const unused = table.header.filter((name, column) => !used.has(column) && name !== '');
+  const there =
+    unused.length === 0
+      ? `the header has ${quotedList(table.header)}, all used`
+      : `columns not used yet: ${quotedList(unused)}`;
+  const columns = missing.map((meaning) => `--column ${meaning}=Header`).join(' ');
   throw new RainprintError(
     'COLUMN_MISSING',
-    `no column for ${meaning} (spelled like ${vocabulary[meaning].tiers[0].slice(0, 4).join(', ')}); ` +
-      `the header has ${quotedList(table.header)}; name it with --column ${meaning}=Header${hint}`,
-    { meaning, header: table.header.slice(0, 30) },
+    `no column for ${wanted.join(', ')}; ${there}; ` +
+      `name ${missing.length === 1 ? 'it' : 'them'} with ${columns}${hint}`,
+    { meaning: missing[0], missing, header: table.header.slice(0, 30) },
   );
 }
 

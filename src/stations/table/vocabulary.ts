@@ -62,7 +62,10 @@ function squeezed(text: string): string {
   return text.replace(/delta|[δ∂]/g, 'd').replace(/[^\p{L}\p{N}‰°]/gu, '');
 }
 
-/** The spellings of a tier with each of the suffixes an expected unit may take without brackets (`elevation_m`). */
+/**
+ * The spellings of a tier with each of the suffixes an expected unit may take without brackets (`elevation_m`); plain
+ * ones first, as messages show the beginning of a tier.
+ */
 export function withSuffixes(keys: readonly string[], suffixes: readonly string[]): string[] {
-  return keys.flatMap((key) => [key, ...suffixes.map((suffix) => key + suffix)]);
+  return [...keys, ...keys.flatMap((key) => suffixes.map((suffix) => key + suffix))];
 }

@@ -54,6 +54,7 @@ describe('findColumns', () => {
       'd17O',
       'x',
       'y',
+      'collector_id',
     ],
     ...['d18O_flag', 'lat_sd', 'temperature', 'd18O lab uncertainty', '', ' '],
   ])('"%s" means nothing', (header) => expect(meaningOf(header)).toBeNull());
