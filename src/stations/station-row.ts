@@ -1,6 +1,13 @@
 import { dExcess } from '../isotope/index.js';
 import { D2H_BOUNDS, D18O_BOUNDS, isOutside, POSSIBLE_D_EXCESS } from './bounds.js';
-import { DATE_EXPECTED, parseDate, parseMonth, parseYear, type RecordDate } from './calendar.js';
+import {
+  DATE_EXPECTED,
+  MONTH_EXPECTED,
+  parseDate,
+  parseMonth,
+  parseYear,
+  type RecordDate,
+} from './calendar.js';
 import type { IssueLog } from './issue-log.js';
 import type { IsotopeChoice } from './network.js';
 import { type IssueReason, type IssueSeverity, REASONS } from './reasons.js';
@@ -103,7 +110,7 @@ export class RowReader {
     const none = { year: Number.NaN, month: Number.NaN, day: Number.NaN };
     const date = text.trim() === '' ? none : meaning === 'date' ? parseDate(text) : parseMonth(text);
     if (date === null) {
-      const expected = meaning === 'date' ? DATE_EXPECTED : '1 to 12, a month name, or a date';
+      const expected = meaning === 'date' ? DATE_EXPECTED : MONTH_EXPECTED;
       this.issue('date-unreadable', meaning, `${meaning} is ${shown(text)}; expected ${expected}`);
       return null;
     }

@@ -164,6 +164,17 @@ describe('records left out or flagged', () => {
     expect(issues[0].message).toMatch(/expected|usual|kept|asked|no |already|no weight/);
   });
 
+  it('says how to write a month it cannot read', async () => {
+    const rows = months(12).map((row, i) => (i === 0 ? { ...row, date: 'März' } : row));
+    const { issues } = await readStations(recordsTable(rows).replace(',date,', ',month,'), { minRecords: 1 });
+    expect(issues.map(({ reasonCode, message }) => [reasonCode, message])).toEqual([
+      [
+        'date-unreadable',
+        expect.stringMatching(/"März"; expected 1 to 12, an English month name .* 2014-03/),
+      ],
+    ]);
+  });
+
   it('passes a dry month without a word', async () => {
     const { issues, report } = await readStations(changed({ precipMm: '0', d18O: '', d2H: '' }));
     expect([issues.length, report.counts.rowsDry, report.counts.rowsLeftOut]).toEqual([0, 1, 0]);

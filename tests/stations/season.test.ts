@@ -48,6 +48,9 @@ describe('parseDate and its kin', () => {
     ['2005-07-15T06:00:00Z', 2005, 7, 15],
     ['15.07.2005', 2005, 7, 15],
     ['2004-02-29', 2004, 2, 29],
+    ['03/2014', 2014, 3, Number.NaN],
+    ['3-2014', 2014, 3, Number.NaN],
+    ['2014/03', 2014, 3, Number.NaN],
   ])('%s', (text, year, month, day) => expect(parseDate(text)).toEqual({ year, month, day }));
 
   it.each([
@@ -60,6 +63,9 @@ describe('parseDate and its kin', () => {
     'July 2005',
     '2005-00',
     '31.04.2005',
+    '13/2014',
+    '03/14',
+    '03/1400',
   ])('does not read "%s"', (text) => expect(parseDate(text)).toBeNull());
 
   it.each([
@@ -69,9 +75,15 @@ describe('parseDate and its kin', () => {
     ['Jul', 7],
     ['september', 9],
     ['2005-07', 7],
+    ['07/2005', 7],
+    ['Sept.', 9],
+    ['MAY', 5],
   ])('month %s', (text, month) => expect(parseMonth(text)?.month).toBe(month));
 
-  it.each(['0', '13', '7.5', 'summer', '-1'])('no month "%s"', (text) => expect(parseMonth(text)).toBeNull());
+  it.each([
+    ...['0', '13', '7.5', 'summer', '-1', 'ja', 'marchs'],
+    ...['marraskuu', 'Mai', 'mars', 'März', 'agosto', 'Juli'],
+  ])('no month "%s"', (text) => expect(parseMonth(text)).toBeNull());
 
   it('reads years strictly', () => {
     expect([parseYear('2005'), parseYear(' 2005.0 ')]).toEqual([2005, 2005]);

@@ -38,6 +38,8 @@ const PLAIN = /^-?\d{1,12}(?:\.\d{1,17})?$/;
 const WITH_POINT = /^[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?$/;
 const WITH_COMMA = /^[+-]?(?:\d+(?:,\d*)?|,\d+)(?:[eE][+-]?\d+)?$/;
 const GROUPED = /^[+-]?\d{1,3}(?:[.,'’\s]\d{3})+(?:[.,]\d+)?$/;
+/** Degrees with their sign, minutes or a side: 47°12, 47° 12' N, 12.5E, N 47. */
+const DEGREES = /^[NSEW]?\s*-?\d[\d.,]*\s*°|^[NSEW]\s*\d|^-?\d[\d.,\s'′"″]*[NSEW'′"″]$/i;
 
 /**
  * Reads one cell strictly: what could be meant in two ways is a problem, never a guess.
@@ -77,6 +79,10 @@ function problemOf(text: string, decimal: DecimalMark): NumberProblem {
       problem: 'thousands-separator',
       expected: `digits without thousands separators, decimal ${mark}`,
     };
+  }
+  if (DEGREES.test(text)) {
+    const expected = `decimal degrees such as 47${decimal}2 or -12${decimal}5, without minutes, signs or letters`;
+    return { problem: 'not-a-number', expected };
   }
   return { problem: 'not-a-number', expected: `a number with a decimal ${mark}, or an empty cell` };
 }

@@ -71,6 +71,19 @@ describe('parseNumber', () => {
     expect(parseNumber(cell, decimal)).toMatchObject({ problem });
   });
 
+  it.each(['47°12', '47° 12\' 30" N', '12.5 E', 'N47', '-47°', '47 12 30 S'])(
+    '%j: says decimal degrees',
+    (cell) =>
+      expect(parseNumber(cell, '.')).toMatchObject({
+        problem: 'not-a-number',
+        expected: expect.stringContaining('decimal degrees such as 47.2'),
+      }),
+  );
+
+  it.each(['12 m', '5 mm', 'abc', 'x°'])('%j: says nothing of degrees', (cell) =>
+    expect(parseNumber(cell, '.')).toMatchObject({ expected: expect.not.stringContaining('degrees') }),
+  );
+
   it('reads back every number written with either mark', () => {
     const cell = fc
       .double({ min: -1e6, max: 1e6, noNaN: true })
