@@ -1,6 +1,7 @@
 import { coverageAt } from '../geostat/scores.js';
 import { methodResult, type ValidationResult, type VariableResult } from '../isoscape/validation.js';
-import { fixed, levelText, percent, permil, textDecimals, VARIABLE_LABEL } from './wording.js';
+import { beatenTexts } from './beaten.js';
+import { fixed, levelText, percent, permil, sentence, textDecimals, VARIABLE_LABEL } from './wording.js';
 
 /** The scores in words, made of the same numbers as the tables: the gist, then what stands beside it. */
 export function summaryOf(validation: ValidationResult): { lead: string; points: string[] } {
@@ -15,6 +16,7 @@ export function summaryOf(validation: ValidationResult): { lead: string; points:
     points: [
       ...leaveOneOut.variables.map(againstBaselines),
       `With whole areas held out and the model refitted, the errors are ${blocked.variables.map(rmseText).join(', ')}.`,
+      ...beatenTexts(blocked, VARIABLE_LABEL).map(sentence),
     ],
   };
 }

@@ -1,6 +1,7 @@
 import { coverageAt } from '../../geostat/scores.js';
 import type { Isoscape } from '../../isoscape/index.js';
 import type { SchemeResult, ValidationResult } from '../../isoscape/validation.js';
+import { beatenTexts } from '../../report/beaten.js';
 import { levelsShown, levelText } from '../../report/wording.js';
 import { decimals, textTable } from '../text-table.js';
 
@@ -20,6 +21,10 @@ export function validationText(isoscape: Isoscape, result: ValidationResult): st
       `${result.stationCount} stations${averaged}\n`,
     schemeText('Leave-one-out', result.leaveOneOut, result.level),
     schemeText(`Blocked, ${result.folds.length} folds refitted`, result.blocked, result.level),
+    [result.leaveOneOut, result.blocked]
+      .flatMap((scheme) => beatenTexts(scheme, VARIABLE_LABEL))
+      .map((text) => `${text}\n`)
+      .join(''),
     outlyingText(result),
     result.notes.map((note) => `note: ${note}\n`).join(''),
   ]
