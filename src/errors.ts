@@ -56,6 +56,7 @@ export const ERROR_CODES = {
   SEASON_UNDECIDED: 'input',
   YEARS_INVALID: 'input',
   YEARS_NEED_DATES: 'input',
+  YEARS_NOT_IN_TABLE: 'input',
   // isoscape
   TERM_UNKNOWN: 'input',
   ISOTOPE_MISSING: 'input',

@@ -43,7 +43,7 @@ export async function readNetwork(
   const sampling =
     reading.layout === 'records'
       ? samplingOfRecords(judged.used, weighted)
-      : samplingOfMeans(judged.used, settings.isotopes, settings.withinCorrelation, log);
+      : samplingOfMeans(judged.used, settings.isotopes, settings.withinCorrelation, table.columns, log);
   const network = networkOf(reading, judged, sampling);
   flagSuspiciousCoordinates(network.stations, columns, log);
   await log.settle();
@@ -105,8 +105,8 @@ async function readRows(
     if (log.pending !== null) await log.settle();
   }
   onProgress?.(counts.rows, table.bytesRead());
-  if (!(book instanceof MeansBook)) return { layout, settings, stations, counts };
   book.end();
+  if (!(book instanceof MeansBook)) return { layout, settings, stations, counts };
   return { layout, settings: { ...settings, season: book.season }, stations, counts };
 }
 

@@ -14,6 +14,10 @@ export class RecordBook {
   readonly #inSeason: boolean[];
   readonly #weighted: boolean;
   readonly #dated: boolean;
+  /** Years of the records read; Infinity and −Infinity before there is one. */
+  #firstYear = Number.POSITIVE_INFINITY;
+  #lastYear = Number.NEGATIVE_INFINITY;
+  #inYears = 0;
 
   constructor(
     private readonly reader: RowReader,
@@ -51,6 +55,18 @@ export class RecordBook {
     if (amountMm > 0 && this.#weighted) station.amountAllMm += amountMm;
     if (!sound) return 'leftOut';
     return this.#average(row, station, date, amountMm);
+  }
+
+  /** @throws YEARS_NOT_IN_TABLE where records have years, and none lies in the years asked for */
+  end(): void {
+    const { years } = this.settings;
+    if (years === null || this.#inYears > 0 || this.#lastYear < this.#firstYear) return;
+    const covered = yearsText(this.#firstYear, this.#lastYear);
+    throw new RainprintError(
+      'YEARS_NOT_IN_TABLE',
+      `no record lies in ${yearsText(years.from, years.to)}; the table covers ${covered}`,
+      { from: years.from, to: years.to, firstYear: this.#firstYear, lastYear: this.#lastYear },
+    );
   }
 
   #average(row: StationRow, station: StationState, date: RecordDate, amountMm: number): RowOutcome {
@@ -149,7 +165,11 @@ export class RecordBook {
       );
       return 'leftOut';
     }
-    return date.year >= years.from && date.year <= years.to ? null : 'outsideYears';
+    this.#firstYear = Math.min(this.#firstYear, date.year);
+    this.#lastYear = Math.max(this.#lastYear, date.year);
+    if (date.year < years.from || date.year > years.to) return 'outsideYears';
+    this.#inYears++;
+    return null;
   }
 
   #seasonOutcome(date: RecordDate): RowOutcome | null {
@@ -166,6 +186,10 @@ export class RecordBook {
       `d-excess is ${excess.toFixed(1)} ‰; usual records lie in ${bounds}`,
     );
   }
+}
+
+function yearsText(from: number, to: number): string {
+  return from === to ? String(from) : `${from}-${to}`;
 }
 
 function refuseYears(): never {

@@ -3,6 +3,7 @@ import type { IssueLog } from './issue-log.js';
 import type { MeansValues } from './means-book.js';
 import type { IsotopeChoice, PairCovariance, SamplingKnowledge } from './network.js';
 import { type PooledWithin, poolWithin } from './pooled-within.js';
+import type { StationMeaning } from './station-vocabulary.js';
 import { shown } from './text-shown.js';
 
 /** What is known of the sampling errors, the stations that stay, and a sentence for the reader. */
@@ -42,12 +43,13 @@ export function samplingOfMeans(
   candidates: readonly Candidate[],
   choice: IsotopeChoice,
   correlation: number,
+  columns: { has(meaning: StationMeaning): boolean },
   log: IssueLog,
 ): Sampling {
   const varD18O = choice === 'd2H' ? Number.NaN : pooledVariance(candidates, (g) => [g.sdD18O, g.seD18O]);
   const varD2H = choice === 'd18O' ? Number.NaN : pooledVariance(candidates, (g) => [g.sdD2H, g.seD2H]);
   const known = (choice === 'd2H' || varD18O > 0) && (choice === 'd18O' || varD2H > 0);
-  if (!known) return unknownSampling(candidates, choice, 'the table gives no standard deviations with n');
+  if (!known) return unknownSampling(candidates, choice, whatIsMissing(choice, columns));
   const within: PairCovariance = [varD18O, correlation * Math.sqrt(varD18O * varD2H), varD2H];
   const counted = candidates.map((candidate) => withEffectiveRecords(candidate, varD18O, varD2H));
   const used = counted.filter((candidate) => candidate.mean.effectiveRecords > 0);
@@ -66,6 +68,28 @@ export function samplingOfMeans(
     pooled: null,
     note: `S pooled from the table's standard deviations${assumed}; S_total is taken as the same`,
   };
+}
+
+const SPREAD_COLUMNS = ['sd_d18O', 'sd_d2H', 'se_d18O', 'se_d2H'] as const;
+
+/** Which columns of spread and n there are and which are wanting, with the way to name them. */
+function whatIsMissing(choice: IsotopeChoice, columns: { has(meaning: StationMeaning): boolean }): string {
+  const found = [...SPREAD_COLUMNS, 'n' as const].filter((meaning) => columns.has(meaning));
+  if (!SPREAD_COLUMNS.some((meaning) => columns.has(meaning))) {
+    const n = columns.has('n') ? ' (n is there)' : '';
+    return `the table gives no standard deviations with n${n}`;
+  }
+  const isotopes = (['d18O', 'd2H'] as const).filter((isotope) => choice === 'both' || choice === isotope);
+  const lacking: StationMeaning[] = isotopes
+    .filter((isotope) => !columns.has(`sd_${isotope}`) && !columns.has(`se_${isotope}`))
+    .map((isotope) => `sd_${isotope}` as const);
+  // SD and SE of an isotope give n between them.
+  if (!columns.has('n') && !isotopes.every((i) => columns.has(`sd_${i}`) && columns.has(`se_${i}`)))
+    lacking.push('n');
+  if (lacking.length === 0)
+    return `${found.join(', ')} are there, but no station has all it takes (n above 1)`;
+  const named = lacking.map((meaning) => `--column ${meaning}=Header`).join(' ');
+  return `found ${found.join(', ')}, but not ${lacking.join(' and ')} (name what is there with ${named})`;
 }
 
 function unknownSampling(candidates: readonly Candidate[], choice: IsotopeChoice, why: string): Sampling {

@@ -102,6 +102,14 @@ describe('rainprint check', () => {
     expect(stdout).toContain('12 used of 12');
   });
 
+  it('asks no number of records of a table of means without n', async () => {
+    const table = meansTable(12);
+    const { stdout } = await runCaptured(['check', fileOf('no-n.csv', table.replace(/,(n|48)$/gm, ''))]);
+    expect(stdout).not.toContain('records a station');
+    const withN = await runCaptured(['check', fileOf('n.csv', table)]);
+    expect(withN.stdout).toMatch(/Asked +at least 12 records a station/);
+  });
+
   it('prints the first 50 rows of a reason and writes all to the list', async () => {
     const bad = Object.fromEntries(
       Array.from({ length: 60 }, (_, i) => [i, { id: `=M${i}`, d18O: '-8.1 permil' }]),

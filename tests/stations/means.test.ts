@@ -70,6 +70,40 @@ describe('tables of means', () => {
     expect(report.sampling.note).toContain('only 3 of 12 stations');
   });
 
+  it.each([
+    [
+      'n,sd_d18O',
+      '25,2',
+      'found sd_d18O, n, but not sd_d2H (name what is there with --column sd_d2H=Header)',
+    ],
+    [
+      'sd_d18O,sd_d2H',
+      '2,15',
+      'found sd_d18O, sd_d2H, but not n (name what is there with --column n=Header)',
+    ],
+    [
+      'se_d18O,Streuung',
+      '2,15',
+      'not sd_d2H and n (name what is there with --column sd_d2H=Header --column n=',
+    ],
+    ['n,sd_d18O,sd_d2H', '1,2,15', 'sd_d18O, sd_d2H, n are there, but no station has all it takes'],
+    ['sd_d18O,sd_d2H,se_d18O,se_d2H', '2,15,,', 'are there, but no station has all it takes'],
+    ['n', '25', 'the table gives no standard deviations with n (n is there)'],
+  ])('with %s alone: no S, and says what is missing', async (columns, cells, said) => {
+    const { network, report } = await readStations(
+      withColumns(columns, () => cells),
+      { minRecords: 1 },
+    );
+    expect(network.sampling.kind).toBe('none');
+    expect(report.sampling.note).toContain(said);
+  });
+
+  it('asks SD and n of the one isotope fitted, not of the other', async () => {
+    const table = withColumns('n,sd_d18O', () => '25,2');
+    const { network } = await readStations(table, { isotopes: 'd18O' });
+    expect(network.sampling.kind).toBe('standard-deviations');
+  });
+
   it('lists a spread or number of records that cannot be, and goes on without it', async () => {
     const table = withColumns('n,sd_d18O,sd_d2H', (i) => (i === 2 ? '-5,0,x' : '25,2,15'));
     expect(await issuesOf(table)).toEqual([

@@ -196,8 +196,17 @@ describe('records left out or flagged', () => {
   });
 
   it('lists a station whose records all lie outside the season', async () => {
-    const issues = await issuesOf(recordsTable(months(24)), { season: '4-9', years: '1990' });
+    const issues = await issuesOf(recordsTable(months(3)), { season: '4-9' });
     expect(issues).toEqual(['2 records-too-few left-out']);
+  });
+
+  it('refuses years no record lies in, and says which there are', async () => {
+    const reading = (years: string) => readStations(recordsTable(months(24)), { years, minRecords: 1 });
+    await expect(reading('1990-1995')).rejects.toMatchObject({
+      code: 'YEARS_NOT_IN_TABLE',
+      message: 'no record lies in 1990-1995; the table covers 2001-2002',
+    });
+    expect((await reading('2002-2030')).report.counts.rowsOutsideYears).toBe(12);
   });
 
   it('every row is averaged, left out, outside or dry: none is lost', async () => {

@@ -50,6 +50,8 @@ function factRows(report: CheckReport): [string, string][] {
   if (report.sampling.within !== null) rows.push(['S', withinText(report.sampling.within, report)]);
   if (report.sampling.withinTotal !== null)
     rows.push(['S_total', withinText(report.sampling.withinTotal, report)]);
+  // Nothing was asked of a table of means that does not say how many records are behind each.
+  if (report.layout === 'means' && table.columns.n === undefined) return rows;
   const share =
     report.averaging === 'amount-weighted' ? `, ${100 * thresholds.minCoverage} % of precipitation` : '';
   rows.push(['Asked', `at least ${thresholds.minRecords} records a station${share}`]);
