@@ -1,3 +1,4 @@
+import { extname } from 'node:path';
 import type { Command } from 'commander';
 import { RainprintError } from '../errors.js';
 import {
@@ -10,6 +11,7 @@ import {
   type Target,
 } from '../isoscape/index.js';
 import {
+  degreesText,
   type GridPlan,
   type GridResult,
   makeGrid,
@@ -44,7 +46,8 @@ Example, a quarter-degree grid over the antimeridian:
   rainprint grid rain.isoscape.json --bounds 170,-25,-170,-10 --cell 0.25 -o rain.tif
 
 Bands: d18O, d18O_se, d2H, d2H_se, dexcess, dexcess_se, cov_d18O_d2H (one isotope: its value and standard error);
-float32, nodata -9999 where there is no land. Each cell is predicted at its centre, at its own elevation.`;
+float32, nodata -9999 where there is no land, and where the
+trend runs to values that precipitation does not have (counted on standard error). Each cell is predicted at its centre, at its own elevation.`;
 
 export function registerGrid(program: Command, context: CliContext): void {
   program
@@ -67,10 +70,8 @@ async function runGrid(isoscapePath: string, flags: GridFlags, context: CliConte
   const isoscape = readIsoscape(await readInputText(isoscapePath, MAX_ISOSCAPE_BYTES));
   const elevationPath = flags.elevation ?? bundledElevationPath();
   if (plan.extended) {
-    const { westDeg, southDeg, eastDeg, northDeg } = plan;
-    context.stderr.write(
-      `rainprint: bounds moved outwards to whole cells: ${westDeg},${southDeg},${eastDeg},${northDeg}\n`,
-    );
+    const edges = [plan.westDeg, plan.southDeg, plan.eastDeg, plan.northDeg].map(degreesText).join(',');
+    context.stderr.write(`rainprint: bounds moved outwards to whole cells: ${edges}\n`);
   }
   const call = { plan, isoscape, target, plugIn: flags.plugIn === true, output: flags.output };
   const finished = await runInterruptible(async (signal) => {
@@ -107,6 +108,7 @@ async function writeGrid(
   const request = {
     plan,
     isotopes: isoscape.isotopes,
+    amountWeighted: isoscape.sampling.kind === 'records' && isoscape.sampling.amountWeighted,
     predict: (places: Places, out: Predictions) => predictPlaces(isoscape, places, out, { target, plugIn }),
     support: supportAsker(isoscape),
     placesPerTurn: placesPerTurn(isoscape),
@@ -131,8 +133,13 @@ function supportAsker(isoscape: Isoscape): SupportAsker {
 }
 
 function summary(path: string, result: GridResult): string {
-  const { width, height, landCells, flaggedCells, flags } = result;
-  const lines = [`${path}: ${width} × ${height} cells, ${landCells} of them land`];
+  const { width, height, landCells, impossibleCells, flaggedCells, flags } = result;
+  const lines = [`${path}: ${width} × ${height} cells, ${landCells + impossibleCells} of them land`];
+  if (impossibleCells > 0) {
+    lines.push(
+      `${impossibleCells} land cells are nodata: their values are beyond what precipitation has, the trend is extrapolated far beyond the stations`,
+    );
+  }
   if (flaggedCells > 0) {
     const reasons = Object.entries(flags).map(([flag, cells]) => `${flag} ${cells}`);
     lines.push(`${flaggedCells} land cells lean on little (${reasons.join(', ')}): read them with care`);
@@ -149,6 +156,13 @@ function parseTarget(text: string): Target {
 async function checkOutput(path: string, inputs: readonly string[]): Promise<void> {
   const output = await openOutput(path, inputs);
   await output.abort();
+  const extension = extname(path);
+  if (extension === '' || /^\.tiff?$/i.test(extension)) return;
+  throw new RainprintError(
+    'OUTPUT_PATH_INVALID',
+    `${path}: grid writes a GeoTIFF, whose name ends in .tif or .tiff, got "${extension}"`,
+    { path, extension },
+  );
 }
 
 function placesPerTurn(isoscape: Isoscape): number {

@@ -3,21 +3,26 @@ import { dExcess, dExcessVariance } from '../isotope/index.js';
 import type { BandDescription } from '../raster/index.js';
 import type { IsotopeChoice } from '../stations/index.js';
 
-const VALUE = 'amount-weighted mean of local rain, VSMOW-SLAP scale';
-const PAIR: readonly BandDescription[] = [
-  { name: 'd18O', unit: 'permil', longName: `δ18O, ${VALUE}` },
+const pair = (value: string): readonly BandDescription[] => [
+  { name: 'd18O', unit: 'permil', longName: `δ18O, ${value}` },
   { name: 'd18O_se', unit: 'permil', longName: 'standard error of δ18O' },
-  { name: 'd2H', unit: 'permil', longName: `δ2H, ${VALUE}` },
+  { name: 'd2H', unit: 'permil', longName: `δ2H, ${value}` },
   { name: 'd2H_se', unit: 'permil', longName: 'standard error of δ2H' },
   { name: 'dexcess', unit: 'permil', longName: 'd-excess, δ2H − 8·δ18O of the bands of this file' },
   { name: 'dexcess_se', unit: 'permil', longName: 'standard error of d-excess, from the joint error' },
   { name: 'cov_d18O_d2H', unit: 'permil2', longName: 'covariance of the errors of δ18O and δ2H' },
 ];
 
-/** Seven bands of a joint isoscape; value and standard error of a one-isotope isoscape. */
-export function gridBands(isotopes: IsotopeChoice): readonly BandDescription[] {
-  if (isotopes === 'both') return PAIR;
-  return PAIR.filter(({ name }) => name === isotopes || name === `${isotopes}_se`);
+/**
+ * Seven bands of a joint isoscape; value and standard error of a one-isotope isoscape.
+ *
+ * @param amountWeighted whether the station means are known to be weighted by amounts: a table of means does not say
+ */
+export function gridBands(isotopes: IsotopeChoice, amountWeighted: boolean): readonly BandDescription[] {
+  const mean = amountWeighted ? 'amount-weighted mean of local rain' : 'mean of local rain';
+  const bands = pair(`${mean}, VSMOW-SLAP scale`);
+  if (isotopes === 'both') return bands;
+  return bands.filter(({ name }) => name === isotopes || name === `${isotopes}_se`);
 }
 
 /**

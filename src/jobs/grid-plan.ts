@@ -72,12 +72,17 @@ export function planGrid(bounds: GridBounds, cellDeg: number): GridPlan {
   if (plan.eastDeg - westDeg > 360 + slackDeg || plan.southDeg < -90 - slackDeg) {
     throw new RainprintError(
       'CELL_INVALID',
-      `cells of ${cellDeg}° do not fit: whole cells would reach longitude ${plan.eastDeg} and latitude ${plan.southDeg}; choose a cell size that divides the extent, or smaller bounds`,
+      `cells of ${cellDeg}° do not fit: whole cells would reach longitude ${degreesText(plan.eastDeg)} and latitude ${degreesText(plan.southDeg)}; choose a cell size that divides the extent, or smaller bounds`,
       { cellDeg, eastDeg: plan.eastDeg, southDeg: plan.southDeg },
     );
   }
   const extended = plan.eastDeg - eastDeg > slackDeg || southDeg - plan.southDeg > slackDeg;
   return { ...plan, extended };
+}
+
+/** Degrees for people: nine decimals are a tenth of a millimetre, and hide what binary fractions leave behind. */
+export function degreesText(deg: number): string {
+  return String(Number(deg.toFixed(9)) + 0);
 }
 
 function wholeCells(extentDeg: number, cellDeg: number): number {

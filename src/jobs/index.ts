@@ -1,5 +1,6 @@
 export { gridBands } from './grid-bands.js';
 export {
+  degreesText,
   type GridBounds,
   type GridPlan,
   MAX_GRID_CELLS,

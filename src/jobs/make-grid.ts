@@ -1,6 +1,7 @@
 import { setImmediate as nextTurn } from 'node:timers/promises';
 import { RainprintError } from '../errors.js';
 import { createPlaces, createPredictions, type Places, type Predictions } from '../isoscape/places.js';
+import { impossibleValue } from '../isoscape/possible-value.js';
 import { type ElevationCells, type ElevationGrid, type LonLatGrid, writeGeoTiff } from '../raster/index.js';
 import type { IsotopeChoice } from '../stations/index.js';
 import { gridBands, writeBandCell } from './grid-bands.js';
@@ -15,6 +16,8 @@ export type SupportAsker = (lonDeg: number, latDeg: number, elevationM: number) 
 export interface GridRequest {
   readonly plan: GridPlan;
   readonly isotopes: IsotopeChoice;
+  /** Whether the station means are known to be weighted by amounts: the bands say so. */
+  readonly amountWeighted: boolean;
   readonly predict: PlacePredictor;
   readonly support: SupportAsker;
   /** Places predicted between two looks at progress and cancelling. */
@@ -35,6 +38,8 @@ export interface GridResult {
   readonly height: number;
   /** Cells that are land and have a prediction. */
   readonly landCells: number;
+  /** Land cells left nodata because the predicted value cannot be precipitation (see `impossibleValue`). */
+  readonly impossibleCells: number;
   /** Cells that some reason says lean on little, and how many each reason names. */
   readonly flaggedCells: number;
   readonly flags: Readonly<Record<string, number>>;
@@ -47,14 +52,14 @@ const ELEVATION_CELLS = 65_536;
 
 /**
  * Predicts at the centre of every cell of land, at the cell's elevation, and writes the bands to `path`; cells without
- * elevation are nodata. Throws GRID_EMPTY where no cell has one; an aborted signal rejects with its reason. In both
+ * elevation, and those whose value cannot be precipitation, are nodata. Throws GRID_EMPTY where no cell has a value; an aborted signal rejects with its reason. In both
  * cases, as on any failure, no file is left.
  */
 export async function makeGrid(path: string, request: GridRequest, run: GridRun = {}): Promise<GridResult> {
   const { plan, isotopes, elevation } = request;
-  const bands = gridBands(isotopes);
+  const bands = gridBands(isotopes, request.amountWeighted);
   const cellCount = plan.width * plan.height;
-  const tally: Tally = { landCells: 0, flaggedCells: 0, flags: {} };
+  const tally: Tally = { landCells: 0, impossibleCells: 0, flaggedCells: 0, flags: {} };
   const fillRows = async (firstRow: number, rowCount: number): Promise<Float32Array[]> => {
     const rows = bands.map(() => new Float32Array(plan.width * rowCount).fill(Number.NaN));
     for (const block of rowBlocks(firstRow, rowCount, plan.width)) {
@@ -68,7 +73,8 @@ export async function makeGrid(path: string, request: GridRequest, run: GridRun 
       const onCells = (done: number) => run.onProgress?.(block.firstRow * plan.width + done, cellCount);
       await fillBlock(request, part, cells, { rows, start, tally, onCells }, run.signal);
     }
-    if (firstRow + rowCount === plan.height && tally.landCells === 0) throw gridEmpty(elevation.source);
+    if (firstRow + rowCount === plan.height && tally.landCells === 0)
+      throw gridEmpty(elevation.source, tally);
     return rows;
   };
   await writeGeoTiff(
@@ -99,6 +105,7 @@ export async function makeGrid(path: string, request: GridRequest, run: GridRun 
 
 interface Tally {
   landCells: number;
+  impossibleCells: number;
   flaggedCells: number;
   readonly flags: Record<string, number>;
 }
@@ -127,6 +134,10 @@ async function fillBlock(
     const predictions = createPredictions(some.length);
     request.predict(places, predictions);
     for (let i = 0; i < some.length; i++) {
+      if (impossibleValue(request.isotopes, predictions.d18O[i]!, predictions.d2H[i]!) !== null) {
+        sink.tally.impossibleCells++;
+        continue;
+      }
       writeBandCell(request.isotopes, predictions, i, sink.rows, sink.start + some[i]!);
       count(sink.tally, request.support(places.lonDeg[i]!, places.latDeg[i]!, places.elevationM[i]!));
     }
@@ -172,7 +183,14 @@ function* rowBlocks(firstRow: number, rowCount: number, width: number) {
   }
 }
 
-function gridEmpty(source: string): RainprintError {
+function gridEmpty(source: string, { impossibleCells }: Tally): RainprintError {
+  if (impossibleCells > 0) {
+    return new RainprintError(
+      'GRID_EMPTY',
+      `all ${impossibleCells} land cells have values beyond what precipitation has: the trend is extrapolated far beyond the stations; check --bounds (W,S,E,N)`,
+      { impossibleCells },
+    );
+  }
   return new RainprintError(
     'GRID_EMPTY',
     `no cell of the grid has an elevation: ${source} has only sea there, or does not reach it; check --bounds (W,S,E,N) and --elevation`,

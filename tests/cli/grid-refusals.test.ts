@@ -71,6 +71,14 @@ describe('rainprint grid refuses', () => {
     expect(readIsoscape(readFileSync(isoscapePath, 'utf8')).stations.id).toHaveLength(40);
   });
 
+  it.each(['asc', 'nc', 'TIFFX', 'csv'])('a name that ends in .%s', async (extension) => {
+    const path = join(folder, `named.${extension}`);
+    const run = await grid(path, '--bounds', BOUNDS, '--cell', '1');
+    expect(run.exitCode).toBe(2);
+    expect(run.stderr).toContain(`OUTPUT_PATH_INVALID: ${path}: grid writes a GeoTIFF`);
+    expect(existsSync(path)).toBe(false);
+  });
+
   it('an isoscape that is a table', async () => {
     const run = await runCaptured([
       'grid',

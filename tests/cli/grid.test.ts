@@ -174,16 +174,11 @@ describe('rainprint grid', () => {
 
   it('reads the bundled elevations by default, over the antimeridian too, and names cells that lean on little', async () => {
     const path = newPath();
-    const run = await runCaptured([
-      'grid',
-      isoscapePath,
-      '--bounds',
-      '176,65,-172,70',
-      '--cell',
-      '1/2',
-      '-o',
-      path,
-    ]);
+    // no term in latitude: a trend taken from 45° S to 70° N would run to values that precipitation does not have
+    const flat = join(folder, 'flat.json');
+    const fit = ['fit', join(folder, 'stations.csv'), '--family', 'exponential', '--terms', 'elevation'];
+    expect(await runCaptured([...fit, '-o', flat])).toMatchObject({ exitCode: 0 });
+    const run = await runCaptured(['grid', flat, '--bounds', '176,65,-172,70', '--cell', '1/2', '-o', path]);
     expect(run.exitCode).toBe(0);
     expect(run.stderr).toMatch(/land cells lean on little \(outside-hull \d+, far-from-stations \d+/);
     const tiff = await fromFile(path);
@@ -194,10 +189,46 @@ describe('rainprint grid', () => {
     expect(d18O!.slice(4 * 24 + 6, 4 * 24 + 10).every((value) => value !== -9999)).toBe(true);
   });
 
+  it('writes no value that precipitation cannot have, however far it extrapolates, and counts those cells', async () => {
+    const path = newPath();
+    const steep = join(folder, 'steep.json');
+    const fit = [
+      'fit',
+      join(folder, 'stations.csv'),
+      '--family',
+      'exponential',
+      '--terms',
+      'zonal1,elevation',
+    ];
+    expect(await runCaptured([...fit, '-o', steep])).toMatchObject({ exitCode: 0 });
+    const run = await runCaptured(['grid', steep, '--bounds', '10,-35,40,70', '--cell', '5', '-o', path]);
+    expect(run.exitCode).toBe(0);
+    const nodata = Number(/(\d+) land cells are nodata: their values are beyond/.exec(run.stderr)?.[1]);
+    const land = Number(/cells, (\d+) of them land/.exec(run.stderr)?.[1]);
+    expect(nodata).toBeGreaterThan(0);
+    const bands = await readBands(path);
+    expect(bands[0]!.filter((value) => value !== -9999)).toHaveLength(land - nodata);
+    expect(Math.max(...bands[0]!)).toBeLessThanOrEqual(25);
+    expect(Math.max(...bands[2]!)).toBeLessThanOrEqual(160);
+  });
+
   it('says when cells had to reach beyond the bounds', async () => {
     const run = await grid(newPath(), '--bounds', '-32,-48,-28.1,-44', '--cell', '0.5');
     expect(run.exitCode).toBe(0);
-    expect(run.stderr).toContain('bounds moved outwards to whole cells: -32,-48,-28,-44');
+    expect(run.stderr).toContain('bounds moved outwards to whole cells: -32,-48,-28,-44\n');
+    const odd = await grid(newPath(), '--bounds', '-33.95,-49.95,-30,-45.37', '--cell', '0.1');
+    expect(odd.stderr).toContain('bounds moved outwards to whole cells: -33.95,-49.97,-29.95,-45.37\n');
+  });
+
+  it('accepts .TIF and .tiff, and words the bands by what the table of means says', async () => {
+    for (const name of ['upper.TIF', 'long.tiff']) {
+      const path = join(folder, name);
+      expect(await grid(path, '--bounds', BOUNDS, '--cell', '2')).toMatchObject({ exitCode: 0 });
+      const tiff = await fromFile(path);
+      const band = JSON.stringify(await (await tiff.getImage()).getGDALMetadata(0));
+      expect(band).toContain('δ18O, mean of local rain');
+      await tiff.close();
+    }
   });
 
   it('shows progress on a terminal only', async () => {

@@ -41,6 +41,7 @@ const predict = (places: Places, out: Predictions): void => {
 const request = (bounds: string, cellDeg: number, change: Partial<GridRequest> = {}): GridRequest => ({
   plan: planGrid(parseBounds(bounds), cellDeg),
   isotopes: 'both',
+  amountWeighted: true,
   predict,
   support: () => [],
   placesPerTurn: 100,
@@ -80,7 +81,14 @@ describe('makeGrid', () => {
         if (Math.abs(bands[b]![k]! - value) > 1e-5) expect(bands[b]![k]).toBeCloseTo(value, 5);
       });
     }
-    expect(result).toEqual({ width: 300, height: 200, landCells: land, flaggedCells: 0, flags: {} });
+    expect(result).toEqual({
+      width: 300,
+      height: 200,
+      landCells: land,
+      impossibleCells: 0,
+      flaggedCells: 0,
+      flags: {},
+    });
   });
 
   it('has a d-excess of its own pair and an error of the joint error', async () => {
@@ -129,6 +137,35 @@ describe('makeGrid', () => {
     }
   });
 
+  it('leaves cells nodata whose value cannot be precipitation, and counts them', async () => {
+    const path = newPath();
+    const tooHigh = (places: Places, out: Predictions) => {
+      predict(places, out);
+      for (let i = 0; i < places.count; i++) if (places.lonDeg[i]! > 7) out.d18O[i] = 36.4;
+    };
+    const result = await makeGrid(path, request('0,0,10,10', 1, { predict: tooHigh, support: () => ['x'] }));
+    expect(result).toMatchObject({ landCells: 70, impossibleCells: 30, flaggedCells: 70, flags: { x: 70 } });
+    const bands = await readBands(path);
+    for (let k = 0; k < 100; k++) {
+      for (const band of bands) expect(band[k] === -9999).toBe(k % 10 >= 7);
+    }
+    const one = await makeGrid(newPath(), request('0,0,10,10', 1, { predict: tooHigh, isotopes: 'd2H' }));
+    expect(one).toMatchObject({ landCells: 100, impossibleCells: 0 });
+  });
+
+  it('says amount-weighted only where that is known', async () => {
+    for (const amountWeighted of [true, false]) {
+      const path = newPath();
+      await makeGrid(path, request('0,0,2,2', 1, { amountWeighted }));
+      const tiff = await fromFile(path);
+      const said = JSON.stringify(await (await tiff.getImage()).getGDALMetadata(2));
+      expect(said).toContain('δ2H, ');
+      expect(said).toContain('mean of local rain, VSMOW-SLAP');
+      expect(said.includes('amount-weighted')).toBe(amountWeighted);
+      await tiff.close();
+    }
+  });
+
   it('counts the land cells that lean on little, by reason', async () => {
     const support = (lonDeg: number, latDeg: number) => [
       ...(lonDeg > 5 ? ['far-from-stations'] : []),
@@ -161,6 +198,20 @@ describe('makeGrid leaves no file', () => {
     const path = newPath();
     const job = makeGrid(path, request('0,0,2,2', 1, { elevation: elevation(() => false) }));
     await expect(job).rejects.toMatchObject({ code: 'GRID_EMPTY' });
+    expect(existsSync(path)).toBe(false);
+  });
+
+  it('where no value can be precipitation', async () => {
+    const path = newPath();
+    const tooLow = (places: Places, out: Predictions) => {
+      predict(places, out);
+      out.d2H.fill(-700);
+    };
+    const job = makeGrid(path, request('0,0,2,2', 1, { predict: tooLow }));
+    await expect(job).rejects.toMatchObject({
+      code: 'GRID_EMPTY',
+      message: expect.stringMatching(/all 4 land cells/),
+    });
     expect(existsSync(path)).toBe(false);
   });
 
