@@ -1,13 +1,15 @@
 import type { Command } from 'commander';
+import { RainprintError } from '../errors.js';
 import { fitIsoscape, type Isoscape, writeIsoscape } from '../isoscape/index.js';
 import { validateLeaveOneOut } from '../isoscape/validate.js';
-import type { CheckReport, Network } from '../stations/index.js';
+import type { Network } from '../stations/index.js';
 import type { CliContext } from './context.js';
 import { fitJson } from './fit/fit-json.js';
 import { parseFamily, parseFixes, parseSamplingScale, parseTermsOption } from './fit/fit-options.js';
 import { fitReport } from './fit/fit-report.js';
 import { SUMMARY_LEVEL, summariseFit } from './fit/fit-summary.js';
-import { openOutput } from './output-file.js';
+import { readingNotes } from './fit/reading-notes.js';
+import { type OutputFile, openOutput } from './output-file.js';
 import { createProgress } from './progress.js';
 import { collected } from './repeated-options.js';
 import {
@@ -19,7 +21,7 @@ import {
 import { writeText } from './stream-write.js';
 
 interface FitFlags extends StationFlags {
-  readonly output: string;
+  readonly output?: string;
   readonly family: string;
   readonly terms: string;
   readonly fix: readonly string[];
@@ -43,13 +45,13 @@ export function registerFit(program: Command, context: CliContext): void {
     .command('fit')
     .description('fit an isoscape to a station table')
     .argument('<stations>', 'station table (CSV or GeoJSON points): one row a station or one row a record')
-    .requiredOption('-o, --output <file>', 'write the isoscape (JSON) here');
+    .option('-o, --output <file>', 'write the isoscape (JSON) here; may be missing with --json');
   addStationOptions(command)
     .option('--family <family>', 'auto, exponential, matern32, matern52 or spherical', 'auto')
     .option('--terms <terms>', 'trend: auto, none, or terms such as zonal1,zonal2,elevation', 'auto')
     .option('--fix <field.parameter=number>', 'hold a parameter at a value (may be repeated)', collected, [])
     .option('--sampling-scale <scale>', 'factor on the sampling variances: a number in (0, 1], or fit', '1')
-    .option('--json', 'print the closing table as JSON')
+    .option('--json', 'print the closing table as JSON (without -o: a trial that keeps nothing)')
     .addHelpText('after', HELP)
     .action((stationsPath: string, flags: FitFlags) => runFit(stationsPath, flags, context));
 }
@@ -63,18 +65,31 @@ async function runFit(stationsPath: string, flags: FitFlags, context: CliContext
     fix: parseFixes(flags.fix, isotopes),
     toolVersion: context.toolVersion,
   };
-  const output = await openOutput(flags.output, [stationsPath]);
+  const output = await isoscapeFile(flags, stationsPath);
   try {
     const { network, report } = await readStationFile(stationsPath, flags, context);
-    sayLeftOut(report, stationsPath, context);
+    // Said before the fit, so that it is said too where the fit fails for want of stations.
+    for (const note of readingNotes(report, network, stationsPath))
+      context.stderr.write(`rainprint: note: ${note}\n`);
     const isoscape = fitWithProgress(network, options, context);
     const summary = summariseFit(isoscape, validateLeaveOneOut(isoscape, { level: SUMMARY_LEVEL }));
-    await output.write(writeIsoscape(isoscape));
-    await output.commit();
+    await output?.write(writeIsoscape(isoscape));
+    await output?.commit();
     await writeText(context.stdout, flags.json ? fitJson(summary) : fitReport(summary));
   } finally {
-    await output.abort();
+    await output?.abort();
   }
+}
+
+/** null for a trial: the numbers are printed as JSON and nothing is kept. */
+async function isoscapeFile(flags: FitFlags, stationsPath: string): Promise<OutputFile | null> {
+  if (flags.output !== undefined) return openOutput(flags.output, [stationsPath]);
+  if (flags.json === true) return null;
+  throw new RainprintError(
+    'OPTION_INVALID',
+    'no file for the isoscape; name one with -o FILE, or print the closing table alone with --json',
+    { option: 'output' },
+  );
 }
 
 function fitWithProgress(
@@ -88,15 +103,4 @@ function fitWithProgress(
   } finally {
     progress.end();
   }
-}
-
-/** What was left out is said before the fit, so that it is said too where the fit fails for want of stations. */
-function sayLeftOut(report: CheckReport, path: string, context: CliContext): void {
-  const say = (text: string) => context.stderr.write(`rainprint: note: ${text}\n`);
-  const reasons = report.reasons.filter(({ leftOut }) => leftOut > 0);
-  if (reasons.length > 0) {
-    const list = reasons.map(({ reasonCode, leftOut }) => `${reasonCode} ${leftOut}`).join(', ');
-    say(`rows or stations left out: ${list}; see them with: rainprint check ${path}`);
-  }
-  for (const warning of report.warnings) say(warning);
 }

@@ -1,4 +1,4 @@
-import { existsSync, readFileSync, writeFileSync } from 'node:fs';
+import { existsSync, readdirSync, readFileSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { beforeAll, describe, expect, it } from 'vitest';
 import { elevationEffect, latitudeEffect, readIsoscape } from '../../src/isoscape/index.js';
@@ -7,6 +7,7 @@ import { inventNetwork } from '../support/invented-network.js';
 import { temporaryFolder } from '../support/temp-folder.js';
 
 const folder = temporaryFolder();
+const QUICK = ['--family', 'exponential', '--terms', 'elevation'];
 const at = (name: string) => join(folder, name);
 
 describe('rainprint fit', () => {
@@ -30,6 +31,36 @@ describe('rainprint fit', () => {
   it('says what was left out and where to see it', () => {
     expect(run.stderr).toContain('elevation-missing 1, one-isotope 1');
     expect(run.stderr).toContain(`rainprint check ${at('stations.csv')}`);
+  });
+
+  it('names the stations it kept although they were flagged', async () => {
+    expect(run.stderr).not.toContain('kept although flagged'); // nothing was flagged
+    const [header, ...rows] = inventNetwork({ seed: 3, stationCount: 30 }).csv.trim().split('\n');
+    const columns = header.split(',');
+    const far = rows.map((row, i) => {
+      const cells = row.split(',');
+      const [lon, lat] = [columns.indexOf('lon'), columns.indexOf('lat')];
+      if (i === 4) [cells[lon], cells[lat]] = [cells[lat], cells[lon]];
+      const swing = columns.indexOf('d2H');
+      if (i > 20 && i < 28) cells[swing] = String(Number(cells[swing]) + 60);
+      return cells.join(',');
+    });
+    writeFileSync(at('flagged.csv'), `${[header, ...far].join('\n')}\nLEFT,-30,-47,5,-8,20,2,2,15\n`);
+    const { exitCode, stderr } = await runCaptured(['fit', at('flagged.csv'), '--json', ...QUICK]);
+    const ids = far.map((row) => row.split(',')[0]);
+    const odd = ids.slice(21, 26).map((id, i) => `${id} (line ${23 + i})`);
+    expect(exitCode).toBe(0);
+    expect(stderr).toContain(
+      `kept although flagged: coordinates-perhaps-swapped ${ids[4]} (line 6); ` +
+        `d-excess-station ${odd.join(', ')} and 2 more; see them with: rainprint check ${at('flagged.csv')}`,
+    );
+  });
+
+  it('says on stderr which column of spread it did not find', async () => {
+    const table = inventNetwork({ seed: 3, stationCount: 30 }).csv.replace('sd_d2H', 'Streuung');
+    writeFileSync(at('half.csv'), table);
+    const { exitCode, stderr } = await runCaptured(['fit', at('half.csv'), '--json', ...QUICK]);
+    expect([exitCode, stderr]).toEqual([0, expect.stringContaining('found sd_d18O, n, but not sd_d2H')]);
   });
 
   it('ends with every part of the closing table', () => {
@@ -68,6 +99,15 @@ describe('rainprint fit', () => {
     expect(summary.fields[0].range_5_percent_km).toBeCloseTo(summary.fields[0].range_km * Math.log(20), 6);
     expect(summary.leave_one_out).toHaveLength(12);
     expect(summary.trend_candidates).toEqual([]);
+  });
+
+  it('prints JSON alone where no file is named', async () => {
+    const before = readdirSync(folder);
+    const trial = await runCaptured(['fit', at('stations.csv'), '--json', ...QUICK]);
+    expect(trial.exitCode).toBe(0);
+    const kept = await runCaptured(['fit', at('stations.csv'), '--json', ...QUICK, '-o', at('kept.json')]);
+    expect(JSON.parse(trial.stdout)).toEqual(JSON.parse(kept.stdout));
+    expect(readdirSync(folder).filter((name) => !before.includes(name))).toEqual(['kept.json']);
   });
 
   it('holds fixed parameters and the turn', async () => {
