@@ -49,7 +49,13 @@ export function flagSuspiciousCoordinates(
     const message = `longitude ${lonDeg}, latitude ${latDeg} is far from the other stations; ${guess.what} it lies among them`;
     log.add(
       guess.reason,
-      { line: station.line, column: columns.lon, value: `${lonDeg}, ${latDeg}`, stationId: station.id },
+      {
+        line: station.line,
+        column: columns.lon,
+        value: `${lonDeg}, ${latDeg}`,
+        stationId: station.id,
+        of: 'station',
+      },
       message,
     );
   }

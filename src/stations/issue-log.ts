@@ -10,7 +10,16 @@ export interface ReasonSummary {
   readonly meaning: string;
   readonly leftOut: number;
   readonly flagged: number;
+  /** How many of them stand for a whole station; the others stand for a row. */
+  readonly ofStations: number;
   readonly first: readonly StationIssue[];
+}
+
+interface Tally {
+  leftOut: number;
+  flagged: number;
+  ofStations: number;
+  first: StationIssue[];
 }
 
 /** Takes issues one by one; a promise asks the reader to wait. */
@@ -18,7 +27,7 @@ export type IssueSink = (issue: StationIssue) => void | Promise<void>;
 
 /** Collects issues in bounded memory. */
 export class IssueLog {
-  readonly #tallies = new Map<IssueReason, { leftOut: number; flagged: number; first: StationIssue[] }>();
+  readonly #tallies = new Map<IssueReason, Tally>();
   leftOut = 0;
   flagged = 0;
 
@@ -36,6 +45,8 @@ export class IssueLog {
       value?: string | number;
       stationId: string;
       severity?: IssueSeverity;
+      /** Default a row. */
+      of?: 'row' | 'station';
     },
     message: string,
   ): void {
@@ -57,6 +68,7 @@ export class IssueLog {
       tally.flagged++;
       this.flagged++;
     }
+    if (at.of === 'station') tally.ofStations++;
     if (tally.first.length < KEPT_PER_REASON) tally.first.push(issue);
     const busy = this.sink?.(issue);
     if (busy instanceof Promise) this.pending = busy;
@@ -86,7 +98,7 @@ export class IssueLog {
   #tally(reasonCode: IssueReason) {
     let tally = this.#tallies.get(reasonCode);
     if (tally === undefined) {
-      tally = { leftOut: 0, flagged: 0, first: [] };
+      tally = { leftOut: 0, flagged: 0, ofStations: 0, first: [] };
       this.#tallies.set(reasonCode, tally);
     }
     return tally;

@@ -217,12 +217,17 @@ function describeTable(table: Table<StationMeaning>, layout: TableLayout): Check
 
 function describeCounts(
   network: Network,
-  { counts, stations }: Reading,
+  { counts, stations, layout }: Reading,
   log: IssueLog,
 ): CheckReport['counts'] {
+  const rowsAveraged =
+    layout === 'means'
+      ? network.stations.length
+      : network.stations.reduce((sum, station) => sum + station.recordCount, 0);
   return {
     rows: counts.rows,
-    rowsAveraged: counts.averaged,
+    rowsAveraged,
+    rowsOfStationsNotUsed: counts.averaged - rowsAveraged,
     rowsLeftOut: counts.leftOut,
     rowsOutsideSeason: counts.outsideSeason,
     rowsOutsideYears: counts.outsideYears,

@@ -26,7 +26,10 @@ export interface CheckReport {
   readonly averaging: 'amount-weighted' | 'unweighted' | 'given';
   readonly counts: {
     readonly rows: number;
+    /** Rows in the means of the stations used: as many as S is pooled from. */
     readonly rowsAveraged: number;
+    /** Sound rows of stations that are not used, for a reason of the station. */
+    readonly rowsOfStationsNotUsed: number;
     readonly rowsLeftOut: number;
     readonly rowsOutsideSeason: number;
     readonly rowsOutsideYears: number;

@@ -1,7 +1,7 @@
 /** What became of the rows of a table. */
 export interface RowCounts {
   rows: number;
-  /** Rows that went into a mean (of a station used or not). */
+  /** Rows that went into a mean, of a station used or not. */
   averaged: number;
   /** Listed with the reason. */
   leftOut: number;

@@ -59,7 +59,7 @@ export function samplingOfMeans(
   }
   for (const { mean } of counted.filter((candidate) => !(candidate.mean.effectiveRecords > 0))) {
     const message = `${shown(mean.id)} gives neither n nor a standard error, as the others do: its weight is unknown`;
-    log.add('sampling-unknown', { line: mean.line, stationId: mean.id }, message);
+    log.add('sampling-unknown', { line: mean.line, stationId: mean.id, of: 'station' }, message);
   }
   const assumed = choice === 'both' ? `, with an assumed within-station correlation of ${correlation}` : '';
   return {

@@ -170,6 +170,10 @@ export class StationJudge {
     message: string,
   ): void {
     const { line, id } = candidate.mean;
-    this.log.add(reason, { line, column: this.columns[column], value, stationId: id }, message);
+    this.log.add(
+      reason,
+      { line, column: this.columns[column], value, stationId: id, of: 'station' },
+      message,
+    );
   }
 }

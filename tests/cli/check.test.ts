@@ -102,6 +102,23 @@ describe('rainprint check', () => {
     expect(stdout).toContain('12 used of 12');
   });
 
+  it('says of each count whether it counts rows or stations, and that reasons overlap', async () => {
+    const lacking = { d18O: '', d2H: '' };
+    const table = meansTable(16, {
+      2: { n: '3' },
+      3: { lon: 'x', lat: 'y' },
+      5: { lon: '', lat: '' },
+      6: lacking,
+    });
+    const { stdout } = await runCaptured(['check', fileOf('counts.csv', table)]);
+    expect(stdout).toMatch(
+      /Rows +16 read, 12 averaged, 2 left out, 2 of stations left out or with one isotope/,
+    );
+    expect(stdout).toMatch(/^records-too-few +1 +0 +stations +has/m);
+    expect(stdout).toMatch(/^not-a-number +2 +0 +rows +has/m);
+    expect(stdout).toContain('A row can have several reasons, so');
+  });
+
   it('asks no number of records of a table of means without n', async () => {
     const table = meansTable(12);
     const { stdout } = await runCaptured(['check', fileOf('no-n.csv', table.replace(/,(n|48)$/gm, ''))]);
@@ -118,7 +135,7 @@ describe('rainprint check', () => {
     const list = join(folder, 'list.csv');
     const { exitCode, stdout } = await runCaptured(['check', table, '--list', list]);
     expect(exitCode).toBe(0);
-    expect(stdout).toMatch(/not-a-number +60 +0 /);
+    expect(stdout).toMatch(/not-a-number +60 +0 +rows /);
     expect(stdout.match(/^ {2}line \d+ /gm)).toHaveLength(50);
     expect(stdout).toContain('and 10 more (--list FILE writes all)');
     const rows = parse(readFileSync(list, 'utf8'), { columns: true }) as unknown as Record<string, string>[];

@@ -209,6 +209,21 @@ describe('records left out or flagged', () => {
     expect((await reading('2002-2030')).report.counts.rowsOutsideYears).toBe(12);
   });
 
+  it('counts as averaged what S is pooled from, and the rows of stations left out apart', async () => {
+    const short = months(5).map((row) => ({ ...row, id: 'SHORT', lat: '-40' }));
+    const rows = [...months(24), ...short, { ...short[0], d18O: 'x', d2H: 'y', date: '2009-01' }];
+    const { report } = await readStations(recordsTable(rows));
+    const { knowledge } = report.sampling;
+    expect(knowledge).toMatchObject({ kind: 'records', pooledRecords: 24 });
+    expect(report.counts).toMatchObject({ rowsAveraged: 24, rowsOfStationsNotUsed: 5, rowsLeftOut: 1 });
+    const counted = report.reasons.map((r) => [r.reasonCode, r.leftOut, r.ofStations]);
+    // the row without numbers is one row with two reasons
+    expect(counted).toEqual([
+      ['not-a-number', 2, 0],
+      ['records-too-few', 1, 1],
+    ]);
+  });
+
   it('every row is averaged, left out, outside or dry: none is lost', async () => {
     const cell = (...odd: string[]) => fc.constantFrom(...odd);
     const row = fc.record({
@@ -230,13 +245,22 @@ describe('records left out or flagged', () => {
           const {
             rows: all,
             rowsAveraged,
+            rowsOfStationsNotUsed,
             rowsLeftOut,
             rowsOutsideSeason,
             rowsOutsideYears,
             rowsDry,
           } = report.counts;
           expect(all).toBe(rows.length);
-          expect(rowsAveraged + rowsLeftOut + rowsOutsideSeason + rowsOutsideYears + rowsDry).toBe(all);
+          expect(rowsOfStationsNotUsed).toBeGreaterThanOrEqual(0);
+          expect(
+            rowsAveraged +
+              rowsOfStationsNotUsed +
+              rowsLeftOut +
+              rowsOutsideSeason +
+              rowsOutsideYears +
+              rowsDry,
+          ).toBe(all);
           expect(report.counts.issuesLeftOut).toBeGreaterThanOrEqual(rowsLeftOut);
           const { stations, stationsUsed, stationsLeftOut, stationsOneIsotope } = report.counts;
           expect(stationsUsed + stationsLeftOut + stationsOneIsotope).toBe(stations);

@@ -22,11 +22,26 @@ export function checkText(report: CheckReport): string {
   const alone = oneIsotopeText(report);
   if (report.reasons.length === 0) return `${facts}${warnings}${alone}\nNothing was left out or flagged.\n`;
   const table = textTable(
-    ['reason', 'left out', 'flagged', 'the row or station'],
-    report.reasons.map((r) => [r.reasonCode, String(r.leftOut), String(r.flagged), r.meaning]),
-    { align: ['left', 'right', 'right', 'left'] },
+    ['reason', 'left out', 'flagged', 'counts', 'the row or station'],
+    report.reasons.map((r) => [
+      r.reasonCode,
+      String(r.leftOut),
+      String(r.flagged),
+      whatIsCounted(r),
+      r.meaning,
+    ]),
+    { align: ['left', 'right', 'right', 'left', 'left'] },
   );
-  return `${facts}${warnings}${alone}\n${table}${report.reasons.map(reasonText).join('')}`;
+  return `${facts}${warnings}${alone}\n${table}${COUNTS_NOTE}${report.reasons.map(reasonText).join('')}`;
+}
+
+const COUNTS_NOTE =
+  'A row can have several reasons, so the rows left out may be fewer than the sum of their reasons.\n';
+
+function whatIsCounted({ leftOut, flagged, ofStations }: ReasonSummary): string {
+  const ofRows = leftOut + flagged - ofStations;
+  if (ofRows === 0) return 'stations';
+  return ofStations === 0 ? 'rows' : `${ofRows} rows, ${ofStations} stations`;
 }
 
 function factRows(report: CheckReport): [string, string][] {
@@ -68,6 +83,9 @@ function rowsText(counts: CheckReport['counts']): string {
     `${counts.rows} read`,
     `${counts.rowsAveraged} averaged`,
     `${counts.rowsLeftOut} left out`,
+    ...(counts.rowsOfStationsNotUsed > 0
+      ? [`${counts.rowsOfStationsNotUsed} of stations left out or with one isotope`]
+      : []),
     ...(counts.rowsOutsideSeason > 0 ? [`${counts.rowsOutsideSeason} of other seasons`] : []),
     ...(counts.rowsOutsideYears > 0 ? [`${counts.rowsOutsideYears} of other years`] : []),
     ...(counts.rowsDry > 0 ? [`${counts.rowsDry} without rain`] : []),
