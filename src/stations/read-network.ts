@@ -20,7 +20,8 @@ const ROWS_PER_PROGRESS = 5_000;
 
 /**
  * Reads, checks and averages a station table (CSV or GeoJSON; one row a station or one row a record). Rows stream:
- * memory grows with stations and months, not with records.
+ * memory grows with stations and months, not with records
+ * (but for 8 bytes a record that has a day).
  *
  * Every row or station left out or flagged is listed in the report (first 50 of each reason) and handed to `onIssue`.
  * Too few stations are no error here: see `report.usable`.

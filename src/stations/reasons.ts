@@ -50,7 +50,11 @@ export const REASONS = {
   'amount-implausible': ['left-out', 'has more precipitation than ever fell'],
   'date-missing': ['left-out', 'has no month or date'],
   'date-unreadable': ['left-out', 'has a month, year or date that cannot be read'],
-  'record-repeated': ['left-out', 'is a second record of the same station and time'],
+  'record-repeated': [
+    'left-out',
+    'is a second record of the same station and month, or the same sample again',
+  ],
+  'day-shared': ['flagged', 'is another sample of the same station and day'],
   'season-unreadable': ['left-out', 'has a season that cannot be read'],
   'id-repeated': ['left-out', 'is a second mean of the same station'],
   'count-invalid': ['flagged', 'has a number of records below 0'],

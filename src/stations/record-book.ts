@@ -83,8 +83,8 @@ export class RecordBook {
       return 'leftOut';
     }
     if (!(amountMm > 0)) return 'leftOut';
-    if (!station.isNewTime(date)) {
-      this.reader.issue('record-repeated', this.reader.has('date') ? 'date' : 'month', repeatedText(date));
+    if (!this.#isNotRepeated(row, station, date, amountMm)) {
+      if (this.#weighted) station.amountAllMm -= amountMm; // that rain is counted already
       return 'leftOut';
     }
     this.#flagPair(row);
@@ -100,6 +100,25 @@ export class RecordBook {
     if (hasH) station.d2HAlone.add(row.d2H, amountMm);
     if (this.#weighted) station.amountAnalysedMm += amountMm;
     return 'averaged';
+  }
+
+  /** False (listed) for a second record of a month, or the same sample of a day again; other samples of it are flagged. */
+  #isNotRepeated(row: StationRow, station: StationState, date: RecordDate, amountMm: number): boolean {
+    const outcome = station.times.add(date, [row.d18O, row.d2H, amountMm]);
+    if (outcome === 'new') return true;
+    const column = this.reader.has('date') ? 'date' : 'month';
+    if (outcome === 'same-day') {
+      const said = `the station has another sample of ${timeText(date)}, with other values; both are averaged`;
+      this.reader.issue('day-shared', column, said);
+      return true;
+    }
+    const what = Number.isNaN(date.day) ? 'a record' : 'a sample with these values';
+    this.reader.issue(
+      'record-repeated',
+      column,
+      `the station has ${what} of ${timeText(date)} already; expected one`,
+    );
+    return false;
   }
 
   /** mm; 1 for every record of a table without amounts; NaN (listed where it is wrong) where it cannot weigh. */
@@ -202,7 +221,7 @@ function hasAny(row: StationRow): boolean {
   return !Number.isNaN(row.d18O) || !Number.isNaN(row.d2H);
 }
 
-function repeatedText(date: RecordDate): string {
+function timeText(date: RecordDate): string {
   const parts = [date.year, date.month, date.day].filter((part) => !Number.isNaN(part));
-  return `the station has a record of ${parts.map((p) => String(p).padStart(2, '0')).join('-')} already; expected one`;
+  return parts.map((part) => String(part).padStart(2, '0')).join('-');
 }

@@ -1,8 +1,8 @@
 import { SAME_ELEVATION_M, SAME_PLACE_M } from './bounds.js';
-import type { RecordDate } from './calendar.js';
 import type { IssueLog } from './issue-log.js';
 import type { MeansValues } from './means-book.js';
 import { chordM, type Position, positionM } from './place.js';
+import { RecordTimes } from './record-times.js';
 import type { StationRow } from './station-row.js';
 import { shown } from './text-shown.js';
 import { WithinSums } from './within-sums.js';
@@ -40,6 +40,7 @@ export class StationState {
 
   /** Records with the isotopes asked for. */
   readonly sums = new WithinSums();
+  readonly times = new RecordTimes();
   readonly d18OAlone = new IsotopeTally();
   readonly d2HAlone = new IsotopeTally();
   /** Σp of all records with an amount, and of those averaged, mm. */
@@ -50,8 +51,6 @@ export class StationState {
   means: MeansValues | null = null;
 
   #elevationListed = false;
-  /** Year and month → bit set of days seen (bit 0 where the day is unknown). */
-  #times: Map<number, number> | null = null;
 
   constructor(row: StationRow) {
     this.id = row.id;
@@ -84,18 +83,6 @@ export class StationState {
       log.add('elevation-differs', { line: row.line, value: row.elevationM, stationId: row.id }, message);
     }
     return true;
-  }
-
-  /** Notes the time of a record; false where there has been one already. Unknown years cannot repeat. */
-  isNewTime(date: RecordDate): boolean {
-    if (Number.isNaN(date.year)) return true;
-    const month = Number.isNaN(date.month) ? 0 : date.month;
-    const key = date.year * 13 + month;
-    const bit = 1 << (Number.isNaN(date.day) ? 0 : date.day);
-    this.#times ??= new Map();
-    const seen = this.#times.get(key) ?? 0;
-    this.#times.set(key, seen | bit);
-    return (seen & bit) === 0;
   }
 
   /** Whether the row gives no place, or the station's own within 100 m. */
