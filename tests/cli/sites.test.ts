@@ -177,7 +177,7 @@ describe('rainprint sites, CSV', () => {
 
 describe('bad rows', () => {
   const text =
-    'id,lon,lat,elevation\nok,-30,-46,10\nbad,x,-46,10\nswapped,10,120,10\nhigh,-30,-46,99999\nragged,1\n';
+    'id,lon,lat,elevation\nok,-30,-46,10\nbad,x,-46,10\nnorth,10,120,10\nhigh,-30,-46,99999\nragged,1\n';
 
   it('get their reason and do not sink the others', async () => {
     const run = await sites(table('bad.csv', text));
@@ -185,11 +185,16 @@ describe('bad rows', () => {
     expect(run.stderr).toMatch(/^rainprint: SITES_WITH_PROBLEMS: 4 of 5 rows/m);
     expect(run.stderr).toContain('line 3: not-a-number: column lon: found "x", expected a number');
     const rows = parseCsv(run.stdout);
-    expect(rows.map(({ id }) => id)).toEqual(['ok', 'bad', 'swapped', 'high', 'ragged']);
+    expect(rows.map(({ id }) => id)).toEqual(['ok', 'bad', 'north', 'high', 'ragged']);
     expect(rows[0].problem).toBe('');
     expect(rows[0].d18O).not.toBe('');
     const reasons = rows.slice(1).map(({ problem }) => problem.split(':')[0]);
-    expect(reasons).toEqual(['not-a-number', 'coordinates-swapped', 'elevation-implausible', 'row-ragged']);
+    expect(reasons).toEqual([
+      'not-a-number',
+      'coordinates-out-of-range',
+      'elevation-implausible',
+      'row-ragged',
+    ]);
     for (const row of rows.slice(1)) {
       for (const name of ADDED.slice(0, -1)) expect(row[name]).toBe('');
     }
@@ -205,15 +210,15 @@ describe('bad rows', () => {
 
 describe('elevation', () => {
   // The bundled grid, in the middle of two continents (places picked for being land, nothing else).
-  const INLAND = 'id,lon,lat\nE,20,48\nA,-100,45\n';
+  const INLAND = 'id,lon,lat\nE,134,-25\nA,-66.5,-30.2\n';
 
   it('comes from the bundled grid where the table has none, with its uncertainty', async () => {
     const run = await sites(table('inland.csv', INLAND));
     expect(run.exitCode).toBe(0);
     const grid = await openElevation('grids/elevation-5min.tif');
     for (const [i, [lonDeg, latDeg]] of [
-      [20, 48],
-      [-100, 45],
+      [134, -25],
+      [-66.5, -30.2],
     ].entries()) {
       const found = await grid.sample(lonDeg, latDeg);
       if (found.kind !== 'land') throw new Error('land was expected');

@@ -1,6 +1,7 @@
 import { ISOTOPE_DECIMALS, roundIsotope, roundPair } from '../../isoscape/rounding.js';
 import { dExcessVariance } from '../../isotope/index.js';
 import type { IsotopeChoice } from '../../stations/index.js';
+import { ELEVATION_SOURCE, ELEVATION_USED } from './site-vocabulary.js';
 
 /** What is said of one site beside its own columns. */
 export interface SiteResult {
@@ -27,8 +28,8 @@ const quantity = (name: string): AddedColumn[] =>
   ['', '_se', '_low', '_high'].map((suffix) => ({ name: name + suffix, kind: 'isotope' }));
 
 const AFTER_ISOTOPES: readonly AddedColumn[] = [
-  { name: 'elevation_m', kind: 'number' },
-  { name: 'elevation_source', kind: 'text' },
+  { name: ELEVATION_USED, kind: 'number' },
+  { name: ELEVATION_SOURCE, kind: 'text' },
   { name: 'nearest_station_km', kind: 'number' },
   { name: 'support', kind: 'text' },
   { name: 'problem', kind: 'text' },
@@ -84,7 +85,8 @@ export function addedCell(column: AddedColumn, value: AddedValue): string {
 
 /**
  * Names for the input's columns beside ours: one that has a name of ours (in any case of letters) is kept as
- * `input_<name>`, so that the added columns always have the names this tool documents.
+ * `input_<name>`, so that the added columns always have the names this tool documents. Where the input has that name
+ * too (an output run through once more), it becomes `input_<name>_2`, `_3`: an earlier run's columns never change name.
  */
 export function keptHeader(header: readonly string[], isotopes: IsotopeChoice): string[] {
   const ours = new Set(addedColumns(isotopes).map(({ name }) => name.toLowerCase()));

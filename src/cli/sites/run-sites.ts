@@ -1,17 +1,19 @@
 import { createHash } from 'node:crypto';
-import { type Isoscape, readIsoscape } from '../../isoscape/index.js';
+import { createSupport, type Isoscape, readIsoscape } from '../../isoscape/index.js';
 import { bundledElevationPath } from '../../raster/index.js';
 import { type ColumnOverrides, openTable, type Table } from '../../stations/index.js';
 import type { CliContext } from '../context.js';
 import { openInput, readInputText } from '../input-file.js';
 import { createProgress } from '../progress.js';
+import { noteMissingElevation } from './elevation-note.js';
 import { createExplainer } from './explanations.js';
 import { assertJointSize, MAX_JOINT_SITES, writeJoint } from './joint-file.js';
+import { isNearStations, MisplacedSites } from './misplaced-sites.js';
 import { hashed, runRecord } from './run-record.js';
 import { createSiteElevations } from './site-elevation.js';
 import { createSitePredictor } from './site-predictor.js';
 import { createSiteReader, type SiteRow } from './site-reader.js';
-import { SITE_PLACE, SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
+import { earlierElevation, SITE_PLACE, SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
 import { createSitesWriter } from './site-writers.js';
 import type { SitesOptions } from './sites-options.js';
 import { openSitesOutputs, type SitesOutputs } from './sites-outputs.js';
@@ -36,6 +38,7 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
   const { isoscape } = input;
   const elevations = await createSiteElevations(options.elevationPath, isoscape.terms.includes('elevation'));
   const tally = new SitesTally();
+  const misplaced = new MisplacedSites(input.support);
   try {
     const elevationPath = options.elevationPath ?? bundledElevationPath();
     const outputs = await openSitesOutputs(
@@ -44,8 +47,8 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
       context,
     );
     try {
-      const predict = createSitePredictor(isoscape, elevations, options);
-      await streamSites({ ...input, predict, outputs, options, tally, context });
+      const predict = createSitePredictor(isoscape, input.support, elevations, options);
+      await streamSites({ ...input, predict, outputs, options, tally, misplaced, context });
       const facts = {
         ...call,
         isoscape,
@@ -63,6 +66,9 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
   } finally {
     await elevations.close();
   }
+  const gridUsed = isoscape.terms.includes('elevation') ? elevations.gridSource() : null;
+  noteMissingElevation(input.table, call.columns, gridUsed, context);
+  misplaced.report(context);
   tally.report(options, context);
 }
 
@@ -74,13 +80,16 @@ async function openSites(call: SitesCall) {
     vocabulary: SITE_VOCABULARY,
     columnOverrides: call.columns,
     placeMeanings: SITE_PLACE,
+    yieldingColumns: earlierElevation,
   });
+  const support = createSupport(isoscape);
   return {
     isoscape,
+    support,
     isoscapeSha256: createHash('sha256').update(isoscapeText).digest('hex'),
     source,
     table,
-    readRow: createSiteReader(table),
+    readRow: createSiteReader(table, (lonDeg, latDeg) => isNearStations(support, lonDeg, latDeg)),
   };
 }
 
@@ -92,6 +101,7 @@ interface Stream {
   readonly outputs: SitesOutputs;
   readonly options: SitesOptions;
   readonly tally: SitesTally;
+  readonly misplaced: MisplacedSites;
   readonly context: CliContext;
 }
 
@@ -112,6 +122,7 @@ async function streamSites(stream: Stream): Promise<void> {
     await explainer?.write(batch);
     if (outputs.joint !== null) await writeJoint(outputs.joint, isoscape, batch.sites, batch.places, options);
     tally.add(rows, batch);
+    stream.misplaced.add(rows);
     progress.update(tally.rowCount, 0);
   }
   await outputs.main.write(writer.end());

@@ -1,13 +1,15 @@
 import {
   createPlaces,
   createPredictions,
-  createSupport,
   type Isoscape,
   intervalHalfWidth,
   type Places,
+  type Predictions,
   predictPlaces,
+  type Support,
 } from '../../isoscape/index.js';
-import { type AddedValue, addedValues, problemValues } from './added-columns.js';
+import { impossibleValue } from '../../isoscape/possible-value.js';
+import { type AddedValue, addedValues, problemValues, type SiteResult } from './added-columns.js';
 import type { SiteElevation, SiteElevations } from './site-elevation.js';
 import type { Site, SiteRow } from './site-reader.js';
 import type { SitesOptions } from './sites-options.js';
@@ -30,10 +32,10 @@ type Elevated = Extract<SiteElevation, { problem: null }>;
 /** Predicts batches of rows against one isoscape; what does not depend on the rows is made once. */
 export function createSitePredictor(
   isoscape: Isoscape,
+  support: Support,
   elevations: SiteElevations,
   options: SitesOptions,
 ): (rows: readonly SiteRow[]) => Promise<PredictedBatch> {
-  const support = createSupport(isoscape);
   const z = intervalHalfWidth(options.level);
   const { target, plugIn } = options;
 
@@ -42,42 +44,69 @@ export function createSitePredictor(
     for (const { site, problem } of rows) {
       found.push(site === null ? { problem: problem ?? '' } : await elevations.of(site));
     }
-    const good = rows.flatMap(({ site }, i) => (found[i].problem === null && site !== null ? [i] : []));
-    const sites = good.map((i) => rows[i].site as Site);
-    const heights = good.map((i) => found[i] as Elevated);
-    const places = placesOf(sites, heights);
-    const out = createPredictions(sites.length);
-    if (sites.length > 0) predictPlaces(isoscape, places, out, { target, plugIn });
-    const flags = sites.map((site, k) =>
-      support.flags(site.lonDeg, site.latDeg, heights[k].elevationM, heights[k].fromGrid),
-    );
-    const added: AddedValue[][] = found.map(({ problem }) => problemValues(isoscape.isotopes, problem ?? ''));
-    for (const [k, i] of good.entries()) {
-      const result = {
-        d18O: out.d18O[k],
-        d2H: out.d2H[k],
-        varD18O: out.varD18O[k],
-        varD2H: out.varD2H[k],
-        cov: out.cov[k],
-        elevationM: heights[k].elevationM,
-        elevationSource: heights[k].source,
-        nearestStationKm: support.nearestStationKm(sites[k].lonDeg, sites[k].latDeg),
-        support: flags[k],
-      };
+    const located = rows.flatMap(({ site }, i) => (found[i].problem === null && site !== null ? [i] : []));
+    const places = placesOf(rows, found, located);
+    const out = createPredictions(located.length);
+    if (located.length > 0) predictPlaces(isoscape, places, out, { target, plugIn });
+    const problems = found.map(({ problem }) => problem);
+    for (const [k, i] of located.entries()) {
+      const reason = impossibleValue(isoscape.isotopes, out.d18O[k], out.d2H[k]);
+      if (reason !== null) problems[i] = `prediction-impossible: ${reason}`;
+    }
+    const added = problems.map((problem) => problemValues(isoscape.isotopes, problem ?? ''));
+    const flags: (readonly string[])[] = [];
+    for (const [k, i] of located.entries()) {
+      if (problems[i] !== null) continue;
+      const result = resultOf(support, rows[i].site as Site, found[i] as Elevated, out, k);
+      flags.push(result.support);
       added[i] = addedValues(isoscape.isotopes, result, z);
     }
-    return { added, sites, places, problems: found.map(({ problem }) => problem), flags };
+    const good = located.filter((i) => problems[i] === null);
+    const sites = good.map((i) => rows[i].site as Site);
+    return { added, sites, places: placesOf(rows, found, good), problems, flags };
   };
 }
 
-/** An elevation that is not needed and not known stands as 0: no trend term reads it. */
-function placesOf(sites: readonly Site[], heights: readonly Elevated[]): Places {
-  const places = createPlaces(sites.length);
-  for (const [k, site] of sites.entries()) {
-    places.lonDeg[k] = site.lonDeg;
-    places.latDeg[k] = site.latDeg;
-    places.elevationM[k] = Number.isNaN(heights[k].elevationM) ? 0 : heights[k].elevationM;
-    places.elevationVarM2[k] = heights[k].varianceM2;
+/** What is said of the site whose prediction stands at `k` of `out`. */
+function resultOf(
+  support: Support,
+  site: Site,
+  elevation: Elevated,
+  out: Predictions,
+  k: number,
+): SiteResult {
+  const { lonDeg, latDeg } = site;
+  const { elevationM, source, fromGrid } = elevation;
+  return {
+    d18O: out.d18O[k],
+    d2H: out.d2H[k],
+    varD18O: out.varD18O[k],
+    varD2H: out.varD2H[k],
+    cov: out.cov[k],
+    elevationM,
+    elevationSource: source,
+    nearestStationKm: support.nearestStationKm(lonDeg, latDeg),
+    support: support.flags(lonDeg, latDeg, elevationM, fromGrid),
+  };
+}
+
+/**
+ * Places of the rows `which`, all of them located. An elevation that is not needed and not known stands as 0: no trend
+ * term reads it.
+ */
+function placesOf(
+  rows: readonly SiteRow[],
+  found: readonly SiteElevation[],
+  which: readonly number[],
+): Places {
+  const places = createPlaces(which.length);
+  for (const [k, i] of which.entries()) {
+    const { lonDeg, latDeg } = rows[i].site as Site;
+    const { elevationM, varianceM2 } = found[i] as Elevated;
+    places.lonDeg[k] = lonDeg;
+    places.latDeg[k] = latDeg;
+    places.elevationM[k] = Number.isNaN(elevationM) ? 0 : elevationM;
+    places.elevationVarM2[k] = varianceM2;
   }
   return places;
 }

@@ -6,7 +6,7 @@ import {
   type Table,
   type TableRow,
 } from '../../stations/index.js';
-import { SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
+import { ELEVATION_SOURCE, earlierElevation, SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
 
 /** A place asked about, as its row gives it. */
 export interface Site {
@@ -32,12 +32,22 @@ export interface SiteRow {
 
 class RowProblemFound extends Error {}
 
-/** Reads rows one by one; a bad row becomes a problem, never an error. Throws COLUMN_MISSING where no row could be read. */
-export function createSiteReader(table: Table<SiteMeaning>): (row: TableRow) => SiteRow {
+/**
+ * Reads rows one by one; a bad row becomes a problem, never an error. Throws COLUMN_MISSING where no row could be read.
+ *
+ * @param isNearStations whether a place lies in the network's area: what an impossible latitude is judged by
+ */
+export function createSiteReader(
+  table: Table<SiteMeaning>,
+  isNearStations: (lonDeg: number, latDeg: number) => boolean,
+): (row: TableRow) => SiteRow {
   const lonColumn = requireColumn(table, SITE_VOCABULARY, 'lon');
   const latColumn = requireColumn(table, SITE_VOCABULARY, 'lat');
   const elevationColumn = table.columns.get('elevation');
-  const sourceColumn = table.header.indexOf('elevation_source');
+  const sourceColumn =
+    elevationColumn !== undefined && earlierElevation(table.header).has(elevationColumn)
+      ? table.header.indexOf(ELEVATION_SOURCE)
+      : -1;
   const nameColumns = [table.columns.get('id'), table.columns.get('name')].filter((c) => c !== undefined);
 
   const read = (row: TableRow): Site => {
@@ -49,7 +59,7 @@ export function createSiteReader(table: Table<SiteMeaning>): (row: TableRow) => 
     const number = (column: number) => numberIn(table, row, column);
     const lonDeg = number(lonColumn);
     const latDeg = number(latColumn);
-    checkPlace(lonDeg, latDeg);
+    checkPlace(lonDeg, latDeg, isNearStations);
     // An elevation that an earlier run took from a grid is no measurement: it is looked up again, with its error.
     const fromGrid = sourceColumn >= 0 && !['', 'table'].includes(row.cells[sourceColumn].trim());
     const elevationM = elevationColumn === undefined || fromGrid ? Number.NaN : number(elevationColumn);
@@ -79,17 +89,24 @@ function numberIn(table: Table<SiteMeaning>, row: TableRow, column: number): num
   );
 }
 
-function checkPlace(lonDeg: number, latDeg: number): void {
+function checkPlace(
+  lonDeg: number,
+  latDeg: number,
+  isNearStations: (lonDeg: number, latDeg: number) => boolean,
+): void {
   if (Number.isNaN(lonDeg) || Number.isNaN(latDeg)) {
     throw new RowProblemFound('coordinates-missing: longitude and latitude are both needed');
   }
-  if (Math.abs(latDeg) > 90 && Math.abs(lonDeg) <= 90 && Math.abs(latDeg) <= 180) {
+  const canBeExchanged = Math.abs(lonDeg) <= 90 && Math.abs(latDeg) <= 180;
+  if (Math.abs(latDeg) > 90 && canBeExchanged && isNearStations(latDeg, lonDeg)) {
     throw new RowProblemFound(
       `coordinates-swapped: found latitude ${latDeg} and longitude ${lonDeg}, which look exchanged`,
     );
   }
   if (Math.abs(latDeg) > 90) {
-    throw new RowProblemFound(`coordinates-out-of-range: found latitude ${latDeg}, expected -90 to 90`);
+    throw new RowProblemFound(
+      `coordinates-out-of-range: latitude ${latDeg} is beyond 90; expected -90 to 90`,
+    );
   }
   if (Math.abs(lonDeg) > 180) {
     const hint = lonDeg > 180 && lonDeg <= 360 ? ` (${lonDeg} as 0..360 is ${lonDeg - 360})` : '';

@@ -24,5 +24,18 @@ export const SITE_VOCABULARY: Vocabulary<SiteMeaning> = {
   elevation: STATION_VOCABULARY.elevation,
 };
 
+/** Columns `sites` adds itself (see `addedColumns`): the elevation used, and where it is from. */
+export const ELEVATION_USED = 'elevation_m';
+export const ELEVATION_SOURCE = 'elevation_source';
+
+/**
+ * The elevation an earlier run of `sites` added to this table, as a set of one 0-based column; empty where the table
+ * is no output of ours. It must not compete with a column of the user's own.
+ */
+export function earlierElevation(header: readonly string[]): ReadonlySet<number> {
+  const column = header.includes(ELEVATION_SOURCE) ? header.lastIndexOf(ELEVATION_USED) : -1;
+  return new Set(column < 0 ? [] : [column]);
+}
+
 /** The meanings GeoJSON geometry fills. */
 export const SITE_PLACE = { lon: 'lon', lat: 'lat', elevation: 'elevation' } as const;

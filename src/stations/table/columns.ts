@@ -7,6 +7,7 @@ export type ColumnOverrides = Readonly<Record<string, string>>;
 /**
  * Finds which column has which meaning. Overrides come first, then the vocabulary's tiers in its own order.
  *
+ * @param yielding columns that get a meaning only where no other column has it
  * @returns the 0-based column of each meaning found; meanings without a column are not in the map
  * @throws COLUMN_AMBIGUOUS (two headers for one meaning), COLUMN_NOT_FOUND, COLUMN_MEANING_UNKNOWN,
  *   COLUMN_USED_TWICE (overrides)
@@ -15,6 +16,7 @@ export function findColumns<M extends string>(
   header: readonly string[],
   vocabulary: Vocabulary<M>,
   overrides: ColumnOverrides = {},
+  yielding: ReadonlySet<number> = new Set(),
 ): Map<M, number> {
   const found = new Map<M, number>();
   const closed = new Set<M>();
@@ -30,7 +32,9 @@ export function findColumns<M extends string>(
   const taken = new Set(found.values());
   for (const meaning of Object.keys(vocabulary) as M[]) {
     if (closed.has(meaning)) continue;
-    const column = columnByTiers(header, keys, taken, meaning, vocabulary);
+    const column =
+      columnByTiers(header, keys, new Set([...taken, ...yielding]), meaning, vocabulary) ??
+      columnByTiers(header, keys, taken, meaning, vocabulary);
     if (column === null) continue;
     found.set(meaning, column);
     taken.add(column);

@@ -155,7 +155,12 @@ function placeColumns<M extends string>(
     }
   }
   const visible = keys.map((key) => (hidden.has(headerKey(key)) ? '' : key));
-  const columns = findColumns(visible, options.vocabulary, options.columnOverrides);
+  const columns = findColumns(
+    visible,
+    options.vocabulary,
+    options.columnOverrides,
+    options.yieldingColumns?.(keys),
+  );
   if (place === undefined) return columns;
   columns.set(place.lon, keys.length);
   columns.set(place.lat, keys.length + 1);

@@ -53,6 +53,8 @@ export interface TableOptions<M extends string> {
   readonly maxGeojsonBytes?: number;
   /** Meanings of a point's coordinates, so that GeoJSON geometry fills them. */
   readonly placeMeanings?: PlaceMeanings<M>;
+  /** Columns of a header (0-based) that get a meaning only where no other column has it. */
+  readonly yieldingColumns?: (header: readonly string[]) => ReadonlySet<number>;
 }
 
 export interface PlaceMeanings<M extends string> {
@@ -87,7 +89,12 @@ export async function openTable<M extends string>(
   }
   const wholeLines = sample.ended ? sample.text : sample.text.slice(0, lastLineEnd(sample.text));
   const { delimiter, header, rows } = sampleTable(wholeLines, options.vocabulary);
-  const columns = findColumns(header, options.vocabulary, options.columnOverrides);
+  const columns = findColumns(
+    header,
+    options.vocabulary,
+    options.columnOverrides,
+    options.yieldingColumns?.(header.map((cell) => cell.trim())),
+  );
   const numeric = [...columns].filter(([m]) => options.vocabulary[m].kind === 'number').map(([, c]) => c);
   return {
     format: 'csv',

@@ -5,6 +5,19 @@ import { findColumns, headerKey, STATION_VOCABULARY } from '../../../src/station
 const meaningOf = (header: string) => [...findColumns([header], STATION_VOCABULARY).keys()][0] ?? null;
 
 describe('findColumns', () => {
+  it('gives a yielding column a meaning only where no other column has it', () => {
+    const yielding = new Set([1]);
+    expect(findColumns(['elev', 'elevation_m'], STATION_VOCABULARY, {}, yielding).get('elevation')).toBe(0);
+    expect(findColumns(['note', 'elevation_m'], STATION_VOCABULARY, {}, yielding).get('elevation')).toBe(1);
+    const overrides = { elevation: 'elevation_m' };
+    expect(
+      findColumns(['elev', 'elevation_m'], STATION_VOCABULARY, overrides, yielding).get('elevation'),
+    ).toBe(1);
+    expect(() => findColumns(['elev', 'alt', 'elevation_m'], STATION_VOCABULARY, {}, new Set([2]))).toThrow(
+      /"elev" and "alt" could both be elevation/,
+    );
+  });
+
   it.each([
     [
       'd18O',
