@@ -61,6 +61,21 @@ describe('a value that precipitation cannot have', () => {
   });
 });
 
+describe('a table of nothing but such values', () => {
+  it('ends with empty rows, an empty joint file and no fault', async () => {
+    const input = table('only.csv', 'id,lon,lat,elevation\nfar,-30,80,0\n');
+    const run = await sites(input, '--joint', at('none.json'), `--explain=${at('none-explained.json')}`);
+    expect(run.exitCode).toBe(2);
+    expect(run.stderr).toMatch(/SITES_WITH_PROBLEMS: 1 of 1 rows/);
+    expect(JSON.parse(readFileSync(at('none.json'), 'utf8'))).toMatchObject({
+      sites: [],
+      mean: [],
+      covariance: [],
+    });
+    expect(JSON.parse(readFileSync(at('none-explained.json'), 'utf8')).sites).toEqual([]);
+  });
+});
+
 describe('coordinates that look wrong', () => {
   it('are named in one note a kind of slip, and are no refusal', async () => {
     const text =
