@@ -9,8 +9,11 @@ const SIGNALS = ['SIGINT', 'SIGTERM'] as const;
  */
 export async function runInterruptible(work: (signal: AbortSignal) => Promise<void>): Promise<boolean> {
   const stop = new AbortController();
-  const onSignal = () => stop.abort();
-  for (const name of SIGNALS) process.once(name, onSignal);
+  const onSignal = () => {
+    if (stop.signal.aborted) process.exit(EXIT_INTERRUPTED);
+    stop.abort();
+  };
+  for (const name of SIGNALS) process.on(name, onSignal);
   try {
     await work(stop.signal);
     return true;

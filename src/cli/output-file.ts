@@ -31,7 +31,9 @@ function removeUnfinished(): void {
 /** A shell's own codes for a command stopped by a signal: 128 + the signal's number (POSIX). */
 const SIGNAL_EXITS = { SIGINT: 130, SIGTERM: 143 } as const;
 
+/** Ends the process, unless work that tidies up by itself (interrupt.ts) listens too. */
 function stopCleanly(signal: NodeJS.Signals): void {
+  if (process.listenerCount(signal) > 1) return;
   process.exit(SIGNAL_EXITS[signal as keyof typeof SIGNAL_EXITS]);
 }
 
