@@ -7,6 +7,8 @@ if (existsSync(main)) {
   const { run } = await import(main.href);
   process.exitCode = await run(process.argv.slice(2));
 } else {
-  process.stderr.write('rainprint is not built yet: run `npm ci` (or `npm run build`) in its folder first.\n');
+  process.stderr.write(
+    'rainprint is not built yet: run `npm ci` (or `npm run build`) in its folder first.\n',
+  );
   process.exitCode = 1;
 }
