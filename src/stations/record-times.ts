@@ -6,16 +6,12 @@ export type TimeOutcome = 'new' | 'same-day' | 'repeated';
 /** Values that tell two samples of one day apart: δ18O, δ2H (‰) and the amount (mm). */
 export type SampleValues = readonly [d18O: number, d2H: number, amountMm: number];
 
-interface MonthSeen {
-  /** Bit set of days seen (bit 0 where the day is unknown). */
-  days: number;
-  /** A fingerprint of each record with a day: 8 bytes, not the record. */
-  readonly prints: number[];
-}
-
 /** When a station's records were taken, so that a second one of the same time is noticed. */
 export class RecordTimes {
-  #months: Map<number, MonthSeen> | null = null;
+  /** By month (year · 13 + month), a bit set of the days seen; bit 0 where the day is unknown. */
+  #days: Map<number, number> | null = null;
+  /** By month, a fingerprint of each record with a day: 8 bytes, not the record. Months without days need none. */
+  #prints: Map<number, number[]> | null = null;
 
   /**
    * Notes a record. Of one month only the first is new; on one day several samples may be taken (events), so there only
@@ -25,15 +21,17 @@ export class RecordTimes {
     if (Number.isNaN(date.year)) return 'new';
     const key = date.year * 13 + (Number.isNaN(date.month) ? 0 : date.month);
     const day = Number.isNaN(date.day) ? 0 : date.day;
-    this.#months ??= new Map();
-    const seen = this.#months.get(key) ?? { days: 0, prints: [] };
-    this.#months.set(key, seen);
-    const isNewTime = (seen.days & (1 << day)) === 0;
-    seen.days |= 1 << day;
+    this.#days ??= new Map();
+    const days = this.#days.get(key) ?? 0;
+    const isNewTime = (days & (1 << day)) === 0;
+    this.#days.set(key, days | (1 << day));
     if (day === 0) return isNewTime ? 'new' : 'repeated';
+    this.#prints ??= new Map();
+    const prints = this.#prints.get(key) ?? [];
+    this.#prints.set(key, prints);
     const print = fingerprint([day, ...values]);
-    if (!isNewTime && seen.prints.includes(print)) return 'repeated';
-    seen.prints.push(print);
+    if (!isNewTime && prints.includes(print)) return 'repeated';
+    prints.push(print);
     return isNewTime ? 'new' : 'same-day';
   }
 }
