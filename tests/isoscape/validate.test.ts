@@ -70,15 +70,7 @@ describe('validateIsoscape', () => {
   });
 
   it('predicts a block from a refit to the rest, its sampling covariance added', () => {
-    const fold = result.foldOfStation[0];
-    const training = [...result.foldOfStation.keys()].filter((i) => result.foldOfStation[i] !== fold);
-    const refitted = refitOn(isoscape, training);
-    const place = createPlaces(1);
-    place.lonDeg[0] = isoscape.stations.lonDeg[0];
-    place.latDeg[0] = isoscape.stations.latDeg[0];
-    place.elevationM[0] = isoscape.stations.elevationM[0];
-    const out = createPredictions(1);
-    predictPlaces(refitted, place, out);
+    const out = firstStationFromTheRest(isoscape, result.foldOfStation);
     const d18O = methodResult(variable(result, 'blocked', 'd18O'), 'isoscape');
     const d = methodResult(variable(result, 'blocked', 'dexcess'), 'isoscape');
     expect(d18O.mean[0]).toBeCloseTo(out.d18O[0], 12);
@@ -196,15 +188,7 @@ describe('validateIsoscape on other inputs', () => {
     const result = validateIsoscape(isoscape);
     expect(result.folds).toHaveLength(10);
     expect(result.leaveOneOut.variables.map((each) => each.variable)).toEqual(['d2H']);
-    const fold = result.foldOfStation[0];
-    const training = [...result.foldOfStation.keys()].filter((i) => result.foldOfStation[i] !== fold);
-    const refitted = refitOn(isoscape, training);
-    const place = createPlaces(1);
-    place.lonDeg[0] = isoscape.stations.lonDeg[0];
-    place.latDeg[0] = isoscape.stations.latDeg[0];
-    place.elevationM[0] = isoscape.stations.elevationM[0];
-    const out = createPredictions(1);
-    predictPlaces(refitted, place, out);
+    const out = firstStationFromTheRest(isoscape, result.foldOfStation);
     const blocked = methodResult(result.blocked.variables[0], 'isoscape');
     expect(blocked.variance[0]).toBeCloseTo(out.varD2H[0] + 225 / 48, 9);
   });
@@ -234,3 +218,17 @@ describe('validateIsoscape on other inputs', () => {
     );
   });
 });
+
+/** The first station predicted by hand from a refit to every block but its own. */
+function firstStationFromTheRest(isoscape: Isoscape, foldOfStation: Int32Array) {
+  const fold = foldOfStation[0];
+  const training = [...foldOfStation.keys()].filter((i) => foldOfStation[i] !== fold);
+  const refitted = refitOn(isoscape, training);
+  const place = createPlaces(1);
+  place.lonDeg[0] = isoscape.stations.lonDeg[0];
+  place.latDeg[0] = isoscape.stations.latDeg[0];
+  place.elevationM[0] = isoscape.stations.elevationM[0];
+  const out = createPredictions(1);
+  predictPlaces(refitted, place, out);
+  return out;
+}
