@@ -34,6 +34,7 @@ export { refitOn } from './refit.js';
 export { roundPair } from './rounding.js';
 export { readIsoscape, writeIsoscape } from './serialise.js';
 export { createSupport, SUPPORT_FLAGS, type Support, type SupportFlag } from './support.js';
+export * from './surface/index.js';
 export { parseTerms, TERM_NAMES, type TermName } from './trend.js';
 export { type ValidateOptions, validateIsoscape, validateLeaveOneOut } from './validate.js';
 export {

@@ -1,6 +1,6 @@
 import { positionsOnSphereKm } from '../geostat/index.js';
-import { backTransform, type Matrix2, pairCovariance } from './axes.js';
-import { FieldAverage, isoscapeGeometry } from './field-average.js';
+import { backTransform, type Matrix2 } from './axes.js';
+import { type FieldAnswer, FieldAverage, isoscapeGeometry } from './field-average.js';
 import type { Isoscape } from './isoscape.js';
 import type { Places, Predictions } from './places.js';
 import { trendMatrix } from './trend.js';
@@ -75,7 +75,30 @@ export function predictPlaces(
   const positions = positionsOnSphereKm(places.lonDeg.subarray(0, count), places.latDeg.subarray(0, count));
   const rows = trendMatrix(isoscape.terms, places.latDeg.subarray(0, count), places.elevationM);
   const answers = ready.fields.map((field) => field.predict(positions, rows, count));
-  const nuggets = ready.fields.map((field) => ((options.target ?? 'site') === 'site' ? field.nugget : 0));
+  const site = (options.target ?? 'site') === 'site';
+  combineFields(isoscape, ready, answers, site, places.elevationVarM2, count, out);
+}
+
+/** The part of a `FieldAnswer` that the isotopes are made of. */
+export type FieldColumns = Pick<FieldAnswer, 'mean' | 'variance' | 'otherMean'>;
+
+/**
+ * From what the fields say about places to means, variances and the covariance of the isotopes.
+ *
+ * @param answers one a field; signal variances, no nugget
+ * @param site    whether the nugget is added (target `site`)
+ * @param elevationVarM2 variance of each place's elevation error
+ */
+export function combineFields(
+  isoscape: Isoscape,
+  ready: PreparedIsoscape,
+  answers: readonly FieldColumns[],
+  site: boolean,
+  elevationVarM2: ArrayLike<number>,
+  count: number,
+  out: Predictions,
+): void {
+  const nuggets = ready.fields.map((field) => (site ? field.nugget : 0));
   const slopes = elevationSlopes(ready);
   if (isoscape.isotopes !== 'both') {
     const [answer] = answers;
@@ -83,30 +106,35 @@ export function predictPlaces(
     const variance = isoscape.isotopes === 'd18O' ? out.varD18O : out.varD2H;
     for (let j = 0; j < count; j++) {
       mean[j] = answer.mean[j];
-      variance[j] = answer.variance[j] + nuggets[0] + places.elevationVarM2[j] * slopes[0] ** 2;
+      variance[j] = answer.variance[j] + nuggets[0] + elevationVarM2[j] * slopes[0] ** 2;
     }
     return;
   }
-  const back = ready.back!;
+  const [t0, t1, t2, t3] = ready.back!;
   const [along, across] = answers;
+  const slopeO = t0 * slopes[0] + t1 * slopes[1];
+  const slopeH = t2 * slopes[0] + t3 * slopes[1];
+  const { turnVarianceRad2 } = ready;
   for (let j = 0; j < count; j++) {
     const u1 = along.mean[j];
     const u2 = across.mean[j];
-    out.d18O[j] = back[0] * u1 + back[1] * u2;
-    out.d2H[j] = back[2] * u1 + back[3] * u2;
-    let [varO, cov, varH] = pairCovariance(
-      back,
-      along.variance[j] + nuggets[0],
-      across.variance[j] + nuggets[1],
-    );
-    const shared = [
-      turnError(ready, u1, u2, along.otherMean?.[j] ?? u2, across.otherMean?.[j] ?? u1),
-      scaled(back, slopes[0], slopes[1], Math.sqrt(places.elevationVarM2[j])),
-    ];
-    for (const [eO, eH] of shared) {
-      varO += eO * eO;
-      cov += eO * eH;
-      varH += eH * eH;
+    const v1 = along.variance[j] + nuggets[0];
+    const v2 = across.variance[j] + nuggets[1];
+    const e = elevationVarM2[j];
+    out.d18O[j] = t0 * u1 + t1 * u2;
+    out.d2H[j] = t2 * u1 + t3 * u2;
+    let varO = t0 * t0 * v1 + t1 * t1 * v2 + e * slopeO * slopeO;
+    let cov = t0 * t2 * v1 + t1 * t3 * v2 + e * slopeO * slopeH;
+    let varH = t2 * t2 * v1 + t3 * t3 * v2 + e * slopeH * slopeH;
+    if (turnVarianceRad2 > 0) {
+      // As `turnError`, whose square is added; written out because grids come here for every cell.
+      const a = (along.otherMean?.[j] ?? u2) - u2;
+      const b = u1 - (across.otherMean?.[j] ?? u1);
+      const eO = t0 * a + t1 * b;
+      const eH = t2 * a + t3 * b;
+      varO += turnVarianceRad2 * eO * eO;
+      cov += turnVarianceRad2 * eO * eH;
+      varH += turnVarianceRad2 * eH * eH;
     }
     out.varD18O[j] = varO;
     out.cov[j] = cov;

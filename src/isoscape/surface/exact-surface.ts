@@ -1,0 +1,47 @@
+import type { Isoscape } from '../isoscape.js';
+import { createPlaces, createPredictions, type Places, type Predictions } from '../places.js';
+import { predictPlaces } from '../predict.js';
+import type { Surface, SurfaceOptions } from './surface.js';
+
+/** Cells handed to the predictor at once: enough to pay for loading a factor, few enough to keep memory flat. */
+const CELLS_AT_ONCE = 8192;
+
+/** Every wanted cell by itself: what the interpolating surface is measured against. */
+export function createExactSurface(
+  isoscape: Isoscape,
+  options: Pick<SurfaceOptions, 'plugIn' | 'target'>,
+): Surface {
+  const { plugIn, target } = options;
+  return {
+    predictWindow(_window, places, wanted, out) {
+      const cells: number[] = [];
+      const flush = () => {
+        const part = gather(places, cells);
+        const answers = createPredictions(cells.length);
+        predictPlaces(isoscape, part, answers, { plugIn, target });
+        scatter(answers, cells, out);
+        cells.length = 0;
+      };
+      for (let k = 0; k < wanted.length; k++) {
+        if (wanted[k] === 1) cells.push(k);
+        if (cells.length === CELLS_AT_ONCE) flush();
+      }
+      if (cells.length > 0) flush();
+    },
+  };
+}
+
+/** The places of some cells, in their order. */
+export function gather(places: Places, cells: readonly number[]): Places {
+  const part = createPlaces(cells.length);
+  for (const name of ['lonDeg', 'latDeg', 'elevationM', 'elevationVarM2'] as const) {
+    for (let j = 0; j < cells.length; j++) part[name][j] = places[name][cells[j]];
+  }
+  return part;
+}
+
+function scatter(answers: Predictions, cells: readonly number[], out: Predictions): void {
+  for (const name of ['d18O', 'd2H', 'varD18O', 'varD2H', 'cov'] as const) {
+    for (let j = 0; j < cells.length; j++) out[name][cells[j]] = answers[name][j];
+  }
+}
