@@ -144,6 +144,21 @@ export class FieldSystem {
     return this.#family;
   }
 
+  /** L of V = LLᵀ: n × n, row-major, lower triangle; not to be written. */
+  get factor(): Float64Array {
+    return this.#factor;
+  }
+
+  /** L⁻¹F: n × p, row-major; not to be written. */
+  get whitenedTrend(): Float64Array {
+    return this.#whitenedTrend;
+  }
+
+  /** Cholesky factor of FᵀV⁻¹F: p × p, row-major, lower triangle; not to be written. */
+  get trendFactor(): Float64Array {
+    return this.#trendFactor;
+  }
+
   /** Kriging weights λ (n) of one place: û = λᵀz (for explanations). */
   krigingWeights(place: Float64Array, trendRow: Float64Array): Float64Array {
     const { n, p } = this.#geometry;
