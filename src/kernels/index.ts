@@ -1,8 +1,14 @@
-export { choleskyInPlace, dot } from './cholesky.js';
-export { crossProduct, innerProduct, multiplyVector } from './products.js';
+export { COVARIANCE_KINDS, type CovarianceKind } from './covariance-kind.js';
 export {
+  choleskyInPlace,
+  covarianceBlock,
+  createDenseWorkspace,
   inverseFromCholesky,
-  solveLowerInPlace,
+  multiplyInto,
   solveLowerManyInPlace,
-  solveLowerTransposedInPlace,
-} from './triangular.js';
+} from './dense.js';
+export type { DenseWorkspace } from './kernel-set.js';
+export { dot } from './reference/cholesky.js';
+export { crossProduct, innerProduct, multiplyVector } from './reference/products.js';
+export { solveLowerInPlace, solveLowerTransposedInPlace } from './reference/triangular.js';
+export { kernelName, useKernels } from './selection.js';

@@ -1,4 +1,4 @@
-import { RainprintError } from '../errors.js';
+import { notPositiveDefinite } from '../not-positive-definite.js';
 import { sums, tileDots } from './tile.js';
 
 /** Columns eliminated together: a panel of 48 columns of 1,000 rows (384 kB) stays in the second-level cache. */
@@ -28,13 +28,7 @@ function factorPanel(a: Float64Array, n: number, start: number, end: number): vo
     const rowJ = j * n;
     let pivot = a[rowJ + j];
     for (let k = start; k < j; k++) pivot -= a[rowJ + k] * a[rowJ + k];
-    if (!(pivot > 0)) {
-      throw new RainprintError(
-        'MATRIX_NOT_POSITIVE_DEFINITE',
-        `matrix of ${n} rows is not positive definite: pivot ${j} is ${pivot}`,
-        { pivot: j, rows: n },
-      );
-    }
+    if (!(pivot > 0)) throw notPositiveDefinite(n, j, pivot);
     const diagonal = Math.sqrt(pivot);
     a[rowJ + j] = diagonal;
     const inverse = 1 / diagonal;

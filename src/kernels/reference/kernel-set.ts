@@ -1,0 +1,18 @@
+import type { KernelSet } from '../kernel-set.js';
+import { choleskyInPlace } from './cholesky.js';
+import { covarianceBlock } from './covariance.js';
+import { inverseFromCholesky } from './inverse.js';
+import { multiplyInto } from './multiply.js';
+import { solveLowerManyInPlace } from './triangular.js';
+import { createDenseWorkspace } from './workspace.js';
+
+/** The kernels in plain TypeScript: what the compiled ones are compared with, and the way without SIMD. */
+export const referenceKernels: KernelSet = {
+  name: 'reference',
+  createDenseWorkspace,
+  choleskyInPlace,
+  solveLowerManyInPlace,
+  inverseFromCholesky,
+  multiplyInto,
+  covarianceBlock,
+};

@@ -1,0 +1,18 @@
+import type { DenseWorkspace } from '../kernel-set.js';
+import { choleskyInPlace } from './cholesky.js';
+import { solveLowerManyInPlace, solveLowerTransposedManyInPlace } from './triangular.js';
+
+/** See `createDenseWorkspace` of index.ts. */
+export function createDenseWorkspace(n: number, width: number): DenseWorkspace {
+  const matrix = new Float64Array(n * n);
+  const block = new Float64Array(n * width);
+  return {
+    n,
+    width,
+    matrix,
+    block,
+    cholesky: () => choleskyInPlace(matrix, n),
+    solveLower: (columns) => solveLowerManyInPlace(matrix, n, block, columns),
+    solveLowerTransposed: (columns) => solveLowerTransposedManyInPlace(matrix, n, block, columns),
+  };
+}
