@@ -1,3 +1,5 @@
+import { type BandStatistics, standardDeviation } from './band-statistics.js';
+
 /** What a band holds: its short name, the unit of its values and a sentence a person can read. */
 export interface BandDescription {
   readonly name: string;
@@ -6,11 +8,14 @@ export interface BandDescription {
 }
 
 /**
- * Text of tag 42112 (GDAL_METADATA): `DESCRIPTION` and `UNITTYPE` are the names GDAL and QGIS show for a band;
- * items without a sample belong to the whole file. One item a line.
+ * Text of tag 42112 (GDAL_METADATA): `DESCRIPTION` and `UNITTYPE` are the names GDAL and QGIS show for a band, the
+ * statistics what they stretch colours by; items without a sample belong to the whole file. One item a line.
+ *
+ * @param statistics one a band
  */
 export function gdalMetadataXml(
   bands: readonly BandDescription[],
+  statistics: readonly BandStatistics[],
   items: Readonly<Record<string, string>>,
 ): string {
   const lines = ['<GDALMetadata>'];
@@ -23,9 +28,22 @@ export function gdalMetadataXml(
       `  <Item name="UNITTYPE" sample="${sample}" role="unittype">${escapeXml(band.unit)}</Item>`,
       `  <Item name="long_name" sample="${sample}">${escapeXml(band.longName)}</Item>`,
     );
+    for (const [name, value] of statisticsItems(statistics[sample]!)) {
+      lines.push(`  <Item name="STATISTICS_${name}" sample="${sample}">${value}</Item>`);
+    }
   });
   lines.push('</GDALMetadata>', '');
   return lines.join('\n');
+}
+
+function statisticsItems(s: BandStatistics): readonly (readonly [string, number])[] {
+  if (s.count === 0) return [];
+  return [
+    ['MINIMUM', s.min],
+    ['MAXIMUM', s.max],
+    ['MEAN', s.mean],
+    ['STDDEV', standardDeviation(s)],
+  ];
 }
 
 /** GDAL's GeoTIFF driver undoes escapes twice, and escapes `&` twice when it writes: so do we. */

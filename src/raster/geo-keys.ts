@@ -1,7 +1,12 @@
 import { type TagEntry, TIFF_TAG } from './tiff-tags.js';
 
-/** Coordinate reference systems our writer can declare. */
-export type WritableCrs = 'EPSG:4326';
+/** A coordinate reference system of the EPSG registry, as a file declares it. */
+export interface WritableCrs {
+  readonly epsg: number;
+  readonly kind: 'geographic' | 'projected';
+  /** For people to read; the code decides. */
+  readonly name: string;
+}
 
 /** Outer corner of the top-left cell and cell sizes, all in units of the CRS; rows run from north to south. */
 export interface NorthUpTransform {
@@ -11,21 +16,29 @@ export interface NorthUpTransform {
   readonly cellHeight: number;
 }
 
-const CITATION = 'WGS 84|';
-
 /**
  * GeoTIFF 1.1 (OGC 19-008r4) keys and tags of a north-up raster whose cells are areas: the tie point is the outer
- * corner of the top-left cell.
+ * corner of the top-left cell. Units of a projected CRS follow from its EPSG code.
  */
 export function georeferenceTags(crs: WritableCrs, transform: NorthUpTransform): TagEntry[] {
-  const epsg = Number(crs.slice('EPSG:'.length));
+  const citation = asciiCitation(crs.name);
+  const model = { projected: 1, geographic: 2 }[crs.kind];
   const keys = [
-    [1024, 0, 1, 2], // GTModelType: geographic
+    [1024, 0, 1, model], // GTModelType
     [1025, 0, 1, 1], // GTRasterType: pixel is area
-    [2048, 0, 1, epsg], // GeodeticCRS
-    [2049, TIFF_TAG.geoAsciiParams, CITATION.length, 0], // GeodeticCitation
-    [2054, 0, 1, 9102], // angular unit: degree
   ];
+  if (crs.kind === 'projected') {
+    keys.push(
+      [1026, TIFF_TAG.geoAsciiParams, citation.length, 0], // GTCitation
+      [3072, 0, 1, crs.epsg], // ProjectedCRS
+    );
+  } else {
+    keys.push(
+      [2048, 0, 1, crs.epsg], // GeodeticCRS
+      [2049, TIFF_TAG.geoAsciiParams, citation.length, 0], // GeodeticCitation
+      [2054, 0, 1, 9102], // angular unit: degree
+    );
+  }
   return [
     {
       tag: TIFF_TAG.modelPixelScale,
@@ -38,6 +51,11 @@ export function georeferenceTags(crs: WritableCrs, transform: NorthUpTransform):
       values: [0, 0, 0, transform.originX, transform.originY, 0],
     },
     { tag: TIFF_TAG.geoKeyDirectory, type: 'short', values: [1, 1, 0, keys.length, ...keys.flat()] },
-    { tag: TIFF_TAG.geoAsciiParams, type: 'text', text: CITATION },
+    { tag: TIFF_TAG.geoAsciiParams, type: 'text', text: citation },
   ];
+}
+
+/** GeoAsciiParams are 7-bit; a bar ends each text. */
+function asciiCitation(name: string): string {
+  return `${name.replace(/[^ -{}~]/g, '?')}|`;
 }

@@ -1,4 +1,8 @@
+export { type BlockPosition, blockOrder } from './block-order.js';
 export { bundledElevationPath } from './bundled-elevation.js';
+export { type BandSummary, type CogSpec, type CogSummary, type CogWriter, openCog } from './cog-assembler.js';
+export { blockTransferList, type EncodedBlock, encodeCogBlock } from './cog-block.js';
+export type { CogFormat, Reduction, SampleType } from './cog-format.js';
 export {
   type ElevationCells,
   type ElevationGrid,
@@ -7,6 +11,12 @@ export {
 } from './elevation-grid.js';
 export type { BandDescription } from './gdal-metadata.js';
 export type { NorthUpTransform, WritableCrs } from './geo-keys.js';
-export { type GeoTiffSpec, type RowSource, type WriteOptions, writeGeoTiff } from './geotiff-writer.js';
+export {
+  type BandRows,
+  type GeoTiffSpec,
+  type RowSource,
+  type WriteOptions,
+  writeGeoTiff,
+} from './geotiff-writer.js';
+export { roundToPowerOfTwo } from './power-of-two-rounding.js';
 export type { LonLatGrid } from './raster-placement.js';
-export type { BandRows, SampleType } from './tile-encoder.js';

@@ -1,5 +1,5 @@
 import { writeFileSync } from 'node:fs';
-import { encodeDirectory, type TagEntry } from '../../src/raster/tiff-tags.js';
+import { encodeDirectories, type TagEntry } from '../../src/raster/tiff-tags.js';
 
 export interface HandMade {
   readonly width: number;
@@ -39,21 +39,24 @@ export function writeHandMade(path: string, made: HandMade): void {
   const data = Buffer.from(Float32Array.from(made.values).buffer);
   const per = (value: number) => new Array<number>(bandCount).fill(value);
   const head = (offset: number) =>
-    encodeDirectory(
+    encodeDirectories(
       [
-        { tag: 256, type: 'long', values: [made.width] },
-        { tag: 257, type: 'long', values: [made.height] },
-        { tag: 258, type: 'short', values: per(32) },
-        { tag: 259, type: 'short', values: [1] },
-        { tag: 262, type: 'short', values: [1] },
-        { tag: 273, type: 'long', values: [offset] },
-        { tag: 277, type: 'short', values: [bandCount] },
-        { tag: 278, type: 'long', values: [made.height] },
-        { tag: 279, type: 'long', values: [data.length] },
-        { tag: 339, type: 'short', values: per(3) },
-        ...made.tags,
+        [
+          { tag: 256, type: 'long', values: [made.width] },
+          { tag: 257, type: 'long', values: [made.height] },
+          { tag: 258, type: 'short', values: per(32) },
+          { tag: 259, type: 'short', values: [1] },
+          { tag: 262, type: 'short', values: [1] },
+          { tag: 273, type: 'long', values: [offset] },
+          { tag: 277, type: 'short', values: [bandCount] },
+          { tag: 278, type: 'long', values: [made.height] },
+          { tag: 279, type: 'long', values: [data.length] },
+          { tag: 339, type: 'short', values: per(3) },
+          ...made.tags,
+        ],
       ],
       8,
+      'classic',
     );
   const dataOffset = 8 + head(0).length;
   const header = Buffer.from([0x49, 0x49, 0x2a, 0, 8, 0, 0, 0]);
