@@ -60,6 +60,11 @@ export const ERROR_CODES = {
   // isoscape
   TERM_UNKNOWN: 'input',
   ISOTOPE_MISSING: 'input',
+  COVARIATE_NAME_INVALID: 'input',
+  COVARIATE_TWICE: 'input',
+  COVARIATE_MISSING: 'input',
+  COVARIATE_CONSTANT: 'input',
+  COVARIATE_COLLINEAR: 'input',
   ISOSCAPE_NOT_JSON: 'input',
   ISOSCAPE_DAMAGED: 'input',
   ISOSCAPE_OLDER: 'input',

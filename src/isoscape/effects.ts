@@ -1,6 +1,6 @@
 import { backTransform } from './axes.js';
 import type { FittedField, Isoscape, JointIsoscape } from './isoscape.js';
-import { type TermName, termLatitudeSlope } from './trend.js';
+import { TERM_NAMES, termLatitudeSlope } from './trend.js';
 
 /** A trend effect and its standard error, in the unit its maker states. */
 export interface Effect {
@@ -38,8 +38,18 @@ export function elevationEffect(isoscape: Isoscape): IsotopeEffects | null {
 
 /** Latitude effect in ‰ per degree northward at `latDeg`, of the zonal terms alone; null where there is none. */
 export function latitudeEffect(isoscape: Isoscape, latDeg: number): IsotopeEffects | null {
-  if (isoscape.terms.every((term) => term === 'elevation')) return null;
+  if (!TERM_NAMES.some((term) => term !== 'elevation' && isoscape.terms.includes(term))) return null;
   return trendEffect(isoscape, (term) => termLatitudeSlope(term, latDeg));
+}
+
+/** Effect of each covariate of an isoscape, in ‰ per unit of the covariate (as its raster has it). */
+export function covariateEffects(
+  isoscape: Isoscape,
+): readonly { readonly name: string; readonly effects: IsotopeEffects }[] {
+  return isoscape.covariates.map(({ name, scale }) => ({
+    name,
+    effects: trendEffect(isoscape, (term) => (term === name ? 1 / scale : 0)),
+  }));
 }
 
 /** Mean latitude of the stations, degrees: where the latitude effect of a network is reported. */
@@ -61,7 +71,7 @@ export function axesSummary(isoscape: JointIsoscape): AxesSummary {
 }
 
 /** Σ slope_k·β_k of each field, mapped to the isotopes; the two fields are independent, so Σ = T diag(v₁, v₂) Tᵀ. */
-function trendEffect(isoscape: Isoscape, slopeOf: (term: TermName) => number): IsotopeEffects {
+function trendEffect(isoscape: Isoscape, slopeOf: (term: string) => number): IsotopeEffects {
   const slopes = [0, ...isoscape.terms.map(slopeOf)];
   if (isoscape.isotopes !== 'both') {
     const { value, variance } = contrast(isoscape.field, slopes);

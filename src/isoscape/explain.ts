@@ -2,8 +2,8 @@ import { FieldSystem, positionsOnSphereKm } from '../geostat/index.js';
 import { backTransform } from './axes.js';
 import { isoscapeGeometry } from './field-average.js';
 import type { FittedField, Isoscape } from './isoscape.js';
-import type { Places } from './places.js';
-import { trendMatrix } from './trend.js';
+import { type Places, requireCovariates } from './places.js';
+import { trendRows } from './trend.js';
 
 /** What one station contributes to a prediction. */
 export interface StationWeight {
@@ -23,6 +23,7 @@ const STATIONS_SHOWN = 10;
 
 /** Takes predictions apart, at the optimum of the parameters (plug-in), for `sites --explain`. */
 export function explainPlaces(isoscape: Isoscape, places: Places): Explanation[] {
+  requireCovariates(isoscape, places);
   const geometry = isoscapeGeometry(isoscape);
   const fields = isoscape.isotopes === 'both' ? [isoscape.along, isoscape.across] : [isoscape.field];
   const systems = fields.map((field) => {
@@ -30,7 +31,7 @@ export function explainPlaces(isoscape: Isoscape, places: Places): Explanation[]
     return { field, system, data: system.solveData(field.values) };
   });
   const positions = positionsOnSphereKm(places.lonDeg, places.latDeg);
-  const rows = trendMatrix(isoscape.terms, places.latDeg, places.elevationM);
+  const rows = trendRows(isoscape, places, places.count);
   const p = isoscape.terms.length + 1;
   return Array.from({ length: places.count }, (_, j) => {
     const row = rows.subarray(j * p, (j + 1) * p);

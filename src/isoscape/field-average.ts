@@ -8,13 +8,14 @@ import {
   predictField,
 } from '../geostat/index.js';
 import type { FieldNode, FittedField, Isoscape } from './isoscape.js';
-import { trendMatrix } from './trend.js';
+import { trendRows } from './trend.js';
 
 /** Geometry of an isoscape's stations and trend. */
-export function isoscapeGeometry({ stations, terms }: Isoscape): FieldGeometry {
+export function isoscapeGeometry(isoscape: Isoscape): FieldGeometry {
+  const { stations, terms } = isoscape;
   return createGeometry(
     positionsOnSphereKm(stations.lonDeg, stations.latDeg),
-    trendMatrix(terms, stations.latDeg, stations.elevationM),
+    trendRows(isoscape, stations),
     terms.length + 1,
   );
 }

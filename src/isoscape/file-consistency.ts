@@ -1,4 +1,6 @@
+import { checkCovariateName } from './covariate.js';
 import type { FittedField, Isoscape } from './isoscape.js';
+import { TERM_NAMES } from './trend.js';
 
 export interface Inconsistency {
   readonly member: string;
@@ -24,6 +26,8 @@ export function findInconsistency(isoscape: Isoscape): Inconsistency | null {
     return { member: 'stations.effectiveRecords', reason: 'a number of records is not above 0' };
   }
   if (new Set(terms).size !== terms.length) return { member: 'terms', reason: 'a term stands twice' };
+  const foreign = termInconsistency(isoscape);
+  if (foreign !== null) return foreign;
   const fields =
     isoscape.isotopes === 'both'
       ? ([
@@ -38,6 +42,36 @@ export function findInconsistency(isoscape: Isoscape): Inconsistency | null {
     if (found !== null) return { member: `${member}.${found.member}`, reason: found.reason };
   }
   return null;
+}
+
+/** Terms are built-in ones, then the covariates by name, each with its values at the stations. */
+function termInconsistency({ terms, covariates, stations }: Isoscape): Inconsistency | null {
+  const names = covariates.map(({ name }) => name);
+  const badName = names.find((name, k) => !isCovariateName(name) || (k > 0 && !(names[k - 1] < name)));
+  if (badName !== undefined) {
+    return { member: 'covariates', reason: `the name "${badName}" is no name, or not in order` };
+  }
+  if (stations.covariates.length !== names.length) {
+    return {
+      member: 'stations.covariates',
+      reason: `${stations.covariates.length} columns where ${names.length} were expected`,
+    };
+  }
+  const builtIn = terms.slice(0, terms.length - names.length);
+  const unknown = builtIn.find((term) => !(TERM_NAMES as readonly string[]).includes(term));
+  if (unknown !== undefined) return { member: 'terms', reason: `the term "${unknown}" is not known` };
+  const last = terms.slice(builtIn.length);
+  return last.length === names.length && last.every((term, k) => term === names[k])
+    ? null
+    : { member: 'terms', reason: `the last terms are not the covariates ${names.join(', ')}` };
+}
+
+function isCovariateName(name: string): boolean {
+  try {
+    return checkCovariateName(name) === name;
+  } catch {
+    return false;
+  }
 }
 
 function fieldInconsistency(field: FittedField, n: number, p: number): Inconsistency | null {

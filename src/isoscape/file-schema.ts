@@ -1,6 +1,5 @@
 import { z } from 'zod';
 import { COVARIANCE_FAMILIES } from '../geostat/index.js';
-import { TERM_NAMES } from './trend.js';
 
 /** Shape of an isoscape file: checked once at the border, plain typed data inside. */
 
@@ -62,10 +61,20 @@ const stations = z
     d18O: column,
     d2H: column,
     effectiveRecords: column,
+    covariates: z.array(finiteColumn).default([]),
   })
-  .refine((columns) => new Set(Object.values(columns).map((values) => values.length)).size === 1, {
-    message: 'the station columns differ in length',
-  });
+  .refine(
+    ({ covariates, ...columns }) =>
+      new Set([...Object.values(columns), ...covariates].map((values) => values.length)).size === 1,
+    { message: 'the station columns differ in length' },
+  );
+
+const covariate = z.strictObject({
+  name: z.string(),
+  source: z.string(),
+  centre: z.number(),
+  scale: z.number().positive(),
+});
 
 const common = {
   format: z.literal('rainprint-isoscape'),
@@ -87,11 +96,12 @@ const common = {
   familyCandidates: z.array(
     z.strictObject({ family: z.enum(COVARIANCE_FAMILIES), logLikelihood: z.number() }),
   ),
-  terms: z.array(z.enum(TERM_NAMES)),
+  terms: z.array(z.string()),
+  covariates: z.array(covariate).default([]),
   termsChosen: z.enum(['auto', 'fixed']),
   trendCandidates: z.array(
     z.strictObject({
-      terms: z.array(z.enum(TERM_NAMES)),
+      terms: z.array(z.string()),
       logLikelihood: z.number(),
       parameterCount: z.number().int(),
       // Infinite (too few stations for the set) is null in JSON.

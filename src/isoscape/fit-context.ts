@@ -1,17 +1,21 @@
 import { createGeometry, type FieldGeometry } from '../geostat/index.js';
 import type { Network } from '../stations/network.js';
 import { contentHash } from './canonical-json.js';
+import { checkCovariatesTellApart } from './collinear-terms.js';
+import type { Covariate } from './covariate.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import {
   ALGORITHM_VERSION,
+  FIRST_SCHEMA_VERSION,
   type FittedField,
   ISOSCAPE_SCHEMA_VERSION,
   type Isoscape,
   type SingleIsoscape,
   type StationColumns,
 } from './isoscape.js';
+import { storedStations } from './station-columns.js';
 import { supportLimits } from './support.js';
-import { parseTerms, type TermName, trendMatrix } from './trend.js';
+import { parseTerms, trendRows } from './trend.js';
 import { supportedCandidates } from './trend-choice.js';
 
 /** What the fit of a pair and of one isotope share. */
@@ -20,11 +24,13 @@ export interface FitContext {
   readonly options: FitOptions;
   readonly onProgress: OnFitProgress;
   readonly stations: StationColumns;
+  /** In the order of their names. */
+  readonly covariates: readonly Covariate[];
   readonly positionsKm: Float64Array;
 }
 
 export interface ChosenTrend {
-  readonly terms: readonly TermName[];
+  readonly terms: readonly string[];
   readonly geometry: FieldGeometry;
   readonly candidates: SingleIsoscape['trendCandidates'];
 }
@@ -33,43 +39,49 @@ type SupportedCandidates = ReturnType<typeof supportedCandidates>;
 
 /** The trend the user named, or the best of the sets this network can tell apart. */
 export function chooseTrend(
-  { options, stations, positionsKm }: FitContext,
-  choose: (candidates: SupportedCandidates) => { candidates: ChosenTrend['candidates']; best: TermName[] },
+  context: FitContext,
+  choose: (candidates: SupportedCandidates) => { candidates: ChosenTrend['candidates']; best: string[] },
 ): ChosenTrend {
+  const { options, stations, covariates, positionsKm } = context;
+  const geometryOf = (terms: readonly string[]) =>
+    createGeometry(positionsKm, trendRows({ terms, covariates }, stations), terms.length + 1);
   const asked = options.terms ?? 'auto';
-  const geometryOf = (terms: readonly TermName[]) =>
-    createGeometry(positionsKm, trendMatrix(terms, stations.latDeg, stations.elevationM), terms.length + 1);
-  if (asked !== 'auto') {
-    const terms = parseTerms(asked.join(','));
-    return { terms, geometry: geometryOf(terms), candidates: [] };
-  }
-  const { candidates, best } = choose(supportedCandidates(positionsKm, stations.latDeg, stations.elevationM));
+  const names = covariates.map(({ name }) => name);
+  const terms = asked === 'auto' ? names : parseTerms(asked.join(','), names);
+  checkCovariatesTellApart({ terms, covariates }, stations);
+  if (asked !== 'auto') return { terms, geometry: geometryOf(terms), candidates: [] };
+  const { candidates, best } = choose(supportedCandidates(context));
   return { terms: best, geometry: geometryOf(best), candidates };
 }
 
 /** The members both kinds of isoscape have; the id hashes inputs, options and algorithm version, nothing computed. */
 export function commonPart(
-  { network, options, stations }: FitContext,
+  { network, options, stations, covariates }: FitContext,
   trend: ChosenTrend,
   family: { family: Isoscape['family']; candidates: Isoscape['familyCandidates'] },
   samplingScale: number,
   fields: readonly FittedField[],
 ) {
+  const asked = options.terms ?? 'auto';
   const identity = {
-    stations,
+    stations: storedStations(stations),
     isotopes: network.isotopes,
     season: network.season.months,
     years: network.years,
     sampling: network.sampling,
     family: options.family ?? 'auto',
-    terms: options.terms ?? 'auto',
+    terms: asked,
     samplingScale: options.samplingScale ?? 1,
     fix: options.fix ?? {},
     algorithmVersion: ALGORITHM_VERSION,
+    // The trend is the same whether the terms name the covariates or not. Without any the id is what it always was.
+    ...(covariates.length === 0
+      ? {}
+      : { covariates: covariates.map(({ name }) => name), terms: asked === 'auto' ? asked : trend.terms }),
   };
   return {
     id: contentHash(identity),
-    schemaVersion: ISOSCAPE_SCHEMA_VERSION,
+    schemaVersion: covariates.length === 0 ? FIRST_SCHEMA_VERSION : ISOSCAPE_SCHEMA_VERSION,
     algorithmVersion: ALGORITHM_VERSION,
     toolVersion: options.toolVersion ?? '',
     networkName: network.name,
@@ -85,7 +97,8 @@ export function commonPart(
     familyChosen: (options.family ?? 'auto') === 'auto' ? ('auto' as const) : ('fixed' as const),
     familyCandidates: family.candidates,
     terms: trend.terms,
-    termsChosen: (options.terms ?? 'auto') === 'auto' ? ('auto' as const) : ('fixed' as const),
+    covariates,
+    termsChosen: asked === 'auto' ? ('auto' as const) : ('fixed' as const),
     trendCandidates: trend.candidates,
     support: supportLimits(stations, family.family, fields),
     notes: [],

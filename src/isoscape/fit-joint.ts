@@ -9,7 +9,7 @@ import { nameAxes, startFrom, turnVariance } from './pair-fit.js';
 import { choosePairFamily, choosePairTrend, fieldsAlike, searchTurn } from './pair-search.js';
 import { fitSamplingScale } from './sampling-scale.js';
 import { reciprocalRecords, withinCovariance } from './sampling-variance.js';
-import { type TermName, trendMatrix } from './trend.js';
+import { trendRows } from './trend.js';
 import { supportedCandidates } from './trend-choice.js';
 
 /** The along/across model of both isotopes. */
@@ -67,14 +67,16 @@ export function fitJoint(context: FitContext): JointIsoscape {
 }
 
 /** Covariance of the regression residuals: whitens the axes where no within-station covariance is known. */
-function residualCovariance({ options, stations, positionsKm }: FitContext): PairCovariance {
-  const terms: readonly TermName[] =
+function residualCovariance(context: FitContext): PairCovariance {
+  const { options, stations, covariates } = context;
+  const names = covariates.map(({ name }) => name);
+  const terms: readonly string[] =
     options.terms === undefined || options.terms === 'auto'
-      ? (supportedCandidates(positionsKm, stations.latDeg, stations.elevationM).at(-1)?.terms ?? [])
-      : options.terms;
+      ? (supportedCandidates(context).at(-1)?.terms ?? [])
+      : [...options.terms.filter((term) => !names.includes(term)), ...names];
   const p = terms.length + 1;
   const n = stations.latDeg.length;
-  const trend = trendMatrix(terms, stations.latDeg, stations.elevationM);
+  const trend = trendRows({ terms, covariates }, stations);
   const o = ordinaryLeastSquares({ n, p, trend }, stations.d18O).residuals;
   const h = ordinaryLeastSquares({ n, p, trend }, stations.d2H).residuals;
   const mean = (a: Float64Array, b: Float64Array) =>

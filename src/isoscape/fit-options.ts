@@ -1,11 +1,16 @@
 import type { CovarianceFamily, FixedParameters } from '../geostat/index.js';
-import type { TermName } from './trend.js';
+import type { CovariateValues } from './covariate.js';
 
 export interface FitOptions {
   /** Covariance family, or `auto`: the one with the largest restricted likelihood at the chosen trend. Default auto. */
   readonly family?: CovarianceFamily | 'auto';
-  /** Trend terms, or `auto`: the set with the smallest AICc under maximum likelihood. Default auto. */
-  readonly terms?: readonly TermName[] | 'auto';
+  /**
+   * Trend terms, or `auto`: the set with the smallest AICc under maximum likelihood. Default auto. Covariates are in
+   * the trend whether they are named here or not.
+   */
+  readonly terms?: readonly string[] | 'auto';
+  /** Further trend columns, sampled at the network's stations. */
+  readonly covariates?: readonly CovariateValues[];
   /** κ, the common factor on the sampling variances: a number in (0, 1], or `fit` for REML. Default 1. */
   readonly samplingScale?: number | 'fit';
   /** Parameters held at a value: along/across (whitened units) for a pair, the isotope's name (‰²) for one alone. */

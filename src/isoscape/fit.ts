@@ -2,6 +2,7 @@ import { RainprintError } from '../errors.js';
 import { positionsOnSphereKm } from '../geostat/index.js';
 import type { Network } from '../stations/network.js';
 import type { FitContext } from './fit-context.js';
+import { prepareCovariates } from './fit-covariates.js';
 import { fitJoint } from './fit-joint.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import { fitSingle } from './fit-single.js';
@@ -16,7 +17,8 @@ export const MIN_STATIONS = 10;
  * sampling variances), for one isotope a single field.
  *
  * @throws STATIONS_TOO_FEW, TREND_COLLINEAR, STATIONS_COINCIDENT, WITHIN_COVARIANCE_SINGULAR,
- *         PARAMETER_OUT_OF_RANGE, TERM_UNKNOWN, ISOTOPE_MISSING, LIKELIHOOD_NOT_CONVERGED
+ *         PARAMETER_OUT_OF_RANGE, TERM_UNKNOWN, ISOTOPE_MISSING, LIKELIHOOD_NOT_CONVERGED, COVARIATE_NAME_INVALID,
+ *         COVARIATE_TWICE, COVARIATE_MISSING, COVARIATE_CONSTANT, COVARIATE_COLLINEAR
  */
 export function fitIsoscape(
   network: Network,
@@ -24,12 +26,14 @@ export function fitIsoscape(
   onProgress: OnFitProgress = () => {},
 ): Isoscape {
   checkOptions(network, options);
-  const stations = stationColumns(network);
+  const covariates = prepareCovariates(network, options.covariates ?? []);
+  const stations = stationColumns(network, covariates);
   const context: FitContext = {
     network,
     options,
     onProgress,
     stations,
+    covariates: covariates.map(({ name, source, centre, scale }) => ({ name, source, centre, scale })),
     positionsKm: positionsOnSphereKm(stations.lonDeg, stations.latDeg),
   };
   return network.isotopes === 'both' ? fitJoint(context) : fitSingle(context, network.isotopes);

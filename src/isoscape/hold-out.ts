@@ -62,11 +62,14 @@ function predictHeldOut(
   out: Predictions,
 ): void {
   const refitted = refitOn(isoscape, training);
-  const places = createPlaces(heldOut.length);
+  const places = createPlaces(heldOut.length, isoscape.covariates.length);
   heldOut.forEach((station, at) => {
     places.lonDeg[at] = isoscape.stations.lonDeg[station];
     places.latDeg[at] = isoscape.stations.latDeg[station];
     places.elevationM[at] = isoscape.stations.elevationM[station];
+    places.covariates.forEach((column, k) => {
+      column[at] = isoscape.stations.covariates[k][station];
+    });
   });
   const there = createPredictions(heldOut.length);
   predictPlaces(refitted, places, there, { target: 'site', plugIn });

@@ -12,10 +12,12 @@
  */
 export { backTransform, type Matrix2, pairCovariance } from './axes.js';
 export { canonicalJson, contentHash } from './canonical-json.js';
+export { type Covariate, type CovariateValues, checkCovariateName } from './covariate.js';
 export {
   type AxesSummary,
   axesSummary,
   centreLatitudeDeg,
+  covariateEffects,
   type Effect,
   elevationEffect,
   type IsotopeEffects,
@@ -34,8 +36,9 @@ export { refitOn } from './refit.js';
 export { roundPair } from './rounding.js';
 export { readIsoscape, writeIsoscape } from './serialise.js';
 export { createSupport, SUPPORT_FLAGS, type Support, type SupportFlag } from './support.js';
+export { createSupportRaster, type SupportCells, type SupportRaster } from './support-raster.js';
 export * from './surface/index.js';
-export { parseTerms, TERM_NAMES, type TermName } from './trend.js';
+export { parseTerms, TERM_NAMES, type TermName, writeCovariateColumns, writeTrendRow } from './trend.js';
 export { type ValidateOptions, validateIsoscape, validateLeaveOneOut } from './validate.js';
 export {
   type MethodResult,

@@ -1,9 +1,13 @@
 import type { CovarianceFamily, FieldParameters } from '../geostat/index.js';
 import type { IsotopeChoice, PairCovariance, SamplingKnowledge, Season } from '../stations/network.js';
-import type { TermName } from './trend.js';
+import type { Covariate } from './covariate.js';
 
-/** Version of the file's shape; a reader refuses a newer one and says so. */
-export const ISOSCAPE_SCHEMA_VERSION = 1;
+/**
+ * Newest version of the file's shape; a reader refuses a newer one and says so. 2 brought covariates: a file without
+ * any is still written as 1, byte for byte.
+ */
+export const ISOSCAPE_SCHEMA_VERSION = 2;
+export const FIRST_SCHEMA_VERSION = 1;
 /** Goes into the id: raised whenever the same inputs and options would give other numbers. */
 export const ALGORITHM_VERSION = 1;
 
@@ -18,6 +22,8 @@ export interface StationColumns {
   readonly d18O: Float64Array;
   readonly d2H: Float64Array;
   readonly effectiveRecords: Float64Array;
+  /** One column a covariate, in the isoscape's order and each in its own unit. */
+  readonly covariates: readonly Float64Array[];
 }
 
 export type FieldName = 'along' | 'across' | 'd18O' | 'd2H';
@@ -49,7 +55,7 @@ export interface FittedField {
 }
 
 export interface TrendCandidate {
-  readonly terms: readonly TermName[];
+  readonly terms: readonly string[];
   readonly logLikelihood: number;
   readonly parameterCount: number;
   readonly aicc: number;
@@ -86,7 +92,10 @@ interface IsoscapeCommon {
   readonly family: CovarianceFamily;
   readonly familyChosen: 'auto' | 'fixed';
   readonly familyCandidates: readonly FamilyCandidate[];
-  readonly terms: readonly TermName[];
+  /** Trend terms: built-in ones in the order of TERM_NAMES, then the names of the covariates. */
+  readonly terms: readonly string[];
+  /** In the order of their names; each is a term of the trend. */
+  readonly covariates: readonly Covariate[];
   readonly termsChosen: 'auto' | 'fixed';
   readonly trendCandidates: readonly TrendCandidate[];
   readonly support: SupportLimits;

@@ -1,5 +1,6 @@
 import type { FittedField, Isoscape } from './isoscape.js';
 import { scaleBoundReached } from './sampling-scale.js';
+import { crowdedOutTerms } from './trend-choice.js';
 
 /** Sentences a person should read beside a fit: what was assumed, chosen, or could not be told. */
 export function describeFit(isoscape: Isoscape, stationsOfUnknownRecords: number): string[] {
@@ -12,6 +13,10 @@ export function describeFit(isoscape: Isoscape, stationsOfUnknownRecords: number
             'contain the uncertainty of this choice',
         ]
       : []),
+    ...crowdedOutTerms(isoscape).map(
+      (term) =>
+        `the term ${term} was not offered to the choice: over the stations it cannot be told from the covariates`,
+    ),
     ...(isoscape.familyChosen === 'auto'
       ? ['the covariance family was chosen by restricted likelihood; the intervals ignore this choice too']
       : []),

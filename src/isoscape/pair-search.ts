@@ -2,7 +2,6 @@ import { COVARIANCE_FAMILIES, type CovarianceFamily, type FieldGeometry } from '
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import type { FamilyCandidate, TrendCandidate } from './isoscape.js';
 import { type PairFit, type PairStart, refineTurn, scanTurn, startFrom, TurnProfile } from './pair-fit.js';
-import type { TermName } from './trend.js';
 import { aicc, bestCandidate } from './trend-choice.js';
 
 /** Stations up to which every candidate and angle is tried on all of them; above, first looks use a thinned set. */
@@ -107,10 +106,10 @@ function thinGeometry(
 /** AICc of every candidate trend under maximum likelihood, and the best. */
 export function choosePairTrend(
   input: PairInput,
-  candidates: readonly { terms: TermName[]; geometry: FieldGeometry }[],
+  candidates: readonly { terms: string[]; geometry: FieldGeometry }[],
   family: CovarianceFamily | 'auto',
   onProgress: OnFitProgress,
-): { candidates: TrendCandidate[]; best: TermName[] } {
+): { candidates: TrendCandidate[]; best: string[] } {
   const used = family === 'auto' ? TREND_CHOICE_FAMILY : family;
   let start: { turnRad: number; parameters: PairStart } | null = null;
   const results = candidates.map(({ terms, geometry }, done): TrendCandidate => {

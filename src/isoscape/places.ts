@@ -1,3 +1,6 @@
+import { RainprintError } from '../errors.js';
+import type { Covariate } from './covariate.js';
+
 /** Places asked about, as flat columns. */
 export interface Places {
   readonly count: number;
@@ -6,6 +9,8 @@ export interface Places {
   readonly elevationM: Float64Array;
   /** Variance of the elevation's own error, m²; 0 where it is taken as exact. */
   readonly elevationVarM2: Float64Array;
+  /** One column a covariate of the isoscape, in its order and each in its own unit; none where it has none. */
+  readonly covariates: readonly Float64Array[];
 }
 
 /**
@@ -25,7 +30,38 @@ export function createPredictions(count: number): Predictions {
   return { d18O: column(), d2H: column(), varD18O: column(), varD2H: column(), cov: column() };
 }
 
-export function createPlaces(count: number): Places {
+/** Columns of zeros; covariates are missing (NaN) until they are filled. */
+export function createPlaces(count: number, covariateCount = 0): Places {
   const column = () => new Float64Array(count);
-  return { count, lonDeg: column(), latDeg: column(), elevationM: column(), elevationVarM2: column() };
+  return {
+    count,
+    lonDeg: column(),
+    latDeg: column(),
+    elevationM: column(),
+    elevationVarM2: column(),
+    covariates: Array.from({ length: covariateCount }, () => column().fill(Number.NaN)),
+  };
+}
+
+/**
+ * Every place has a value of every covariate of the isoscape: none is guessed.
+ * @throws COVARIATE_MISSING naming the covariate
+ */
+export function requireCovariates(
+  isoscape: { readonly covariates: readonly Covariate[] },
+  places: Places,
+): void {
+  isoscape.covariates.forEach(({ name, source }, k) => {
+    const values = places.covariates[k];
+    let lacking = 0;
+    while (values !== undefined && lacking < places.count && Number.isFinite(values[lacking])) lacking++;
+    if (values !== undefined && lacking === places.count) return;
+    const where =
+      values === undefined ? 'the places have none' : `place ${lacking + 1} has ${values[lacking]}`;
+    throw new RainprintError(
+      'COVARIATE_MISSING',
+      `the isoscape's trend has the covariate "${name}" (from ${source}), but ${where}: every place needs its value`,
+      { covariate: name, place: values === undefined ? null : lacking },
+    );
+  });
 }

@@ -2,9 +2,9 @@ import { RainprintError } from '../errors.js';
 import { positionsOnSphereKm, predictFieldJointly } from '../geostat/index.js';
 import type { FieldAverage } from './field-average.js';
 import type { Isoscape } from './isoscape.js';
-import type { Places } from './places.js';
+import { type Places, requireCovariates } from './places.js';
 import { elevationSlopes, type PredictOptions, prepareIsoscape, turnError } from './predict.js';
-import { trendMatrix } from './trend.js';
+import { trendRows } from './trend.js';
 
 /**
  * Predictions of several places together. Order: δ18O and δ2H of place 1, of place 2, … (a one-isotope isoscape:
@@ -29,7 +29,7 @@ interface FieldJoint {
 /**
  * Joint prediction with the full covariance between places and isotopes: whoever combines or compares places needs
  * it. Micro-scale variation (target `site`) and elevation errors are each place's own; the turn's error is shared.
- * @throws PARAMETER_OUT_OF_RANGE beyond MAX_JOINT_PLACES
+ * @throws PARAMETER_OUT_OF_RANGE beyond MAX_JOINT_PLACES, COVARIATE_MISSING as predictPlaces
  */
 export function predictJoint(
   isoscape: Isoscape,
@@ -44,9 +44,10 @@ export function predictJoint(
       { places: m, allowed: MAX_JOINT_PLACES },
     );
   }
+  requireCovariates(isoscape, places);
   const ready = prepareIsoscape(isoscape, options.plugIn ?? false);
   const positions = positionsOnSphereKm(places.lonDeg.subarray(0, m), places.latDeg.subarray(0, m));
-  const rows = trendMatrix(isoscape.terms, places.latDeg.subarray(0, m), places.elevationM);
+  const rows = trendRows(isoscape, places, m);
   const site = (options.target ?? 'site') === 'site';
   const slopes = elevationSlopes(ready);
   const joints = ready.fields.map((field) => averageJointly(field, positions, rows, m, site));

@@ -2,8 +2,8 @@ import { positionsOnSphereKm } from '../geostat/index.js';
 import { backTransform, type Matrix2 } from './axes.js';
 import { type FieldAnswer, FieldAverage, isoscapeGeometry } from './field-average.js';
 import type { Isoscape } from './isoscape.js';
-import type { Places, Predictions } from './places.js';
-import { trendMatrix } from './trend.js';
+import { type Places, type Predictions, requireCovariates } from './places.js';
+import { trendRows } from './trend.js';
 
 /** `site`: a new place, micro-scale variation included; `field`: the smooth surface. */
 export type Target = 'site' | 'field';
@@ -63,6 +63,7 @@ function build(isoscape: Isoscape, plugIn: boolean): PreparedIsoscape {
  * of variance s² in a place's elevation adds s²(Tβ_e)(Tβ_e)ᵀ.
  *
  * @param out  caller-owned columns of at least `places.count` elements, written
+ * @throws COVARIATE_MISSING where places lack a covariate of the isoscape, or a place its value
  */
 export function predictPlaces(
   isoscape: Isoscape,
@@ -70,10 +71,11 @@ export function predictPlaces(
   out: Predictions,
   options: PredictOptions = {},
 ): void {
+  requireCovariates(isoscape, places);
   const ready = prepareIsoscape(isoscape, options.plugIn ?? false);
   const count = places.count;
   const positions = positionsOnSphereKm(places.lonDeg.subarray(0, count), places.latDeg.subarray(0, count));
-  const rows = trendMatrix(isoscape.terms, places.latDeg.subarray(0, count), places.elevationM);
+  const rows = trendRows(isoscape, places, count);
   const answers = ready.fields.map((field) => field.predict(positions, rows, count));
   const site = (options.target ?? 'site') === 'site';
   combineFields(isoscape, ready, answers, site, places.elevationVarM2, count, out);

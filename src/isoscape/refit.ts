@@ -7,7 +7,7 @@ import { turnVariance } from './pair-fit.js';
 import { searchTurn } from './pair-search.js';
 import { selectStations } from './station-columns.js';
 import { supportLimits } from './support.js';
-import { trendMatrix } from './trend.js';
+import { trendRows } from './trend.js';
 
 /**
  * The same isoscape from a subset of its stations, for cross-validation: family, terms, whitening, sampling scale
@@ -18,7 +18,7 @@ export function refitOn(isoscape: Isoscape, stationIndices: ArrayLike<number>): 
   const stations = selectStations(isoscape.stations, stationIndices);
   const geometry = createGeometry(
     positionsOnSphereKm(stations.lonDeg, stations.latDeg),
-    trendMatrix(isoscape.terms, stations.latDeg, stations.elevationM),
+    trendRows(isoscape, stations),
     isoscape.terms.length + 1,
   );
   const pick = (values: Float64Array) => Float64Array.from(Array.from(stationIndices), (i) => values[i]);

@@ -5,7 +5,7 @@ import { scoreSeries } from '../geostat/scores.js';
 import { dExcess } from '../isotope/index.js';
 import type { Isoscape } from './isoscape.js';
 import type { Predictions } from './places.js';
-import { trendMatrix } from './trend.js';
+import { trendRows } from './trend.js';
 import {
   type MethodResult,
   type SchemeResult,
@@ -22,9 +22,9 @@ export interface Bench {
 }
 
 export function createBench(isoscape: Isoscape): Bench {
-  const { lonDeg, latDeg, elevationM } = isoscape.stations;
+  const { lonDeg, latDeg } = isoscape.stations;
   const neighbours = findNeighbours(positionsOnSphereKm(lonDeg, latDeg));
-  const trend = trendMatrix(isoscape.terms, latDeg, elevationM);
+  const trend = trendRows(isoscape, isoscape.stations);
   const regression = regressionBaseline(trend, isoscape.terms.length + 1);
   return { neighbours, baselines: [meanBaseline, regression, nearestBaseline(neighbours)] };
 }

@@ -2,14 +2,21 @@ import { RainprintError } from '../errors.js';
 import { canonicalJson, contentHash } from './canonical-json.js';
 import { findInconsistency } from './file-consistency.js';
 import { fileSchema } from './file-schema.js';
-import { ISOSCAPE_SCHEMA_VERSION, type Isoscape } from './isoscape.js';
+import { FIRST_SCHEMA_VERSION, ISOSCAPE_SCHEMA_VERSION, type Isoscape } from './isoscape.js';
+import { storedStations } from './station-columns.js';
 
 /**
  * Text of an isoscape file: canonical JSON (one value a line at the top level) with a checksum over all of it, so
  * that the same isoscape is the same bytes and a damaged file is told from a whole one.
  */
 export function writeIsoscape(isoscape: Isoscape): string {
-  const body = { format: 'rainprint-isoscape', ...isoscape };
+  const { covariates, ...rest } = isoscape;
+  const body = {
+    format: 'rainprint-isoscape',
+    ...rest,
+    stations: storedStations(isoscape.stations),
+    ...(covariates.length === 0 ? {} : { covariates }),
+  };
   const members = Object.entries({ ...body, checksum: contentHash(body) })
     .sort(([a], [b]) => (a < b ? -1 : 1))
     .map(([key, value]) => `${JSON.stringify(key)}:${canonicalJson(value)}`);
@@ -85,11 +92,12 @@ function checkVersion(version: unknown): void {
       member: 'schemaVersion',
     });
   }
-  if (version === ISOSCAPE_SCHEMA_VERSION) return;
   const newer = version > ISOSCAPE_SCHEMA_VERSION;
+  if (!newer && version >= FIRST_SCHEMA_VERSION) return;
   throw new RainprintError(
     newer ? 'ISOSCAPE_NEWER' : 'ISOSCAPE_OLDER',
-    `the isoscape file has schema version ${version}; this program reads version ${ISOSCAPE_SCHEMA_VERSION}: ` +
+    `the isoscape file has schema version ${version}; this program reads versions ${FIRST_SCHEMA_VERSION} to ` +
+      `${ISOSCAPE_SCHEMA_VERSION}: ` +
       (newer ? 'use a newer program' : 'fit it again from the station table'),
     { version, supported: ISOSCAPE_SCHEMA_VERSION },
   );

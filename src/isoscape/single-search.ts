@@ -8,7 +8,6 @@ import {
 } from '../geostat/index.js';
 import type { OnFitProgress } from './fit-options.js';
 import type { FamilyCandidate, TrendCandidate } from './isoscape.js';
-import type { TermName } from './trend.js';
 import { aicc, bestCandidate } from './trend-choice.js';
 
 /** Values of one isotope with known sampling variances, and what the user holds fixed. */
@@ -21,10 +20,10 @@ export interface SingleInput {
 /** AICc of every candidate trend under maximum likelihood, and the best. */
 export function chooseSingleTrend(
   input: SingleInput,
-  candidates: readonly { terms: TermName[]; geometry: FieldGeometry }[],
+  candidates: readonly { terms: string[]; geometry: FieldGeometry }[],
   family: CovarianceFamily | 'auto',
   onProgress: OnFitProgress,
-): { candidates: TrendCandidate[]; best: TermName[] } {
+): { candidates: TrendCandidate[]; best: string[] } {
   const used = family === 'auto' ? 'exponential' : family;
   const results = candidates.map(({ terms, geometry }, done): TrendCandidate => {
     onProgress({ stage: 'choosing the trend', done, total: candidates.length });

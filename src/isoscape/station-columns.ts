@@ -1,5 +1,6 @@
 import { RainprintError } from '../errors.js';
 import { isMissing, type Network, type StationMean } from '../stations/network.js';
+import type { CovariateValues } from './covariate.js';
 import type { StationColumns } from './isoscape.js';
 
 /**
@@ -8,8 +9,14 @@ import type { StationColumns } from './isoscape.js';
  * @throws ISOTOPE_MISSING for a station without a chosen isotope (a fault of the caller: networks list them apart),
  *         PARAMETER_OUT_OF_RANGE for a number that is not finite, or records that are not above 0
  */
-export function stationColumns(network: Network): StationColumns {
-  const stations = [...network.stations].sort(compareStations);
+export function stationColumns(
+  network: Network,
+  covariates: readonly CovariateValues[] = [],
+): StationColumns {
+  const order = Array.from(network.stations.keys()).sort((a, b) =>
+    compareStations(network.stations[a], network.stations[b]),
+  );
+  const stations = order.map((i) => network.stations[i]);
   for (const station of stations) {
     const wanted = network.isotopes === 'both' ? (['d18O', 'd2H'] as const) : [network.isotopes];
     const missing = wanted.find((isotope) => isMissing(station[isotope]));
@@ -31,6 +38,7 @@ export function stationColumns(network: Network): StationColumns {
     d18O: column((station) => (network.isotopes === 'd2H' ? Number.NaN : station.d18O)),
     d2H: column((station) => (network.isotopes === 'd18O' ? Number.NaN : station.d2H)),
     effectiveRecords: column((station) => station.effectiveRecords),
+    covariates: covariates.map(({ values }) => Float64Array.from(order, (i) => values[i])),
   };
 }
 
@@ -56,6 +64,14 @@ function compareStations(a: StationMean, b: StationMean): number {
   return a.id < b.id ? -1 : a.id > b.id ? 1 : 0;
 }
 
+/** As hashed and written: without covariates the columns are what they were before there were any. */
+export function storedStations(
+  columns: StationColumns,
+): Omit<StationColumns, 'covariates'> & Partial<Pick<StationColumns, 'covariates'>> {
+  const { covariates, ...rest } = columns;
+  return covariates.length === 0 ? rest : columns;
+}
+
 /** The stations at some indices, in the order given. */
 export function selectStations(columns: StationColumns, indices: ArrayLike<number>): StationColumns {
   const at = Array.from(indices);
@@ -69,5 +85,6 @@ export function selectStations(columns: StationColumns, indices: ArrayLike<numbe
     d18O: pick(columns.d18O),
     d2H: pick(columns.d2H),
     effectiveRecords: pick(columns.effectiveRecords),
+    covariates: columns.covariates.map(pick),
   };
 }

@@ -1,6 +1,7 @@
 import { createGeometry, type FieldGeometry, scaledCondition } from '../geostat/index.js';
-import type { TrendCandidate } from './isoscape.js';
-import { TERM_NAMES, type TermName, trendMatrix } from './trend.js';
+import type { Covariate } from './covariate.js';
+import type { Isoscape, TrendCandidate } from './isoscape.js';
+import { TERM_NAMES, type TermName, type TrendPlaces, trendRows } from './trend.js';
 
 /**
  * Condition (columns scaled to length 1) up to which a set of terms is offered to the choice: P₁…P₄ over a narrow
@@ -17,20 +18,43 @@ export function candidateTerms(): TermName[][] {
   return nested.flatMap((terms) => [terms, [...terms, 'elevation' as const]]);
 }
 
-/** Candidate sets this network can tell apart, with the places' geometry for each. */
-export function supportedCandidates(
-  positionsKm: Float64Array,
-  latDeg: Float64Array,
-  elevationM: Float64Array,
-): { terms: TermName[]; geometry: FieldGeometry }[] {
-  const n = latDeg.length;
-  return candidateTerms().flatMap((terms) => {
+/**
+ * Candidate sets this network can tell apart, with the places' geometry for each. Covariates stand in all of them: the
+ * user asked for them, so the set of the covariates alone is offered however few the stations are.
+ */
+export function supportedCandidates({
+  positionsKm,
+  stations,
+  covariates,
+}: {
+  readonly positionsKm: Float64Array;
+  readonly stations: TrendPlaces;
+  readonly covariates: readonly Covariate[];
+}): { terms: string[]; geometry: FieldGeometry }[] {
+  const n = stations.latDeg.length;
+  const names = covariates.map(({ name }) => name);
+  return candidateTerms().flatMap((builtIn) => {
+    const terms = [...builtIn, ...names];
     const p = terms.length + 1;
-    if (n < STATIONS_PER_TERM * p) return [];
-    const matrix = trendMatrix(terms, latDeg, elevationM);
-    if (!(scaledCondition(matrix, n, p) <= MAX_CHOICE_CONDITION)) return [];
+    const matrix = trendRows({ terms, covariates }, stations);
+    const askedFor = builtIn.length === 0 && names.length > 0;
+    if (!askedFor && n < STATIONS_PER_TERM * p) return [];
+    if (!askedFor && !(scaledCondition(matrix, n, p) <= MAX_CHOICE_CONDITION)) return [];
     return [{ terms, geometry: createGeometry(positionsKm, matrix, p) }];
   });
+}
+
+/** Built-in terms the choice could not offer because, over the stations, covariates say the same. */
+export function crowdedOutTerms({ stations, covariates, termsChosen }: Isoscape): TermName[] {
+  if (covariates.length === 0 || termsChosen !== 'auto') return [];
+  const names = covariates.map(({ name }) => name);
+  const tellsApart = (terms: string[], columns: readonly Covariate[]) => {
+    const matrix = trendRows({ terms, covariates: columns }, stations);
+    return scaledCondition(matrix, stations.latDeg.length, terms.length + 1) <= MAX_CHOICE_CONDITION;
+  };
+  return (['zonal1', 'elevation'] as const).filter(
+    (term) => tellsApart([term], []) && !tellsApart([term, ...names], covariates),
+  );
 }
 
 /**

@@ -9,7 +9,7 @@ import {
   positionsOnSphereKm,
   predictField,
 } from '../../src/geostat/index.js';
-import { trendMatrix } from '../../src/isoscape/trend.js';
+import { trendRows } from '../../src/isoscape/trend.js';
 import { readColorado, readMeuse } from '../reference/read.js';
 
 export interface ReferenceField {
@@ -29,7 +29,10 @@ export function onSphere(points: Points): { positionsKm: Float64Array; trend: Fl
   ) as [Float64Array, Float64Array, Float64Array];
   return {
     positionsKm: positionsOnSphereKm(lon, lat),
-    trend: trendMatrix(['zonal1', 'elevation'], lat, elevation),
+    trend: trendRows(
+      { terms: ['zonal1', 'elevation'], covariates: [] },
+      { latDeg: lat, elevationM: elevation, covariates: [] },
+    ),
   };
 }
 

@@ -56,9 +56,11 @@ describe('trend', () => {
     const lat = Float64Array.from({ length: 60 }, (_, i) => 44 + 0.01 * (i % 30));
     const lon = Float64Array.from({ length: 60 }, (_, i) => i / 3);
     const elevation = Float64Array.from({ length: 60 }, (_, i) => (i * 37) % 900);
-    const sets = supportedCandidates(positionsOnSphereKm(lon, lat), lat, elevation).map((c) =>
-      c.terms.join(),
-    );
+    const sets = supportedCandidates({
+      positionsKm: positionsOnSphereKm(lon, lat),
+      stations: { latDeg: lat, elevationM: elevation, covariates: [] },
+      covariates: [],
+    }).map((c) => c.terms.join());
     expect(sets).toContain('elevation');
     expect(sets).toContain('zonal1,elevation');
     expect(sets.some((set) => set.includes('zonal4'))).toBe(false);

@@ -16,6 +16,7 @@ function stations(): StationColumns {
     d18O: column(at.map(() => -6)),
     d2H: column(at.map(() => -40)),
     effectiveRecords: column(at.map(() => 60)),
+    covariates: [],
   };
 }
 const field = (rangeKm: number) => [{ parameters: { rangeKm, sill: 1, nugget: 0.1 } }];

@@ -1,7 +1,7 @@
 import { RainprintError } from '../../errors.js';
 import { COVARIANCE_FAMILIES, type CovarianceFamily, type FieldParameters } from '../../geostat/index.js';
 import type { FitOptions } from '../../isoscape/index.js';
-import { parseTerms, type TermName } from '../../isoscape/trend.js';
+import { parseTerms } from '../../isoscape/trend.js';
 import type { IsotopeChoice } from '../../stations/index.js';
 
 type Fixed = NonNullable<FitOptions['fix']>;
@@ -25,7 +25,7 @@ export function parseFamily(text: string): CovarianceFamily | 'auto' {
 }
 
 /** `auto`, `none`, or trend terms joined by commas. */
-export function parseTermsOption(text: string): readonly TermName[] | 'auto' {
+export function parseTermsOption(text: string): readonly string[] | 'auto' {
   if (text.trim() === 'auto') return 'auto';
   const parts = text.split(',').map((part) => part.trim());
   if (parts.includes('') || (parts.length > 1 && (parts.includes('none') || parts.includes('auto')))) {

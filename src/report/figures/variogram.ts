@@ -4,7 +4,7 @@ import { empiricalVariogram, type VariogramBin } from '../../geostat/empirical-v
 import type { FieldParameters } from '../../geostat/likelihood.js';
 import { positionsOnSphereKm } from '../../geostat/positions.js';
 import type { FittedField, Isoscape } from '../../isoscape/isoscape.js';
-import { trendMatrix } from '../../isoscape/trend.js';
+import { trendRows } from '../../isoscape/trend.js';
 import { figure, type PageDocument, type PageElement } from '../document.js';
 import { COLOUR, draw, PLOT_WIDTH } from '../plot.js';
 import { FIELD_LABEL } from '../wording.js';
@@ -36,10 +36,10 @@ export function variogramFigure(document: PageDocument, isoscape: Isoscape): Pag
 }
 
 function variogramPlot(document: PageDocument, isoscape: Isoscape, field: FittedField): PageElement {
-  const { lonDeg, latDeg, elevationM } = isoscape.stations;
+  const { lonDeg, latDeg } = isoscape.stations;
   const positionsKm = positionsOnSphereKm(lonDeg, latDeg);
   const maximumKm = diameterKm(positionsKm) / 2;
-  const trend = trendMatrix(isoscape.terms, latDeg, elevationM);
+  const trend = trendRows(isoscape, isoscape.stations);
   const bins = empiricalVariogram({
     positionsKm,
     residuals: glsResiduals(field, trend),
