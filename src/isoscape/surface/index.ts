@@ -1,9 +1,3 @@
-export { createExactSurface } from './exact-surface.js';
-export {
-  createSurface,
-  type Locate,
-  type Surface,
-  type SurfaceGrid,
-  type SurfaceOptions,
-  type SurfaceWindow,
-} from './surface.js';
+export { createSurface } from './create-surface.js';
+export type { Locate, Surface, SurfaceGrid, SurfaceOptions, SurfaceWindow } from './surface.js';
+export { HYDROGEN_TOLERANCE_FACTOR } from './tolerance.js';

@@ -1,7 +1,5 @@
-import type { Isoscape } from '../isoscape.js';
 import type { Places, Predictions } from '../places.js';
 import type { Target } from '../predict.js';
-import { createExactSurface } from './exact-surface.js';
 
 /** Cells of a grid, in columns and rows. */
 export interface SurfaceWindow {
@@ -46,8 +44,4 @@ export interface Surface {
    * @param wanted  one a cell; @param out one element a cell, written where wanted
    */
   predictWindow(window: SurfaceWindow, places: Places, wanted: Uint8Array, out: Predictions): void;
-}
-
-export function createSurface(isoscape: Isoscape, _grid: SurfaceGrid, options: SurfaceOptions): Surface {
-  return createExactSurface(isoscape, options);
 }
