@@ -17,7 +17,7 @@ export function checkCovariatesTellApart(
 ): void {
   const n = stations.latDeg.length;
   const p = trend.terms.length + 1;
-  if (trend.covariates.length === 0 || n < p) return;
+  if (n < p) return; // too few stations is said by createGeometry
   const matrix = trendRows(trend, stations);
   if (scaledCondition(matrix, n, p) <= MAX_TREND_CONDITION) return;
   const involved = nearlyZeroCombination(matrix, n, p).map((c) =>

@@ -1,7 +1,6 @@
 import { createGeometry, type FieldGeometry } from '../geostat/index.js';
 import type { Network } from '../stations/network.js';
 import { contentHash } from './canonical-json.js';
-import { checkCovariatesTellApart } from './collinear-terms.js';
 import type { Covariate } from './covariate.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import {
@@ -37,6 +36,15 @@ export interface ChosenTrend {
 
 type SupportedCandidates = ReturnType<typeof supportedCandidates>;
 
+/** The terms a trend has at least: those the user named, and the covariates. */
+export function termsAskedFor(
+  { terms }: Pick<FitOptions, 'terms'>,
+  covariates: readonly Pick<Covariate, 'name'>[],
+): string[] {
+  const names = covariates.map(({ name }) => name);
+  return parseTerms(terms === undefined || terms === 'auto' ? '' : terms.join(','), names);
+}
+
 /** The trend the user named, or the best of the sets this network can tell apart. */
 export function chooseTrend(
   context: FitContext,
@@ -46,10 +54,10 @@ export function chooseTrend(
   const geometryOf = (terms: readonly string[]) =>
     createGeometry(positionsKm, trendRows({ terms, covariates }, stations), terms.length + 1);
   const asked = options.terms ?? 'auto';
-  const names = covariates.map(({ name }) => name);
-  const terms = asked === 'auto' ? names : parseTerms(asked.join(','), names);
-  checkCovariatesTellApart({ terms, covariates }, stations);
-  if (asked !== 'auto') return { terms, geometry: geometryOf(terms), candidates: [] };
+  if (asked !== 'auto') {
+    const terms = termsAskedFor(options, covariates);
+    return { terms, geometry: geometryOf(terms), candidates: [] };
+  }
   const { candidates, best } = choose(supportedCandidates(context));
   return { terms: best, geometry: geometryOf(best), candidates };
 }

@@ -1,7 +1,8 @@
 import { RainprintError } from '../errors.js';
 import { positionsOnSphereKm } from '../geostat/index.js';
 import type { Network } from '../stations/network.js';
-import type { FitContext } from './fit-context.js';
+import { checkCovariatesTellApart } from './collinear-terms.js';
+import { type FitContext, termsAskedFor } from './fit-context.js';
 import { prepareCovariates } from './fit-covariates.js';
 import { fitJoint } from './fit-joint.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
@@ -36,6 +37,10 @@ export function fitIsoscape(
     covariates: covariates.map(({ name, source, centre, scale }) => ({ name, source, centre, scale })),
     positionsKm: positionsOnSphereKm(stations.lonDeg, stations.latDeg),
   };
+  if (covariates.length > 0) {
+    const terms = termsAskedFor(options, covariates);
+    checkCovariatesTellApart({ terms, covariates }, stations);
+  }
   return network.isotopes === 'both' ? fitJoint(context) : fitSingle(context, network.isotopes);
 }
 

@@ -1,4 +1,5 @@
 import { EARTH_RADIUS_KM } from '../geostat/index.js';
+import { covariateBeyond, covariateLimits } from './covariate-limits.js';
 import type { Isoscape } from './isoscape.js';
 import {
   createSupport,
@@ -13,6 +14,8 @@ import { createSquare, SQUARE, type Square, type SquareCells } from './support-s
 
 export interface SupportCells extends SquareCells {
   readonly elevationM: Float64Array;
+  /** One column a covariate of the isoscape, in its order; none where it has none. */
+  readonly covariates?: readonly Float64Array[];
 }
 
 export interface SupportRaster {
@@ -25,6 +28,7 @@ const OUTSIDE_HULL = bitOf('outside-hull');
 const FAR = bitOf('far-from-stations');
 const ELEVATION = bitOf('elevation-beyond-stations');
 const LATITUDE = bitOf('latitude-beyond-stations');
+const COVARIATE = bitOf('covariate-beyond-stations');
 
 /** Nearer to a limit than this (radii of the Earth, 6 mm) the answer is `createSupport`'s own. */
 const DOUBT = 1e-9;
@@ -38,6 +42,7 @@ const DOUBT = 1e-9;
 export function createSupportRaster(isoscape: Isoscape): SupportRaster {
   const one = createSupport(isoscape);
   const limits = isoscape.support;
+  const ofCovariates = covariateLimits(isoscape.stations);
   const farTest = createFarTest(isoscape, one);
   const hullTest = createHullTest(isoscape, one);
   const square = createSquare();
@@ -56,6 +61,9 @@ export function createSupportRaster(isoscape: Isoscape): SupportRaster {
         if (cells.wanted[k] !== 1) continue;
         if (elevationBeyond(limits, cells.elevationM[k])) out[k] |= ELEVATION;
         if (latitudeBeyond(limits, cells.latDeg[k])) out[k] |= LATITUDE;
+        const { covariates } = cells;
+        if (covariates === undefined) continue;
+        if (covariateBeyond(ofCovariates, (c) => covariates[c][k])) out[k] |= COVARIATE;
       }
     },
   };

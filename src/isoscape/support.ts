@@ -5,6 +5,7 @@ import {
   positionsOnSphereKm,
   practicalRangeKm,
 } from '../geostat/index.js';
+import { covariateBeyond, covariateLimits } from './covariate-limits.js';
 import type { FittedField, Isoscape, StationColumns, SupportLimits } from './isoscape.js';
 import { createHull } from './support-hull.js';
 
@@ -15,6 +16,7 @@ export const SUPPORT_FLAGS = [
   'elevation-beyond-stations',
   'latitude-beyond-stations',
   'elevation-from-grid',
+  'covariate-beyond-stations',
 ] as const;
 export type SupportFlag = (typeof SUPPORT_FLAGS)[number];
 
@@ -78,13 +80,21 @@ export interface Support {
   /** Great-circle distance to the nearest station, km. */
   nearestStationKm(lonDeg: number, latDeg: number): number;
   outsideHull(lonDeg: number, latDeg: number): boolean;
-  flags(lonDeg: number, latDeg: number, elevationM: number, elevationFromGrid: boolean): SupportFlag[];
+  /** @param covariates values at the place, in the isoscape's order; those missing or not given raise no flag */
+  flags(
+    lonDeg: number,
+    latDeg: number,
+    elevationM: number,
+    elevationFromGrid: boolean,
+    covariates?: ArrayLike<number>,
+  ): SupportFlag[];
 }
 
 /** Prepared once for an isoscape: nearest stations, hull, limits. */
 export function createSupport(isoscape: Isoscape): Support {
   const { stations, support } = isoscape;
   const hull = createHull(stations);
+  const ofCovariates = covariateLimits(stations);
   const nearestStationKm = (lonDeg: number, latDeg: number): number => {
     let nearest = Number.POSITIVE_INFINITY;
     for (let i = 0; i < stations.lonDeg.length; i++) {
@@ -96,13 +106,14 @@ export function createSupport(isoscape: Isoscape): Support {
   return {
     nearestStationKm,
     outsideHull,
-    flags(lonDeg, latDeg, elevationM, elevationFromGrid) {
+    flags(lonDeg, latDeg, elevationM, elevationFromGrid, covariates = []) {
       const found: Record<SupportFlag, boolean> = {
         'outside-hull': outsideHull(lonDeg, latDeg),
         'far-from-stations': nearestStationKm(lonDeg, latDeg) > support.farFromStationsKm,
         'elevation-beyond-stations': elevationBeyond(support, elevationM),
         'latitude-beyond-stations': latitudeBeyond(support, latDeg),
         'elevation-from-grid': elevationFromGrid,
+        'covariate-beyond-stations': covariateBeyond(ofCovariates, (k) => covariates[k]),
       };
       return SUPPORT_FLAGS.filter((flag) => found[flag]);
     },
