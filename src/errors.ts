@@ -24,6 +24,9 @@ export const ERROR_CODES = {
   WITHIN_COVARIANCE_SINGULAR: 'input',
   PARAMETER_OUT_OF_RANGE: 'input',
   LIKELIHOOD_NOT_CONVERGED: 'fault',
+  MATRIX_TOO_LARGE: 'input',
+  KERNEL_MEMORY_MISSING: 'fault',
+  KERNELS_UNAVAILABLE: 'fault',
   // stations: any table
   EMPTY_FILE: 'input',
   HEADER_ONLY: 'input',
@@ -75,6 +78,8 @@ export const ERROR_CODES = {
   RASTER_DAMAGED: 'input',
   RASTER_BANDS: 'input',
   CRS_MISSING: 'input',
+  CRS_UNKNOWN: 'input',
+  CRS_WRONG: 'input',
   CRS_UNSUPPORTED: 'input',
   TRANSFORM_MISSING: 'input',
   TRANSFORM_ROTATED: 'input',
@@ -86,6 +91,8 @@ export const ERROR_CODES = {
   // jobs
   BOUNDS_INVALID: 'input',
   CELL_INVALID: 'input',
+  MASK_INVALID: 'input',
+  MASK_OUTSIDE: 'input',
   GRID_EMPTY: 'input',
 } as const satisfies Record<string, 'input' | 'fault'>;
 

@@ -1,0 +1,140 @@
+import type { CovarianceKind } from '../covariance-kind.js';
+import type { KernelSet } from '../kernel-set.js';
+import { referenceKernels } from '../reference/kernel-set.js';
+import { compiledModule } from './compiled-kernels.js';
+import { writeCovariances } from './covariance.js';
+import { DenseMemory } from './dense-memory.js';
+import { fitsKernelMemory } from './kernel-memory.js';
+import { covarianceLayout, denseLayout, productLayout } from './layout.js';
+import { scratchMemory } from './scratch.js';
+import { createDenseWorkspace, workspaceOf } from './workspace.js';
+
+// Sizes from which copying in and out is paid back. They depend on sizes alone: one call always goes one way, and its
+// result does not depend on what else the thread has done.
+const CHOLESKY_ROWS = 32;
+const SOLVE_ROWS = 32;
+const SOLVE_COLUMNS = 16;
+const INVERSE_ROWS = 24;
+const PRODUCT_OPERATIONS = 16_384;
+const PRODUCT_INNER = 4;
+const COVARIANCES = 64;
+
+/** The compiled kernels; null where the engine has no WebAssembly SIMD. */
+export function simdKernels(): KernelSet | null {
+  return compiledModule() === null ? null : SIMD_KERNELS;
+}
+
+const SIMD_KERNELS: KernelSet = {
+  name: 'simd',
+  createDenseWorkspace,
+  choleskyInPlace,
+  solveLowerManyInPlace,
+  inverseFromCholesky,
+  multiplyInto,
+  covarianceBlock,
+};
+
+function choleskyInPlace(a: Float64Array, n: number): void {
+  const dense = n < CHOLESKY_ROWS ? null : scratch(n, 0);
+  if (dense === null) {
+    referenceKernels.choleskyInPlace(a, n);
+    return;
+  }
+  dense.matrix.set(a.subarray(0, n * n));
+  dense.cholesky();
+  a.set(dense.matrix);
+}
+
+function solveLowerManyInPlace(l: Float64Array, n: number, b: Float64Array, width: number): void {
+  const dense = n < SOLVE_ROWS || width < SOLVE_COLUMNS ? null : scratch(n, width);
+  if (dense === null) {
+    referenceKernels.solveLowerManyInPlace(l, n, b, width);
+    return;
+  }
+  dense.matrix.set(l.subarray(0, n * n));
+  const block = dense.block(width);
+  block.set(b.subarray(0, n * width));
+  dense.solveLower(width);
+  b.set(block);
+}
+
+function inverseFromCholesky(l: Float64Array, n: number, work: Float64Array, out: Float64Array): void {
+  const dense = n < INVERSE_ROWS ? null : scratch(n, n);
+  if (dense === null) {
+    referenceKernels.inverseFromCholesky(l, n, work, out);
+    return;
+  }
+  dense.matrix.set(l.subarray(0, n * n));
+  dense.inverse();
+  dense.copyTransposedInverseFactor(work);
+  out.set(dense.matrix);
+}
+
+function multiplyInto(
+  a: Float64Array,
+  rows: number,
+  inner: number,
+  b: Float64Array,
+  columns: number,
+  out: Float64Array,
+): void {
+  const isSmall = rows * inner * columns < PRODUCT_OPERATIONS || inner < PRODUCT_INNER;
+  const layout = productLayout(rows, inner, columns);
+  if (isSmall || !fitsKernelMemory(layout.bytes)) {
+    referenceKernels.multiplyInto(a, rows, inner, b, columns, out);
+    return;
+  }
+  const memory = scratchMemory(layout.bytes);
+  memory.numbers(layout.a, rows * inner).set(a.subarray(0, rows * inner));
+  memory.numbers(layout.b, inner * columns).set(b.subarray(0, inner * columns));
+  const { a: atA, b: atB, out: atOut, panels, tile } = layout;
+  memory.kernels.multiply(atA, rows, inner, atB, columns, atOut, panels, tile);
+  out.set(memory.numbers(atOut, rows * columns));
+}
+
+function covarianceBlock(
+  kind: CovarianceKind,
+  sill: number,
+  rangeKm: number,
+  stationsKm: Float64Array,
+  n: number,
+  placesKm: Float64Array,
+  first: number,
+  count: number,
+  out: Float64Array,
+): void {
+  const own = workspaceOf(out);
+  if (own !== undefined && n <= own.n && count <= own.width) {
+    const { positions } = own.layout;
+    const address = out.byteOffset;
+    writeCovariances(
+      own.memory,
+      positions,
+      kind,
+      sill,
+      rangeKm,
+      stationsKm,
+      n,
+      placesKm,
+      first,
+      count,
+      address,
+    );
+    return;
+  }
+  const layout = covarianceLayout(n, count);
+  if (n * count < COVARIANCES || !fitsKernelMemory(layout.bytes)) {
+    referenceKernels.covarianceBlock(kind, sill, rangeKm, stationsKm, n, placesKm, first, count, out);
+    return;
+  }
+  const memory = scratchMemory(layout.bytes);
+  const { block, positions } = layout;
+  writeCovariances(memory, positions, kind, sill, rangeKm, stationsKm, n, placesKm, first, count, block);
+  out.set(memory.numbers(block, n * count));
+}
+
+/** Scratch for an n × n matrix and a block; null where it would be larger than a memory may be. */
+function scratch(n: number, width: number): DenseMemory | null {
+  const { bytes } = denseLayout(n, width);
+  return fitsKernelMemory(bytes) ? new DenseMemory(scratchMemory(bytes), n, width) : null;
+}
