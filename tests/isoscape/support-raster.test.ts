@@ -11,7 +11,8 @@ function isoscapeOf(places: readonly (readonly [number, number])[], rangeKm: num
     lonDeg: column(places.map(([lon]) => lon)),
     latDeg: column(places.map(([, lat]) => lat)),
     elevationM: column(places.map((_, i) => 10 * i)),
-  } as StationColumns;
+    covariates: [column(places.map((_, i) => 100 - i))],
+  } as unknown as StationColumns;
   const fields = [{ parameters: { rangeKm, sill: 1, nugget: 0.1 } }];
   return { stations, support: supportLimits(stations, 'exponential', fields) } as Isoscape;
 }
@@ -37,6 +38,7 @@ function cellsOf(west: number, north: number, cellDeg: number, width: number, he
     }),
     latDeg: column((k) => north - (Math.floor(k / width) + 0.5) * cellDeg),
     elevationM: column(() => 900 * uniform() - 200),
+    covariates: [column(() => 160 * uniform() - 30)],
     wanted: Uint8Array.from({ length: width * height }, () => (uniform() < 0.9 ? 1 : 0)),
   };
 }
@@ -47,8 +49,9 @@ function expectSame(isoscape: Isoscape, cells: ReturnType<typeof cellsOf>): Set<
   const one = createSupport(isoscape);
   const seen = new Set<number>();
   for (let k = 0; k < out.length; k++) {
-    const { lonDeg, latDeg, elevationM, wanted } = cells;
-    const flags = wanted[k] === 1 ? one.flags(lonDeg[k]!, latDeg[k]!, elevationM[k]!, false) : [];
+    const { lonDeg, latDeg, elevationM, covariates, wanted } = cells;
+    const flags =
+      wanted[k] === 1 ? one.flags(lonDeg[k]!, latDeg[k]!, elevationM[k]!, false, [covariates[0]![k]!]) : [];
     const bits = flags.reduce((sum, flag) => sum + 2 ** SUPPORT_FLAGS.indexOf(flag), 0);
     if (out[k] !== bits) expect({ k, bits: out[k] }).toEqual({ k, bits });
     seen.add(out[k]!);
