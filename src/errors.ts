@@ -68,6 +68,7 @@ export const ERROR_CODES = {
   COVARIATE_MISSING: 'input',
   COVARIATE_CONSTANT: 'input',
   COVARIATE_COLLINEAR: 'input',
+  COVARIATE_UNKNOWN: 'input',
   ISOSCAPE_NOT_JSON: 'input',
   ISOSCAPE_DAMAGED: 'input',
   ISOSCAPE_OLDER: 'input',
@@ -87,6 +88,7 @@ export const ERROR_CODES = {
   ELEVATION_EMPTY: 'input',
   ELEVATION_IMPLAUSIBLE: 'input',
   ELEVATION_TOO_FINE: 'input',
+  COVARIATE_EMPTY: 'input',
   GRID_TOO_LARGE: 'input',
   // jobs
   BOUNDS_INVALID: 'input',
@@ -94,6 +96,7 @@ export const ERROR_CODES = {
   MASK_INVALID: 'input',
   MASK_OUTSIDE: 'input',
   GRID_EMPTY: 'input',
+  BAND_UNKNOWN: 'input',
 } as const satisfies Record<string, 'input' | 'fault'>;
 
 export type ErrorCode = keyof typeof ERROR_CODES;

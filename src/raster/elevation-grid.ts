@@ -1,6 +1,9 @@
 import { RainprintError } from '../errors.js';
 import { boxMean, type CellRange, cellAt, landSpread } from './elevation-cells.js';
+import { frameSampler } from './elevation-frame.js';
 import { readElevationWindow } from './elevation-window.js';
+import type { FrameElevation } from './frame-elevation.js';
+import type { CellWindow, GridFrame } from './grid-frame.js';
 import { RasterBlocks } from './raster-blocks.js';
 import { openRaster, type RasterFile } from './raster-file.js';
 import { type CellBoxes, type LonLatGrid, placeRaster, type RasterPlacement } from './raster-placement.js';
@@ -38,6 +41,11 @@ export interface ElevationGrid {
    * neighbourhood of its centre where that is wider.
    */
   sampleGrid(grid: LonLatGrid): Promise<ElevationCells>;
+  /**
+   * The same for the cells of a window of a frame in any CRS, with what stands there: land, sea, or nothing known.
+   * A footprint that is turned against the raster is taken as the box of the same area and spread.
+   */
+  sampleFrame(frame: GridFrame, window: CellWindow): Promise<FrameElevation>;
   close(): Promise<void>;
 }
 
@@ -51,18 +59,24 @@ const MAX_CELLS_IN_CELL = 2 ** 25;
 /**
  * Opens an elevation raster in metres: one band, north-up, longitude/latitude or a CRS of `rasterCrs`. Throws what
  * `openRaster` throws, ELEVATION_UNIT where the file says feet, ELEVATION_EMPTY where every cell is nodata.
+ *
+ * @param known an earlier opening of the same file, in another thread: its bytes are then not hashed and searched again
  */
-export async function openElevation(path: string): Promise<ElevationGrid> {
-  const file = await openRaster(path);
+export async function openElevation(
+  path: string,
+  known: Pick<ElevationGrid, 'source'> | null = null,
+): Promise<ElevationGrid> {
+  const file = await openRaster(path, { source: known?.source });
   try {
     checkUnit(file);
     const blocks = new RasterBlocks(file);
-    await checkHasLand(blocks);
+    if (known === null) await checkHasLand(blocks);
     const placement = placeRaster(file);
     return {
       source: file.source,
       sample: (lonDeg, latDeg) => sampleAt(blocks, placement, lonDeg, latDeg),
       sampleGrid: (grid) => sampleGrid(blocks, placement, grid),
+      sampleFrame: frameSampler(blocks, placement),
       close: () => file.close(),
     };
   } catch (error) {

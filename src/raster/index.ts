@@ -3,12 +3,17 @@ export { bundledElevationPath } from './bundled-elevation.js';
 export { type BandSummary, type CogSpec, type CogSummary, type CogWriter, openCog } from './cog-assembler.js';
 export { blockTransferList, type EncodedBlock, encodeCogBlock } from './cog-block.js';
 export type { CogFormat, Reduction, SampleType } from './cog-format.js';
+export { type CrsForward, forwardOf } from './crs-forward.js';
 export {
   type ElevationCells,
   type ElevationGrid,
   type ElevationSample,
   openElevation,
 } from './elevation-grid.js';
+export { type EpsgCrs, epsgCrs, type FrameCrs, isLonLat } from './epsg-crs.js';
+export { type FrameElevation, GROUND } from './frame-elevation.js';
+export { type FrameLocator, frameLocator } from './frame-locator.js';
+export { frameReach } from './frame-reach.js';
 export type { BandDescription } from './gdal-metadata.js';
 export type { NorthUpTransform, WritableCrs } from './geo-keys.js';
 export {
@@ -18,5 +23,7 @@ export {
   type WriteOptions,
   writeGeoTiff,
 } from './geotiff-writer.js';
+export { type CellWindow, cellCentres, type GridFrame } from './grid-frame.js';
 export { roundToPowerOfTwo } from './power-of-two-rounding.js';
 export type { LonLatGrid } from './raster-placement.js';
+export { openRasterValues, type RasterValues } from './raster-values.js';

@@ -1,15 +1,10 @@
-import proj4 from 'proj4';
 import { RainprintError } from '../errors.js';
+import { type CrsForward, forwardOf } from './crs-forward.js';
+import { type EpsgCrs, epsgCrs, isLonLat } from './epsg-crs.js';
 
-/** The CRS a raster is in, as far as we need it: where a longitude and latitude lie in it. */
-export interface RasterCrs {
-  readonly epsg: number;
-  readonly kind: 'geographic' | 'projected';
-  /**
-   * Longitude and latitude in degrees to the raster's x and y (degrees again where geographic); NaN where the
-   * projection does not reach.
-   */
-  forward(lonDeg: number, latDeg: number): [number, number];
+/** The CRS a raster is in, and where a longitude and latitude lie in it (degrees again where geographic). */
+export interface RasterCrs extends EpsgCrs {
+  readonly forward: CrsForward;
 }
 
 /** GeoTIFF keys as npm geotiff names them (GeoTIFF 1.1, OGC 19-008r4). */
@@ -24,14 +19,6 @@ export interface GeoKeys {
 const MODEL_PROJECTED = 1;
 const MODEL_GEOGRAPHIC = 2;
 const UNIT_DEGREE = 9102;
-/** About 10 m: a hundredth of a cell of the finest grids used here, far above rounding. */
-const ROUND_TRIP_DEG = 1e-4;
-
-/**
- * Geographic systems on datums that differ from WGS 84 by a few metres at most (WGS 84, ETRS89, NAD83, SIRGAS 2000,
- * GDA94, GDA2020): far less than a cell of any elevation grid used with station means.
- */
-const GEOGRAPHIC = new Set([4326, 4258, 4269, 4674, 4283, 7844]);
 
 const HOW_TO_WARP = 'bring it to longitude and latitude first: gdalwarp -t_srs EPSG:4326 in.tif out.tif';
 
@@ -46,55 +33,41 @@ export function rasterCrs(keys: GeoKeys | null, path: string): RasterCrs {
   }
   if (keys.GTModelTypeGeoKey === MODEL_GEOGRAPHIC) return geographic(keys, path);
   if (keys.GTModelTypeGeoKey === MODEL_PROJECTED) return projected(keys.ProjectedCSTypeGeoKey, path);
-  throw unsupported(`model type ${keys.GTModelTypeGeoKey}`, path);
+  throw unsupported(`model type ${keys.GTModelTypeGeoKey}`, 'it is neither geographic nor projected', path);
 }
 
 function geographic(keys: GeoKeys, path: string): RasterCrs {
-  const epsg = keys.GeographicTypeGeoKey;
-  if (epsg === undefined || !GEOGRAPHIC.has(epsg)) throw unsupported(`geographic system ${epsg}`, path);
+  const what = `geographic system ${keys.GeographicTypeGeoKey}`;
+  const crs = known(keys.GeographicTypeGeoKey, what, path);
+  if (!isLonLat(crs)) throw unsupported(what, 'its datum is not within metres of WGS 84', path);
   if ((keys.GeogAngularUnitsGeoKey ?? UNIT_DEGREE) !== UNIT_DEGREE) {
-    throw unsupported(`angular unit ${keys.GeogAngularUnitsGeoKey}`, path);
+    throw unsupported(`angular unit ${keys.GeogAngularUnitsGeoKey}`, 'degrees are read', path);
   }
-  return { epsg, kind: 'geographic', forward: (lonDeg, latDeg) => [lonDeg, latDeg] };
+  return crs;
 }
 
 function projected(epsg: number | undefined, path: string): RasterCrs {
-  const definition = epsg === undefined ? undefined : projection(epsg);
-  if (epsg === undefined || definition === undefined) throw unsupported(`projected system ${epsg}`, path);
-  const converter = proj4('EPSG:4326', definition);
-  return {
-    epsg,
-    kind: 'projected',
-    forward: (lonDeg, latDeg) => {
-      const [x, y] = converter.forward([lonDeg, latDeg]) as [number, number];
-      if (!Number.isFinite(x) || !Number.isFinite(y)) return [Number.NaN, Number.NaN];
-      // Far from its zone a projection may fold over and hit the raster: only what comes back is believed.
-      const [backLonDeg, backLatDeg] = converter.inverse([x, y]) as [number, number];
-      const turnDeg = Math.abs(((((backLonDeg - lonDeg) % 360) + 540) % 360) - 180);
-      const near = turnDeg < ROUND_TRIP_DEG && Math.abs(backLatDeg - latDeg) < ROUND_TRIP_DEG;
-      return near ? [x, y] : [Number.NaN, Number.NaN];
-    },
-  };
+  const what = `projected system ${epsg}`;
+  const crs = known(epsg, what, path);
+  if (crs.kind !== 'projected') throw unsupported(what, 'that code is not a projected one', path);
+  return crs;
 }
 
-/** Web Mercator, UTM on WGS 84 and on ETRS89, and the European equal-area grid (definitions: EPSG registry). */
-function projection(epsg: number): string | undefined {
-  const zone = epsg % 100;
-  const utm = (extra: string) => `+proj=utm +zone=${zone} ${extra} +units=m +no_defs`;
-  if (epsg >= 32601 && epsg <= 32660) return utm('+datum=WGS84');
-  if (epsg >= 32701 && epsg <= 32760) return utm('+south +datum=WGS84');
-  if (epsg >= 25828 && epsg <= 25838) return utm('+ellps=GRS80');
-  if (epsg === 3857) return 'EPSG:3857';
-  if (epsg === 3035) {
-    return '+proj=laea +lat_0=52 +lon_0=10 +x_0=4321000 +y_0=3210000 +ellps=GRS80 +units=m +no_defs';
+function known(epsg: number | undefined, what: string, path: string): RasterCrs {
+  if (epsg === undefined) throw unsupported(what, 'it has no EPSG code', path);
+  try {
+    const crs = epsgCrs(epsg);
+    return { ...crs, forward: forwardOf(crs) };
+  } catch (error) {
+    if (!(error instanceof RainprintError)) throw error;
+    throw unsupported(what, String(error.details.reason ?? 'no CRS of that code is known'), path);
   }
-  return undefined;
 }
 
-function unsupported(what: string, path: string): RainprintError {
+function unsupported(what: string, reason: string, path: string): RainprintError {
   return new RainprintError(
     'CRS_UNSUPPORTED',
-    `${path} is in ${what}, which is not read here (longitude/latitude, UTM, EPSG:3857 and EPSG:3035 are); ${HOW_TO_WARP}`,
+    `${path} is in ${what}, which is not read here (${reason}); ${HOW_TO_WARP}`,
     { path, found: what },
   );
 }

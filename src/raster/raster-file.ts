@@ -5,6 +5,7 @@ import { basename } from 'node:path';
 import { GeoTIFF, type GeoTIFFImage } from 'geotiff';
 import { RainprintError } from '../errors.js';
 import { fileSource } from './file-source.js';
+import { frameReach } from './frame-reach.js';
 import type { NorthUpTransform } from './geo-keys.js';
 import { type GeoKeys, type RasterCrs, rasterCrs } from './raster-crs.js';
 import { northUpTransform } from './raster-transform.js';
@@ -30,16 +31,23 @@ export interface RasterFile {
   close(): Promise<void>;
 }
 
+export interface RasterOptions {
+  /** What an earlier opening of the same file found, so that its bytes need not be hashed again. */
+  readonly source?: string | undefined;
+  /** More than one band is an error unless it is said that the first one is meant. */
+  readonly firstOfMany?: boolean;
+}
+
 /**
  * Opens a GeoTIFF of one band. Throws FILE_NOT_FOUND, FILE_NOT_READABLE, RASTER_NOT_TIFF, RASTER_TRUNCATED,
- * RASTER_BANDS, CRS_MISSING, CRS_UNSUPPORTED, TRANSFORM_MISSING, TRANSFORM_ROTATED.
+ * RASTER_BANDS, CRS_MISSING, CRS_UNSUPPORTED, CRS_WRONG, TRANSFORM_MISSING, TRANSFORM_ROTATED.
  */
-export async function openRaster(path: string): Promise<RasterFile> {
+export async function openRaster(path: string, options: RasterOptions = {}): Promise<RasterFile> {
   const { file, sizeBytes } = await openTiff(path);
   try {
     const tiff = await GeoTIFF.fromSource(fileSource(file, sizeBytes, path));
     const image = await tiff.getImage(0);
-    return await describe(path, sizeBytes, image, () => file.close());
+    return await describe(path, sizeBytes, image, options, () => file.close());
   } catch (error) {
     await file.close();
     throw error instanceof RainprintError ? error : damaged(path, error);
@@ -50,10 +58,11 @@ async function describe(
   path: string,
   sizeBytes: number,
   image: GeoTIFFImage,
+  options: RasterOptions,
   close: () => Promise<void>,
 ): Promise<RasterFile> {
   const bandCount = image.getSamplesPerPixel();
-  if (bandCount !== 1) {
+  if (bandCount !== 1 && !options.firstOfMany) {
     throw new RainprintError(
       'RASTER_BANDS',
       `${path} has ${bandCount} bands, one is expected; pick it: gdal_translate -b 1 in.tif out.tif`,
@@ -75,11 +84,11 @@ async function describe(
     path,
   );
   const crs = rasterCrs(keys, path);
-  if (crs.kind === 'geographic') checkDegrees(transform, image.getHeight(), path);
+  checkPlace(crs, transform, image.getWidth(), image.getHeight(), path);
   const items = ((await image.getGDALMetadata(0)) ?? {}) as Record<string, unknown>;
   return {
     path,
-    source: `${basename(path)} sha256:${(await sha256(path)).slice(0, 12)}`,
+    source: options.source ?? `${basename(path)} sha256:${(await sha256(path)).slice(0, 12)}`,
     width: image.getWidth(),
     height: image.getHeight(),
     transform,
@@ -141,17 +150,29 @@ async function checkBlocks(image: GeoTIFFImage, sizeBytes: number, path: string)
   return counts;
 }
 
-/** Metres labelled as degrees are a common slip, and would be read as a place far off the Earth. */
-function checkDegrees(transform: NorthUpTransform, height: number, path: string): void {
-  const { originX, originY, cellHeight } = transform;
+/** A raster given the wrong CRS would be read as a place far off. */
+function checkPlace(
+  crs: RasterCrs,
+  transform: NorthUpTransform,
+  width: number,
+  height: number,
+  path: string,
+): void {
+  const { originX, originY, cellWidth, cellHeight } = transform;
   const southY = originY - height * cellHeight;
-  // Cells centred on the poles or on 180° hang half a cell over.
-  const slack = cellHeight;
-  if (originY <= 90 + slack && southY >= -90 - slack && Math.abs(originX) <= 360 + slack) return;
+  if (crs.kind === 'geographic') {
+    // Cells centred on the poles or on 180° hang half a cell over.
+    const slack = cellHeight;
+    const inside = originY <= 90 + slack && southY >= -90 - slack && Math.abs(originX) <= 360 + slack;
+    if (inside && width * cellWidth <= 360 + cellWidth) return;
+  } else {
+    const reach = frameReach({ width, height, crs, ...transform }, crs);
+    if (reach.anywhere && reach.nearAreaOfUse) return;
+  }
   throw new RainprintError(
-    'CRS_UNSUPPORTED',
-    `${path} says it is in degrees, but reaches latitude ${originY} to ${southY} from longitude ${originX}; give it the CRS it is in: gdal_translate -a_srs EPSG:CODE in.tif out.tif`,
-    { path, north: originY, south: southY },
+    'CRS_WRONG',
+    `${path} says it is in EPSG:${crs.epsg} (${crs.name}, ${crs.unit}), but its cells reach from x ${originX} to ${originX + width * cellWidth} and y ${southY} to ${originY}, which lie elsewhere; give it the CRS it is in: gdal_translate -a_srs EPSG:CODE in.tif out.tif`,
+    { path, epsg: crs.epsg, west: originX, north: originY, south: southY },
   );
 }
 

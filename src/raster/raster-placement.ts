@@ -13,6 +13,10 @@ export interface LonLatGrid {
 export interface RasterPlacement {
   /** True where the columns go round the Earth without a gap. */
   readonly goesRound: boolean;
+  /** Rows of the raster. */
+  readonly height: number;
+  /** Cells in a turn round the Earth, and how many of the turn lie left of the raster; null where projected. */
+  readonly turn: { readonly cells: number; readonly leftOfRaster: number } | null;
   /** Cells beyond a pole's edge belong to the nearest row: a raster of cells centred on latitudes ends short of it. */
   position(lonDeg: number, latDeg: number): { x: number; y: number };
   /** Cells of a grid, row-major: centres, and the width and height of the box each covers. */
@@ -48,6 +52,8 @@ function geographicPlacement(file: RasterFile): RasterPlacement {
   };
   return {
     goesRound,
+    height: file.height,
+    turn: { cells: period, leftOfRaster: margin },
     position,
     gridPositions: (grid) => {
       const boxes = createBoxes(grid);
@@ -72,7 +78,13 @@ function projectedPlacement(file: RasterFile): RasterPlacement {
     const [x, y] = file.crs.forward(lonDeg, latDeg);
     return { x: (x - originX) / cellWidth, y: (originY - y) / cellHeight };
   };
-  return { goesRound: false, position, gridPositions: (grid) => positionsFromCorners(grid, position) };
+  return {
+    goesRound: false,
+    height: file.height,
+    turn: null,
+    position,
+    gridPositions: (grid) => positionsFromCorners(grid, position),
+  };
 }
 
 /**

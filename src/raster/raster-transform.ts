@@ -58,7 +58,7 @@ function missing(path: string): RainprintError {
 function rotated(path: string, how: string): RainprintError {
   return new RainprintError(
     'TRANSFORM_ROTATED',
-    `${path} is not north-up (${how}); straighten it first: gdalwarp -t_srs EPSG:4326 in.tif out.tif`,
+    `${path} is not north-up (${how}); straighten it first: gdalwarp in.tif out.tif`,
     { path },
   );
 }
