@@ -15,39 +15,49 @@ export function halveBand(
   const halfWidth = Math.ceil(width / 2);
   const halfHeight = Math.ceil(height / 2);
   const out = new Float32Array(halfWidth * halfHeight);
-  const reduce = REDUCE[reduction];
-  let k = 0;
+  const reduceRow = REDUCE_ROW[reduction];
   for (let row = 0; row < halfHeight; row++) {
-    const upper = 2 * row * width;
-    const lower = 2 * row + 1 < height ? upper + width : -1;
-    for (let column = 0; column < halfWidth; column++) {
-      const west = 2 * column;
-      const east = west + 1 < width;
-      out[k++] = reduce(
-        band[upper + west]!,
-        east ? band[upper + west + 1]! : Number.NaN,
-        lower < 0 ? Number.NaN : band[lower + west]!,
-        lower < 0 || !east ? Number.NaN : band[lower + west + 1]!,
-      );
-    }
+    const upper = band.subarray(2 * row * width, (2 * row + 1) * width);
+    // an odd last row stands for itself twice, which changes neither its average nor its flags
+    const lower = 2 * row + 1 < height ? band.subarray((2 * row + 1) * width, (2 * row + 2) * width) : upper;
+    reduceRow(upper, lower, out.subarray(row * halfWidth, (row + 1) * halfWidth));
   }
   return out;
 }
 
-const REDUCE = {
-  mean(a: number, b: number, c: number, d: number): number {
-    const all = a + b + c + d;
-    if (!Number.isNaN(all)) return all / 4;
-    let [sum, count] = [0, 0];
-    if (!Number.isNaN(a)) [sum, count] = [sum + a, count + 1];
-    if (!Number.isNaN(b)) [sum, count] = [sum + b, count + 1];
-    if (!Number.isNaN(c)) [sum, count] = [sum + c, count + 1];
-    if (!Number.isNaN(d)) [sum, count] = [sum + d, count + 1];
-    return sum / count; // 0 / 0 is NaN
+/** Two rows to one of half the length; where the length is odd the last column, too, stands for itself twice. */
+type RowReduction = (upper: Float32Array, lower: Float32Array, out: Float32Array) => void;
+
+const REDUCE_ROW = {
+  mean(upper, lower, out) {
+    const end = upper.length - 1;
+    for (let k = 0, west = 0; k < out.length; k++, west += 2) {
+      const east = west < end ? west + 1 : west;
+      const all = upper[west]! + upper[east]! + (lower[west]! + lower[east]!);
+      out[k] = Number.isNaN(all) ? meanOf(upper[west]!, upper[east]!, lower[west]!, lower[east]!) : all / 4;
+    }
   },
-  or(a: number, b: number, c: number, d: number): number {
-    if (Number.isNaN(a) && Number.isNaN(b) && Number.isNaN(c) && Number.isNaN(d)) return Number.NaN;
-    return a | b | c | d; // NaN counts as 0
+  or(upper, lower, out) {
+    const end = upper.length - 1;
+    for (let k = 0, west = 0; k < out.length; k++, west += 2) {
+      const east = west < end ? west + 1 : west;
+      const [a, b, c, d] = [upper[west]!, upper[east]!, lower[west]!, lower[east]!];
+      const none = Number.isNaN(a) && Number.isNaN(b) && Number.isNaN(c) && Number.isNaN(d);
+      out[k] = none ? Number.NaN : a | b | c | d; // to `|` NaN is 0
+    }
   },
-  nearest: (a: number) => a,
-} as const satisfies Record<Reduction, (a: number, b: number, c: number, d: number) => number>;
+  nearest(upper, _, out) {
+    for (let k = 0; k < out.length; k++) out[k] = upper[2 * k]!;
+  },
+} as const satisfies Record<Reduction, RowReduction>;
+
+/** Average of those that are not NaN; NaN of none. */
+function meanOf(...values: readonly number[]): number {
+  let [sum, count] = [0, 0];
+  for (const value of values) {
+    if (Number.isNaN(value)) continue;
+    sum += value;
+    count++;
+  }
+  return sum / count;
+}

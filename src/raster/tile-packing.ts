@@ -49,14 +49,13 @@ function packFloat32Row(
 ): void {
   const stride = format.reductions.length;
   const bits = new Uint32Array(band.buffer, band.byteOffset, band.length);
-  const nodataBits = float32Bits(format.nodata);
-  const at = (k: number) => (Number.isNaN(band[k]!) ? nodataBits : bits[k]!);
-  const last = at(start + width - 1);
+  const nodata = float32Bits(format.nodata);
+  const last = orNodata(bits[start + width - 1]!, nodata);
   let previous = last >>> 8; // what each plane's first byte is less: 0, and the last bytes of the three planes above
   const plane = format.tileSizePx * stride;
   let to = rowByte + b;
   for (let k = start; k < start + width; k++, to += stride) {
-    const value = at(k);
+    const value = orNodata(bits[k]!, nodata);
     out[to] = (value >>> 24) - (previous >>> 24);
     out[to + plane] = (value >>> 16) - (previous >>> 16);
     out[to + 2 * plane] = (value >>> 8) - (previous >>> 8);
@@ -92,6 +91,11 @@ function packInt16Row(
     out[to + 1] = difference >> 8;
     previous = value;
   }
+}
+
+/** NaN is what is beyond infinity once the sign is off (IEEE 754 binary32). */
+function orNodata(bits: number, nodata: number): number {
+  return (bits & 0x7fffffff) > 0x7f800000 ? nodata : bits;
 }
 
 function float32Bits(value: number): number {
