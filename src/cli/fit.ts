@@ -2,8 +2,12 @@ import type { Command } from 'commander';
 import { RainprintError } from '../errors.js';
 import { fitIsoscape, type Isoscape, writeIsoscape } from '../isoscape/index.js';
 import { validateLeaveOneOut } from '../isoscape/validate.js';
+import { closeCovariates, type OpenCovariate, openCovariates } from '../jobs/covariate-files.js';
+import { covariatesOfStations } from '../jobs/station-covariates.js';
 import type { Network } from '../stations/index.js';
 import type { CliContext } from './context.js';
+import { parseCovariates } from './covariate-options.js';
+import { covariateNotes } from './fit/covariate-note.js';
 import { fitJson } from './fit/fit-json.js';
 import { parseFamily, parseFixes, parseSamplingScale, parseTermsOption } from './fit/fit-options.js';
 import { fitReport } from './fit/fit-report.js';
@@ -24,10 +28,14 @@ interface FitFlags extends StationFlags {
   readonly output?: string;
   readonly family: string;
   readonly terms: string;
+  readonly covariate: readonly string[];
   readonly fix: readonly string[];
   readonly samplingScale: string;
   readonly json?: true;
 }
+
+const COVARIATE_HELP =
+  'a raster sampled at the stations as a further trend term, such as humidity=humidity.tif (may be repeated)';
 
 const HELP = `
 Parameters are held at a value with --fix FIELD.PARAMETER=NUMBER, several times if need be:
@@ -37,6 +45,7 @@ Parameters are held at a value with --fix FIELD.PARAMETER=NUMBER, several times 
 Examples:
   rainprint fit stations.csv -o isoscape.json
   rainprint fit stations.csv -o summer.json --season 10-3 --terms zonal1,elevation --family matern32
+  rainprint fit stations.csv -o rain.json --covariate humidity=humidity.tif
   rainprint fit stations.csv -o d18O.json --isotope d18O --fix d18O.range_km=600 --fix d18O.sill=2.2`;
 
 /** `rainprint fit`: an isoscape from a station table, and a short table about it. */
@@ -49,6 +58,7 @@ export function registerFit(program: Command, context: CliContext): void {
   addStationOptions(command)
     .option('--family <family>', 'auto, exponential, matern32, matern52 or spherical', 'auto')
     .option('--terms <terms>', 'trend: auto, none, or terms such as zonal1,zonal2,elevation', 'auto')
+    .option('--covariate <name=file>', COVARIATE_HELP, collected, [])
     .option('--fix <field.parameter=number>', 'hold a parameter at a value (may be repeated)', collected, [])
     .option('--sampling-scale <scale>', 'factor on the sampling variances: a number in (0, 1], or fit', '1')
     .option('--json', 'print the closing table as JSON (without -o: a trial that keeps nothing)')
@@ -58,32 +68,44 @@ export function registerFit(program: Command, context: CliContext): void {
 
 async function runFit(stationsPath: string, flags: FitFlags, context: CliContext): Promise<void> {
   const isotopes = readStationFlags(flags).isotopes ?? 'both';
+  const covariateFiles = parseCovariates(flags.covariate);
+  const names = covariateFiles.map(({ name }) => name);
   const options = {
     family: parseFamily(flags.family),
-    terms: parseTermsOption(flags.terms),
+    terms: parseTermsOption(flags.terms, names),
     samplingScale: parseSamplingScale(flags.samplingScale),
     fix: parseFixes(flags.fix, isotopes),
     toolVersion: context.toolVersion,
   };
-  const output = await isoscapeFile(flags, stationsPath);
+  const output = await isoscapeFile(flags, [stationsPath, ...covariateFiles.map(({ path }) => path)]);
+  let opened: OpenCovariate[] = [];
   try {
+    // Before the table: a raster that cannot be used is said at once.
+    opened = await openCovariates(covariateFiles);
     const { network, report } = await readStationFile(stationsPath, flags, context);
     // Said before the fit, so that it is said too where the fit fails for want of stations.
     for (const note of readingNotes(report, network, stationsPath))
       context.stderr.write(`rainprint: note: ${note}\n`);
-    const isoscape = fitWithProgress(network, options, context);
+    const sampled = await covariatesOfStations(network, opened);
+    for (const note of covariateNotes(sampled.lacking)) context.stderr.write(`rainprint: note: ${note}\n`);
+    const isoscape = fitWithProgress(
+      sampled.network,
+      { ...options, covariates: sampled.covariates },
+      context,
+    );
     const summary = summariseFit(isoscape, validateLeaveOneOut(isoscape, { level: SUMMARY_LEVEL }));
     await output?.write(writeIsoscape(isoscape));
     await output?.commit();
     await writeText(context.stdout, flags.json ? fitJson(summary) : fitReport(summary));
   } finally {
+    await closeCovariates(opened);
     await output?.abort();
   }
 }
 
 /** null for a trial: the numbers are printed as JSON and nothing is kept. */
-async function isoscapeFile(flags: FitFlags, stationsPath: string): Promise<OutputFile | null> {
-  if (flags.output !== undefined) return openOutput(flags.output, [stationsPath]);
+async function isoscapeFile(flags: FitFlags, inputs: readonly string[]): Promise<OutputFile | null> {
+  if (flags.output !== undefined) return openOutput(flags.output, inputs);
   if (flags.json === true) return null;
   throw new RainprintError(
     'OPTION_INVALID',

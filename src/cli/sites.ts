@@ -5,11 +5,15 @@ import { collected, columnOverrides } from './repeated-options.js';
 import { runSites } from './sites/run-sites.js';
 import { readSitesOptions, type SitesFlags } from './sites/sites-options.js';
 
+const COVARIATE_HELP =
+  'the raster of a covariate of the isoscape, such as humidity=humidity.tif (may be repeated)';
+
 const HELP = `
 The table (CSV or GeoJSON points) keeps its columns, and these are added behind them:
   d18O, d18O_se, d18O_low, d18O_high, the same for d2H and dexcess (per mil, VSMOW-SLAP),
   cov_d18O_d2H (per mil squared), elevation_m, elevation_source, nearest_station_km,
-  support (why a value leans on little), problem (why a row has none)
+  support (why a value leans on little), problem (why a row has none); for an isoscape with
+  covariates covariate_<name>, covariate_<name>_source too
 An isoscape of one isotope adds the columns of that isotope only. A column of the table that has
 one of these names is kept as input_<name>, so an output may be run through another isoscape
 (another season): the columns of the run before last then stand as input_<name>, those of the
@@ -19,7 +23,8 @@ GeoJSON, plain numbers become numbers; ids and names stay text.
 
 Elevation comes from the table, else from the elevation grid; its uncertainty is then part of
 the errors. Cells that are empty, NA, NaN, null, - or -999, -9999, -99999 have no value: such an
-elevation is taken from the grid. A value that precipitation cannot have is not written: its row
+elevation is taken from the grid. A covariate comes from the table's column of its name where the
+row has a value, else from the raster named with --covariate; without either the row has a problem. A value that precipitation cannot have is not written: its row
 has a problem. Beside FILE stands FILE.run.json: what would run it again.
 
 Example:
@@ -55,10 +60,16 @@ export function registerSites(program: Command, context: CliContext): void {
       'trend and residual part and the ten largest station weights, as JSON; name a file with --explain=FILE',
     )
     .option('--elevation <file>', 'elevation GeoTIFF in metres (default: the bundled 5-arc-minute grid)')
+    .option('--covariate <name=file>', COVARIATE_HELP, collected, [])
     .option('--plug-in', 'take estimated parameters for known (for comparison with other programs)')
     .option('--joint <file>', 'write the covariance between all sites and isotopes as JSON')
     .option('--record <file>', 'write the record of the run here (default: <output>.run.json)')
-    .option('--column <meaning=header>', 'name a column: id, name, lon, lat, elevation', collected, [])
+    .option(
+      '--column <meaning=header>',
+      'name a column: id, name, lon, lat, elevation, or a covariate',
+      collected,
+      [],
+    )
     .option('--skip-bad', 'exit 0 although rows have problems')
     .addHelpText('after', HELP)
     .exitOverride((error) => {

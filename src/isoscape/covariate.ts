@@ -18,6 +18,8 @@ export interface CovariateValues extends Pick<Covariate, 'name' | 'source'> {
 }
 
 const NAME = /^[a-z][a-z0-9_]{0,31}$/;
+/** Ends the name of the output column that tells where a covariate's value is from. */
+const SOURCE_ENDING = '_source';
 
 /**
  * The name of a covariate, which is also that of its trend term.
@@ -25,12 +27,13 @@ const NAME = /^[a-z][a-z0-9_]{0,31}$/;
  */
 export function checkCovariateName(name: string): string {
   const taken = name === 'none' || name === 'auto' || (TERM_NAMES as readonly string[]).includes(name);
-  if (NAME.test(name) && !taken) return name;
+  if (NAME.test(name) && !name.endsWith(SOURCE_ENDING) && !taken) return name;
+  const expected = `give a small letter, then up to 31 small letters, digits or _, not ending in ${SOURCE_ENDING}`;
   throw new RainprintError(
     'COVARIATE_NAME_INVALID',
     taken
       ? `a covariate cannot be called "${name}": that word has a meaning of its own among the trend terms`
-      : `"${name}" is no name for a covariate: give a small letter, then up to 31 small letters, digits or _`,
+      : `"${name}" is no name for a covariate: ${expected}`,
     { name },
   );
 }

@@ -1,7 +1,7 @@
 import { RainprintError } from '../errors.js';
 import { sampleAligned } from './aligned-elevation.js';
 import { type AxisFootprints, axisFootprints } from './axis-footprints.js';
-import type { CellRange } from './elevation-cells.js';
+import type { CellRange, CellWindow as RasterWindow } from './elevation-cells.js';
 import { readElevationWindow } from './elevation-window.js';
 import { isLonLat } from './epsg-crs.js';
 import { createFrameElevation, type FrameElevation } from './frame-elevation.js';
@@ -16,6 +16,8 @@ const MAX_WINDOW_CELLS = 2 ** 22;
 /** One cell of the frame over more raster cells than this is refused. */
 const MAX_CELLS_IN_CELL = 2 ** 25;
 
+type ReadCells = typeof readElevationWindow;
+
 /** A part of the asked window, in columns and rows of that window. */
 interface Part {
   readonly column: number;
@@ -24,17 +26,21 @@ interface Part {
   readonly height: number;
 }
 
-/** Elevation of a window of a frame from one raster. */
+/**
+ * Elevation of a window of a frame from one raster; with another reader of its cells, any quantity averaged alike.
+ */
 export function frameSampler(
   blocks: RasterBlocks,
   placement: RasterPlacement,
+  readCells: ReadCells = readElevationWindow,
 ): (frame: GridFrame, window: CellWindow) => Promise<FrameElevation> {
   const { crs } = blocks.file;
   return async (frame, window) => {
     const out = createFrameElevation(window.width * window.height);
     const aligned = (isLonLat(frame.crs) && isLonLat(crs)) || frame.crs.epsg === crs.epsg;
-    if (aligned) await fillAligned(blocks, placement, frame, window, out);
-    else await fillTurned(blocks, placement, frame, window, out);
+    const read = (range: CellRange) => readCells(blocks, range, placement.goesRound);
+    if (aligned) await fillAligned(blocks, placement, read, frame, window, out);
+    else await fillTurned(blocks, placement, read, frame, window, out);
     return out;
   };
 }
@@ -42,6 +48,7 @@ export function frameSampler(
 async function fillAligned(
   blocks: RasterBlocks,
   placement: RasterPlacement,
+  read: (range: CellRange) => Promise<RasterWindow>,
   frame: GridFrame,
   window: CellWindow,
   out: FrameElevation,
@@ -60,7 +67,7 @@ async function fillAligned(
       return fill(other, x.subarray(x.length - other.width));
     }
     checkCellsInCell(range, path);
-    const raster = await readElevationWindow(blocks, range, placement.goesRound);
+    const raster = await read(range);
     sampleAligned(raster, columns, rows, out, {
       firstColumn: part.column,
       firstRow: part.row,
@@ -79,6 +86,7 @@ async function fillAligned(
 async function fillTurned(
   blocks: RasterBlocks,
   placement: RasterPlacement,
+  read: (range: CellRange) => Promise<RasterWindow>,
   frame: GridFrame,
   window: CellWindow,
   out: FrameElevation,
@@ -96,7 +104,7 @@ async function fillTurned(
       return fill(other);
     }
     checkCellsInCell(range, path);
-    const raster = await readElevationWindow(blocks, range, placement.goesRound);
+    const raster = await read(range);
     for (let row = part.row; row < part.row + part.height; row++) {
       for (let column = part.column; column < part.column + part.width; column++) {
         const k = row * window.width + column;

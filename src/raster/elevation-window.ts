@@ -7,11 +7,19 @@ const LOWEST_LAND_M = -500;
 /** Mount Everest stands at 8849 m: what is higher is no height in metres. */
 const HIGHEST_LAND_M = 9000;
 
-/**
- * Reads a range of cells, which may reach over the raster's edges; columns go round where the raster does. Heights
- * below any land become NaN (sea); heights above any land throw ELEVATION_IMPLAUSIBLE.
- */
+/** As `readRasterWindow`; heights below any land become NaN (sea), heights above any land throw ELEVATION_IMPLAUSIBLE. */
 export async function readElevationWindow(
+  blocks: RasterBlocks,
+  range: CellRange,
+  goesRound: boolean,
+): Promise<CellWindow> {
+  const window = await readRasterWindow(blocks, range, goesRound);
+  keepLandOnly(window.elevationM, blocks.file.path);
+  return window;
+}
+
+/** Reads a range of cells, which may reach over the raster's edges; columns go round where the raster does. */
+export async function readRasterWindow(
   blocks: RasterBlocks,
   range: CellRange,
   goesRound: boolean,
@@ -31,7 +39,6 @@ export async function readElevationWindow(
     }
     column += run;
   }
-  keepLandOnly(elevationM, blocks.file.path);
   const isInside = (column: number, row: number) =>
     row >= 0 && row < height && (goesRound || (column >= 0 && column < width));
   return {

@@ -3,6 +3,7 @@ export { bundledElevationPath } from './bundled-elevation.js';
 export { type BandSummary, type CogSpec, type CogSummary, type CogWriter, openCog } from './cog-assembler.js';
 export { blockTransferList, type EncodedBlock, encodeCogBlock } from './cog-block.js';
 export type { CogFormat, Reduction, SampleType } from './cog-format.js';
+export { type CovariateGrid, type CovariateSample, openCovariate } from './covariate-grid.js';
 export { type CrsForward, forwardOf } from './crs-forward.js';
 export {
   type ElevationCells,

@@ -26,6 +26,7 @@ export function fitJson(summary: FitSummary): string {
         summary.latitudeEffect === null
           ? null
           : { latitude_deg: summary.centreLatitudeDeg, ...effects(summary.latitudeEffect) },
+      ...covariates(summary),
       family: isoscape.family,
       terms: isoscape.terms,
       fields: summary.fields.map((field) => ({
@@ -71,6 +72,18 @@ export function fitJson(summary: FitSummary): string {
     null,
     2,
   )}\n`;
+}
+
+/** Only where there are any: without them the output is what it was. */
+function covariates({ isoscape, covariateEffects }: FitSummary) {
+  if (isoscape.covariates.length === 0) return {};
+  return {
+    covariates: isoscape.covariates.map(({ name, source }, k) => ({
+      name,
+      source,
+      effect_permil_per_unit: effects(covariateEffects[k].effects),
+    })),
+  };
 }
 
 function effects(found: IsotopeEffects | null): IsotopeEffects | null {

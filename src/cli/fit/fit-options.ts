@@ -24,8 +24,11 @@ export function parseFamily(text: string): CovarianceFamily | 'auto' {
   throw new RainprintError('OPTION_INVALID', `--family ${text}: use ${names.join(', ')}`, { value: text });
 }
 
-/** `auto`, `none`, or trend terms joined by commas. */
-export function parseTermsOption(text: string): readonly string[] | 'auto' {
+/** `auto`, `none`, or trend terms joined by commas; covariates are terms too, and always among them. */
+export function parseTermsOption(
+  text: string,
+  covariateNames: readonly string[] = [],
+): readonly string[] | 'auto' {
   if (text.trim() === 'auto') return 'auto';
   const parts = text.split(',').map((part) => part.trim());
   if (parts.includes('') || (parts.length > 1 && (parts.includes('none') || parts.includes('auto')))) {
@@ -37,7 +40,7 @@ export function parseTermsOption(text: string): readonly string[] | 'auto' {
       },
     );
   }
-  return parseTerms(text);
+  return parseTerms(text, covariateNames);
 }
 
 /** `fit`, or κ in (0, 1]. */

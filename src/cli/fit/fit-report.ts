@@ -56,6 +56,7 @@ function samplingLine({ isoscape }: FitSummary): string {
 
 function effectLines(summary: FitSummary): string {
   const rows: string[][] = [];
+  const covariates = summary.covariateEffects;
   if (summary.elevationEffect !== null) {
     rows.push(['elevation, ‰ per 100 m', ...effectCells(summary.elevationEffect)]);
   }
@@ -63,15 +64,23 @@ function effectLines(summary: FitSummary): string {
     const label = `latitude, ‰ per degree north at ${decimals(summary.centreLatitudeDeg, 1)}°`;
     rows.push([label, ...effectCells(summary.latitudeEffect)]);
   }
-  const named = (['d18O', 'd2H', 'dexcess'] as const).filter(
-    (key) => (summary.elevationEffect ?? summary.latitudeEffect)?.[key] != null,
-  );
+  for (const { name, effects } of covariates) {
+    rows.push([`${name}, ‰ per unit`, ...effectCells(effects, significantEffectCell)]);
+  }
+  const any = summary.elevationEffect ?? summary.latitudeEffect ?? covariates[0]?.effects;
+  const named = (['d18O', 'd2H', 'dexcess'] as const).filter((key) => any?.[key] != null);
   if (rows.length === 0) return 'Effects: the trend has neither elevation nor latitude in it\n';
   return textTable(['effect ± SE', ...named.map((key) => LABELS[key])], rows);
 }
 
-function effectCells(effects: IsotopeEffects): string[] {
-  return [effects.d18O, effects.d2H, effects.dexcess].filter((effect) => effect !== null).map(effectCell);
+function effectCells(effects: IsotopeEffects, cell = effectCell): string[] {
+  return [effects.d18O, effects.d2H, effects.dexcess].filter((effect) => effect !== null).map(cell);
+}
+
+/** A covariate's unit may be anything: three digits of the standard error, and the value as far as it goes. */
+function significantEffectCell({ value, se }: Effect): string {
+  const digits = Math.max(0, Math.min(20, 2 - Math.floor(Math.log10(se))));
+  return se > 0 ? `${decimals(value, digits)} ± ${decimals(se, digits)}` : effectCell({ value, se });
 }
 
 function effectCell({ value, se }: Effect): string {

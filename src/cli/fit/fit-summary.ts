@@ -4,6 +4,7 @@ import {
   type AxesSummary,
   axesSummary,
   centreLatitudeDeg,
+  covariateEffects,
   elevationEffect,
   type IsotopeEffects,
   latitudeEffect,
@@ -45,6 +46,8 @@ export interface FitSummary {
   readonly elevationEffect: IsotopeEffects | null;
   readonly centreLatitudeDeg: number;
   readonly latitudeEffect: IsotopeEffects | null;
+  /** ‰ per unit of each covariate. */
+  readonly covariateEffects: ReturnType<typeof covariateEffects>;
   readonly fields: readonly FieldSummary[];
   /** null for a one-isotope isoscape. */
   readonly axes: AxesSummary | null;
@@ -63,6 +66,7 @@ export function summariseFit(isoscape: Isoscape, leaveOneOut: SchemeResult): Fit
     elevationEffect: elevationEffect(isoscape),
     centreLatitudeDeg: centre,
     latitudeEffect: latitudeEffect(isoscape, centre),
+    covariateEffects: covariateEffects(isoscape),
     fields: fields.map((field) => fieldSummary(field, isoscape)),
     axes: isoscape.isotopes === 'both' ? axesSummary(isoscape) : null,
     scores: leaveOneOut.variables.flatMap(({ variable, methods }) =>

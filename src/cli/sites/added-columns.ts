@@ -12,8 +12,17 @@ export interface SiteResult {
   readonly cov: number;
   readonly elevationM: number;
   readonly elevationSource: string;
+  /** One a covariate of the isoscape, with where it is from. */
+  readonly covariates: readonly number[];
+  readonly covariateSources: readonly string[];
   readonly nearestStationKm: number;
   readonly support: readonly string[];
+}
+
+/** What decides which columns are added: the isoscape. */
+export interface AddedFor {
+  readonly isotopes: IsotopeChoice;
+  readonly covariates: readonly { readonly name: string }[];
 }
 
 /** A value ready to be written: numbers are rounded already, null is "none". */
@@ -27,23 +36,27 @@ interface AddedColumn {
 const quantity = (name: string): AddedColumn[] =>
   ['', '_se', '_low', '_high'].map((suffix) => ({ name: name + suffix, kind: 'isotope' }));
 
-const AFTER_ISOTOPES: readonly AddedColumn[] = [
+const afterIsotopes = (covariates: AddedFor['covariates']): AddedColumn[] => [
   { name: ELEVATION_USED, kind: 'number' },
   { name: ELEVATION_SOURCE, kind: 'text' },
+  ...covariates.flatMap(({ name }): AddedColumn[] => [
+    { name: `covariate_${name}`, kind: 'number' },
+    { name: `covariate_${name}_source`, kind: 'text' },
+  ]),
   { name: 'nearest_station_km', kind: 'number' },
   { name: 'support', kind: 'text' },
   { name: 'problem', kind: 'text' },
 ];
 
 /** The columns added to the input's, in order; a one-isotope isoscape adds that isotope's only. */
-export function addedColumns(isotopes: IsotopeChoice): readonly AddedColumn[] {
-  if (isotopes !== 'both') return [...quantity(isotopes), ...AFTER_ISOTOPES];
+export function addedColumns({ isotopes, covariates }: AddedFor): readonly AddedColumn[] {
+  if (isotopes !== 'both') return [...quantity(isotopes), ...afterIsotopes(covariates)];
   return [
     ...quantity('d18O'),
     ...quantity('d2H'),
     ...quantity('dexcess'),
     { name: 'cov_d18O_d2H', kind: 'number' },
-    ...AFTER_ISOTOPES,
+    ...afterIsotopes(covariates),
   ];
 }
 
@@ -52,6 +65,7 @@ export function addedValues(isotopes: IsotopeChoice, result: SiteResult, z: numb
   const tail: AddedValue[] = [
     Number.isNaN(result.elevationM) ? null : rounded(result.elevationM, 3),
     result.elevationSource,
+    ...result.covariates.flatMap((value, k) => [significant(value), result.covariateSources[k]]),
     rounded(result.nearestStationKm, 3),
     result.support.join(';'),
     '',
@@ -70,8 +84,8 @@ export function addedValues(isotopes: IsotopeChoice, result: SiteResult, z: numb
 }
 
 /** The same columns for a row that could not be predicted. */
-export function problemValues(isotopes: IsotopeChoice, problem: string): AddedValue[] {
-  return addedColumns(isotopes).map(({ name, kind }) =>
+export function problemValues(addedFor: AddedFor, problem: string): AddedValue[] {
+  return addedColumns(addedFor).map(({ name, kind }) =>
     name === 'problem' ? problem : kind === 'text' ? '' : null,
   );
 }
@@ -88,8 +102,8 @@ export function addedCell(column: AddedColumn, value: AddedValue): string {
  * `input_<name>`, so that the added columns always have the names this tool documents. Where the input has that name
  * too (an output run through once more), it becomes `input_<name>_2`, `_3`: an earlier run's columns never change name.
  */
-export function keptHeader(header: readonly string[], isotopes: IsotopeChoice): string[] {
-  const ours = new Set(addedColumns(isotopes).map(({ name }) => name.toLowerCase()));
+export function keptHeader(header: readonly string[], addedFor: AddedFor): string[] {
+  const ours = new Set(addedColumns(addedFor).map(({ name }) => name.toLowerCase()));
   const taken = new Set([...header.map((name) => name.toLowerCase()), ...ours]);
   return header.map((name) => {
     if (!ours.has(name.toLowerCase())) return name;
@@ -103,6 +117,11 @@ export function keptHeader(header: readonly string[], isotopes: IsotopeChoice): 
 /** Interval ends from the printed value and the unrounded standard error. */
 function withInterval(value: number, se: number, z: number): [number, number, number, number] {
   return [value, roundIsotope(se), roundIsotope(value - z * se), roundIsotope(value + z * se)];
+}
+
+/** Nine digits tell any two values of a float32 raster apart (IEEE 754). */
+function significant(value: number): number {
+  return Number(value.toPrecision(9));
 }
 
 function rounded(value: number, digits: number): number {

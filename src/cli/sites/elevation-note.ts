@@ -1,6 +1,6 @@
 import { type ColumnOverrides, headerKey, quotedList, type Table } from '../../stations/index.js';
 import type { CliContext } from '../context.js';
-import { addedColumns } from './added-columns.js';
+import { type AddedFor, addedColumns } from './added-columns.js';
 import { ELEVATION_SOURCE, SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
 
 /** Columns shown as not used: enough to find one's own among them. */
@@ -14,10 +14,12 @@ const LIKE_ELEVATION = /h(?:ö|oe|ø)[hjy]|elev|alti|quota|cota|hauteur|hoogte|k
  * Says that no column gave elevations although the isoscape needs them: a column in another language or under a name
  * of one's own would otherwise be passed over in silence.
  *
+ * @param covariates of the isoscape: columns an earlier run added for them are not the user's
  * @param gridSource the grid elevations were looked up in; null where none was needed
  */
 export function noteMissingElevation(
   table: Table<SiteMeaning>,
+  covariates: AddedFor['covariates'],
   overrides: ColumnOverrides,
   gridSource: string | null,
   { stderr }: CliContext,
@@ -27,7 +29,7 @@ export function noteMissingElevation(
       header.trim() === '' && SITE_VOCABULARY.elevation.tiers[0].includes(headerKey(meaning)),
   );
   if (table.columns.has('elevation') || saidThereIsNone || gridSource === null) return;
-  const unused = unusedColumns(table);
+  const unused = unusedColumns(table, covariates);
   const grid = `every elevation comes from ${gridSource}`;
   if (unused.length === 0) {
     stderr.write(`rainprint: note: no elevation column found; ${grid}\n`);
@@ -40,10 +42,12 @@ export function noteMissingElevation(
 }
 
 /** Headers without a meaning; those an earlier run of ours added are not the user's. */
-function unusedColumns(table: Table<SiteMeaning>): string[] {
+function unusedColumns(table: Table<SiteMeaning>, covariates: AddedFor['covariates']): string[] {
   const used = new Set(table.columns.values());
   const ours = new Set(
-    table.header.includes(ELEVATION_SOURCE) ? addedColumns('both').map(({ name }) => name) : [],
+    table.header.includes(ELEVATION_SOURCE)
+      ? addedColumns({ isotopes: 'both', covariates }).map(({ name }) => name)
+      : [],
   );
   const end = table.format === 'geojson' ? table.header.length - GEOMETRY_COLUMNS : table.header.length;
   return table.header.slice(0, end).filter((name, i) => !used.has(i) && name !== '' && !ours.has(name));

@@ -1,5 +1,5 @@
 import { greatCircleKm } from '../../geostat/index.js';
-import { type Explanation, explainPlaces, type Isoscape } from '../../isoscape/index.js';
+import { type Explanation, explainPlaces, type Isoscape, type Places } from '../../isoscape/index.js';
 import { dExcess } from '../../isotope/index.js';
 import { decimals, textTable } from '../text-table.js';
 import type { PredictedBatch } from './site-predictor.js';
@@ -21,6 +21,8 @@ interface ExplainedSite {
   readonly lon: number;
   readonly lat: number;
   readonly elevation_m: number;
+  /** Only where the isoscape has covariates. */
+  readonly covariates?: Readonly<Record<string, number>>;
   /** ‰; only what the isoscape has. */
   readonly parts: Readonly<Record<string, Part>>;
   readonly stations: readonly {
@@ -68,6 +70,7 @@ function explained(isoscape: Isoscape, { sites, places }: PredictedBatch): Expla
       lon: lonDeg,
       lat: latDeg,
       elevation_m: places.elevationM[k],
+      ...covariatesOf(isoscape, places, k),
       parts: partsOf(explanation),
       stations: explanation.heaviest.map(({ stationId, weights }) => {
         const i = indexOf.get(stationId) ?? 0;
@@ -76,6 +79,18 @@ function explained(isoscape: Isoscape, { sites, places }: PredictedBatch): Expla
       }),
     };
   });
+}
+
+/** The covariates of one place by name; nothing where the isoscape has none. */
+export function covariatesOf(
+  { covariates }: Isoscape,
+  places: Places,
+  index: number,
+): { covariates?: Record<string, number> } {
+  if (covariates.length === 0) return {};
+  return {
+    covariates: Object.fromEntries(covariates.map(({ name }, c) => [name, places.covariates[c][index]])),
+  };
 }
 
 function partsOf({ d18O, d2H }: Explanation): Record<string, Part> {

@@ -1,6 +1,7 @@
 import { RainprintError } from '../../errors.js';
 import { type Isoscape, type Places, predictJoint } from '../../isoscape/index.js';
 import type { OutputFile } from '../output-file.js';
+import { covariatesOf } from './explanations.js';
 import type { Site } from './site-reader.js';
 import type { SitesOptions } from './sites-options.js';
 
@@ -40,6 +41,7 @@ export async function writeJoint(
       lon: site.lonDeg,
       lat: site.latDeg,
       elevation_m: nullable(places.elevationM[i]),
+      ...covariatesOf(isoscape, places, i),
     })),
     variables: sites.flatMap((site) => isotopes.map((isotope) => ({ site: site.label, isotope }))),
     mean: [...mean].map(shortened),

@@ -15,6 +15,8 @@ export interface RunFacts {
   readonly columns: ColumnOverrides;
   /** The grid elevations were looked up in; null where the table had them all. */
   readonly elevationGrid: string | null;
+  /** The rasters covariates were looked up in. */
+  readonly covariateRasters: readonly { readonly name: string; readonly source: string }[];
   readonly siteCount: number;
   readonly problemCount: number;
   readonly toolVersion: string;
@@ -44,6 +46,9 @@ export function runRecord(facts: RunFacts, options: SitesOptions): string {
       columns: facts.columns,
     },
     elevation: { table_first: true, grid: facts.elevationGrid },
+    ...(isoscape.covariates.length === 0
+      ? {}
+      : { covariates: { table_first: true, rasters: facts.covariateRasters } }),
     input: {
       file: basename(facts.sitesPath),
       sha256: facts.sitesSha256,

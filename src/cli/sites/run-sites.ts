@@ -10,10 +10,17 @@ import { createExplainer } from './explanations.js';
 import { assertJointSize, MAX_JOINT_SITES, writeJoint } from './joint-file.js';
 import { isNearStations, MisplacedSites } from './misplaced-sites.js';
 import { hashed, runRecord } from './run-record.js';
+import { createSiteCovariates, type SiteCovariates } from './site-covariates.js';
 import { createSiteElevations } from './site-elevation.js';
 import { createSitePredictor } from './site-predictor.js';
 import { createSiteReader, type SiteRow } from './site-reader.js';
-import { earlierElevation, SITE_PLACE, SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
+import {
+  covariateMeaning,
+  earlierElevation,
+  SITE_PLACE,
+  type SiteMeaning,
+  siteVocabulary,
+} from './site-vocabulary.js';
 import { createSitesWriter } from './site-writers.js';
 import type { SitesOptions } from './sites-options.js';
 import { openSitesOutputs, type SitesOutputs } from './sites-outputs.js';
@@ -39,15 +46,18 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
   const elevations = await createSiteElevations(options.elevationPath, isoscape.terms.includes('elevation'));
   const tally = new SitesTally();
   const misplaced = new MisplacedSites(input.support);
+  let covariates: SiteCovariates | null = null;
   try {
+    covariates = await createSiteCovariates(isoscape, options.covariateFiles, input.covariatesInTable);
+    for (const note of covariates.notes) context.stderr.write(`rainprint: note: ${note}\n`);
     const elevationPath = options.elevationPath ?? bundledElevationPath();
     const outputs = await openSitesOutputs(
       options,
-      [call.isoscapePath, call.sitesPath, elevationPath],
+      [call.isoscapePath, call.sitesPath, elevationPath, ...options.covariateFiles.map(({ path }) => path)],
       context,
     );
     try {
-      const predict = createSitePredictor(isoscape, input.support, elevations, options);
+      const predict = createSitePredictor(isoscape, input.support, elevations, covariates, options);
       await streamSites({ ...input, predict, outputs, options, tally, misplaced, context });
       const facts = {
         ...call,
@@ -55,6 +65,7 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
         isoscapeSha256: input.isoscapeSha256,
         sitesSha256: await input.source.digest(),
         elevationGrid: elevations.gridSource(),
+        covariateRasters: covariates.rasters,
         siteCount: tally.rowCount,
         problemCount: tally.problemCount,
         toolVersion: context.toolVersion,
@@ -64,10 +75,11 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
       await outputs.abort();
     }
   } finally {
+    await covariates?.close();
     await elevations.close();
   }
   const gridUsed = isoscape.terms.includes('elevation') ? elevations.gridSource() : null;
-  noteMissingElevation(input.table, call.columns, gridUsed, context);
+  noteMissingElevation(input.table, isoscape.covariates, call.columns, gridUsed, context);
   misplaced.report(context);
   tally.report(options, context);
 }
@@ -75,9 +87,10 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
 async function openSites(call: SitesCall) {
   const isoscapeText = await readInputText(call.isoscapePath, MAX_ISOSCAPE_BYTES);
   const isoscape = readIsoscape(isoscapeText);
+  const covariateNames = isoscape.covariates.map(({ name }) => name);
   const source = hashed(await openInput(call.sitesPath));
-  const table = await openTable(source.chunks, {
-    vocabulary: SITE_VOCABULARY,
+  const table = await openTable<SiteMeaning>(source.chunks, {
+    vocabulary: siteVocabulary(covariateNames),
     columnOverrides: call.columns,
     placeMeanings: SITE_PLACE,
     yieldingColumns: earlierElevation,
@@ -89,7 +102,10 @@ async function openSites(call: SitesCall) {
     isoscapeSha256: createHash('sha256').update(isoscapeText).digest('hex'),
     source,
     table,
-    readRow: createSiteReader(table, (lonDeg, latDeg) => isNearStations(support, lonDeg, latDeg)),
+    covariatesInTable: covariateNames.filter((name) => table.columns.has(covariateMeaning(name))),
+    readRow: createSiteReader(table, covariateNames, (lonDeg, latDeg) =>
+      isNearStations(support, lonDeg, latDeg),
+    ),
   };
 }
 
@@ -108,7 +124,7 @@ interface Stream {
 async function streamSites(stream: Stream): Promise<void> {
   const { isoscape, outputs, options, tally } = stream;
   const progress = createProgress(stream.context, 'sites');
-  const writer = createSitesWriter(options.format, stream.table, isoscape.isotopes);
+  const writer = createSitesWriter(options.format, stream.table, isoscape);
   const explainer = outputs.explain === null ? null : createExplainer(isoscape, outputs.explain);
   // The joint covariance needs all sites at once, and its limit must speak before anything is written.
   const batchRows = outputs.joint === null ? BATCH_ROWS : MAX_JOINT_SITES + 1;

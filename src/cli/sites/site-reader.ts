@@ -6,7 +6,13 @@ import {
   type Table,
   type TableRow,
 } from '../../stations/index.js';
-import { ELEVATION_SOURCE, earlierElevation, SITE_VOCABULARY, type SiteMeaning } from './site-vocabulary.js';
+import {
+  covariateMeaning,
+  ELEVATION_SOURCE,
+  earlierElevation,
+  SITE_VOCABULARY,
+  type SiteMeaning,
+} from './site-vocabulary.js';
 
 /** A place asked about, as its row gives it. */
 export interface Site {
@@ -16,6 +22,8 @@ export interface Site {
   readonly latDeg: number;
   /** NaN where the table has none. */
   readonly elevationM: number;
+  /** One a covariate of the isoscape, NaN where the table has none. */
+  readonly covariates: readonly number[];
 }
 
 /** A row of the table: its cells as they came, and the site read from them or the reason there is none. */
@@ -35,10 +43,12 @@ class RowProblemFound extends Error {}
 /**
  * Reads rows one by one; a bad row becomes a problem, never an error. Throws COLUMN_MISSING where no row could be read.
  *
+ * @param covariateNames the isoscape's covariates
  * @param isNearStations whether a place lies in the network's area: what an impossible latitude is judged by
  */
 export function createSiteReader(
   table: Table<SiteMeaning>,
+  covariateNames: readonly string[],
   isNearStations: (lonDeg: number, latDeg: number) => boolean,
 ): (row: TableRow) => SiteRow {
   const lonColumn = requireColumn(table, SITE_VOCABULARY, 'lon');
@@ -48,6 +58,7 @@ export function createSiteReader(
     elevationColumn !== undefined && earlierElevation(table.header).has(elevationColumn)
       ? table.header.indexOf(ELEVATION_SOURCE)
       : -1;
+  const covariateColumns = covariateNames.map((name) => table.columns.get(covariateMeaning(name)));
   const nameColumns = [table.columns.get('id'), table.columns.get('name')].filter((c) => c !== undefined);
 
   const read = (row: TableRow): Site => {
@@ -65,7 +76,8 @@ export function createSiteReader(
     const elevationM = elevationColumn === undefined || fromGrid ? Number.NaN : number(elevationColumn);
     checkElevation(elevationM);
     const names = nameColumns.map((column) => row.cells[column].trim()).filter((text) => text !== '');
-    return { label: names[0] ?? `line ${row.line}`, lonDeg, latDeg, elevationM };
+    const covariates = covariateColumns.map((column) => (column === undefined ? Number.NaN : number(column)));
+    return { label: names[0] ?? `line ${row.line}`, lonDeg, latDeg, elevationM, covariates };
   };
 
   return (row) => {

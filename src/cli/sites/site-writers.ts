@@ -1,6 +1,5 @@
 import { type DecimalMark, safeRow, type Table } from '../../stations/index.js';
-import type { IsotopeChoice } from '../../stations/network.js';
-import { type AddedValue, addedCell, addedColumns, keptHeader } from './added-columns.js';
+import { type AddedFor, type AddedValue, addedCell, addedColumns, keptHeader } from './added-columns.js';
 import type { SiteRow } from './site-reader.js';
 import type { SiteMeaning } from './site-vocabulary.js';
 
@@ -16,28 +15,28 @@ export interface SitesWriter {
 export function createSitesWriter(
   format: SitesFormat,
   table: Table<SiteMeaning>,
-  isotopes: IsotopeChoice,
+  addedFor: AddedFor,
 ): SitesWriter {
-  return format === 'csv' ? csvWriter(table, isotopes) : geojsonWriter(table, isotopes);
+  return format === 'csv' ? csvWriter(table, addedFor) : geojsonWriter(table, addedFor);
 }
 
 /**
  * RFC 4180, comma and decimal point in what is added. Input cells stay as they were, but for an apostrophe in front of
  * those a spreadsheet would run as a formula (see `safeCell`).
  */
-function csvWriter(table: Table<SiteMeaning>, isotopes: IsotopeChoice): SitesWriter {
-  const columns = addedColumns(isotopes);
+function csvWriter(table: Table<SiteMeaning>, addedFor: AddedFor): SitesWriter {
+  const columns = addedColumns(addedFor);
   return {
-    start: () => safeRow([...keptHeader(table.header, isotopes), ...columns.map(({ name }) => name)]),
+    start: () => safeRow([...keptHeader(table.header, addedFor), ...columns.map(({ name }) => name)]),
     row: (row, added) => safeRow([...row.cells, ...columns.map((column, i) => addedCell(column, added[i]))]),
     end: () => '',
   };
 }
 
 /** RFC 7946: one point a row (no geometry where the place is not known), the columns as typed properties. */
-function geojsonWriter(table: Table<SiteMeaning>, isotopes: IsotopeChoice): SitesWriter {
-  const columns = addedColumns(isotopes);
-  const names = distinct(keptHeader(table.header, isotopes));
+function geojsonWriter(table: Table<SiteMeaning>, addedFor: AddedFor): SitesWriter {
+  const columns = addedColumns(addedFor);
+  const names = distinct(keptHeader(table.header, addedFor));
   let separator = '';
   return {
     start: () => '{"type":"FeatureCollection","features":[',

@@ -1,5 +1,7 @@
 import { resolve } from 'node:path';
 import { RainprintError } from '../../errors.js';
+import type { CovariateFile } from '../../jobs/covariate-files.js';
+import { parseCovariates } from '../covariate-options.js';
 import type { SitesFormat } from './site-writers.js';
 
 /** Options of `rainprint sites` as commander hands them over. */
@@ -10,6 +12,7 @@ export interface SitesFlags {
   readonly format: string;
   readonly explain?: string | true;
   readonly elevation?: string;
+  readonly covariate: readonly string[];
   readonly plugIn?: true;
   readonly joint?: string;
   readonly record?: string;
@@ -25,6 +28,7 @@ export interface SitesOptions {
   readonly plugIn: boolean;
   readonly skipBad: boolean;
   readonly elevationPath: string | null;
+  readonly covariateFiles: readonly CovariateFile[];
   readonly outputPath: string | null;
   readonly jointPath: string | null;
   readonly recordPath: string | null;
@@ -43,6 +47,7 @@ export function readSitesOptions(flags: SitesFlags): SitesOptions {
     plugIn: flags.plugIn === true,
     skipBad: flags.skipBad === true,
     elevationPath: flags.elevation ?? null,
+    covariateFiles: parseCovariates(flags.covariate),
     outputPath,
     jointPath: flags.joint ?? null,
     recordPath: flags.record ?? (outputPath === null ? null : `${outputPath}.run.json`),

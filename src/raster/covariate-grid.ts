@@ -1,0 +1,127 @@
+import { RainprintError } from '../errors.js';
+import { frameSampler } from './elevation-frame.js';
+import { readRasterWindow } from './elevation-window.js';
+import type { CellWindow, GridFrame } from './grid-frame.js';
+import { RasterBlocks } from './raster-blocks.js';
+import { openRaster } from './raster-file.js';
+import { placeRaster, type RasterPlacement } from './raster-placement.js';
+
+/** The value of a covariate at a place, or why there is none. */
+export type CovariateSample =
+  | { readonly kind: 'value'; readonly value: number }
+  /** The raster's cell there declares that it has no value. */
+  | { readonly kind: 'nodata' }
+  | { readonly kind: 'outside' };
+
+/** A raster of any one quantity, in the unit its file has. */
+export interface CovariateGrid {
+  /** File name and the first digits of the SHA-256 of its bytes: what values are traced back to. */
+  readonly source: string;
+  /**
+   * Value at a place: bilinear between the four nearest cells that have one. A place in a cell without a value has
+   * none: nothing is filled in from its neighbours.
+   */
+  sample(lonDeg: number, latDeg: number): Promise<CovariateSample>;
+  /**
+   * Values of the cells of a window of a frame in any CRS, row-major: the mean over the cell where the raster is finer,
+   * bilinear where it is coarser, of what has a value; NaN where less than half of the cell has one or its centre lies
+   * outside.
+   */
+  sampleFrame(frame: GridFrame, window: CellWindow): Promise<{ readonly values: Float32Array }>;
+  close(): Promise<void>;
+}
+
+/** In cells: far below any size that matters, far above the rounding of degrees divided by cell sizes. */
+const ROUNDING = 1e-9;
+
+/**
+ * Opens a covariate raster: one band, north-up, longitude/latitude or a projected CRS. Throws what `openRaster` throws,
+ * and COVARIATE_EMPTY where every cell is nodata.
+ *
+ * @param known an earlier opening of the same file, in another thread: its bytes are then not hashed and searched again
+ */
+export async function openCovariate(
+  path: string,
+  known: Pick<CovariateGrid, 'source'> | null = null,
+): Promise<CovariateGrid> {
+  const file = await openRaster(path, { source: known?.source });
+  try {
+    const blocks = new RasterBlocks(file);
+    if (known === null) await checkHasValue(blocks);
+    const placement = placeRaster(file);
+    const ofFrame = frameSampler(blocks, placement, readRasterWindow);
+    return {
+      source: file.source,
+      sample: (lonDeg, latDeg) => sampleAt(blocks, placement, lonDeg, latDeg),
+      sampleFrame: async (frame, window) => ({ values: (await ofFrame(frame, window)).elevationM }),
+      close: () => file.close(),
+    };
+  } catch (error) {
+    await file.close();
+    throw error;
+  }
+}
+
+async function sampleAt(
+  blocks: RasterBlocks,
+  placement: RasterPlacement,
+  lonDeg: number,
+  latDeg: number,
+): Promise<CovariateSample> {
+  const { x, y } = placement.position(lonDeg, latDeg);
+  const { width, height } = blocks.file;
+  if (!(x >= 0 && x < width && y >= 0 && y < height)) return { kind: 'outside' };
+  const cell = (column: number, row: number) => cellValue(blocks, placement.goesRound, column, row);
+  // A position on a border belongs to the cell to its right or below, however it was rounded.
+  const own = await cell(Math.floor(x + ROUNDING), Math.floor(y + ROUNDING));
+  if (Number.isNaN(own)) return { kind: 'nodata' };
+  const left = Math.floor(x - 0.5);
+  const top = Math.floor(y - 0.5);
+  const right = x - 0.5 - left;
+  const down = y - 0.5 - top;
+  let weighted = 0;
+  let weights = 0;
+  for (const [column, row, weight] of [
+    [left, top, (1 - right) * (1 - down)],
+    [left + 1, top, right * (1 - down)],
+    [left, top + 1, (1 - right) * down],
+    [left + 1, top + 1, right * down],
+  ] as const) {
+    const value = weight > 0 ? await cell(column, row) : Number.NaN;
+    if (Number.isNaN(value)) continue;
+    weighted += weight * value;
+    weights += weight;
+  }
+  return { kind: 'value', value: weights > 0 ? weighted / weights : own };
+}
+
+/** NaN for nodata and beyond the raster's edge; columns go round where the raster does. */
+async function cellValue(
+  blocks: RasterBlocks,
+  goesRound: boolean,
+  column: number,
+  row: number,
+): Promise<number> {
+  const { width, height } = blocks.file;
+  const stored = goesRound ? ((column % width) + width) % width : column;
+  if (stored < 0 || stored >= width || row < 0 || row >= height) return Number.NaN;
+  const out = new Float32Array(1);
+  await blocks.readWindow(stored, row, 1, 1, out, 0, 1);
+  return out[0];
+}
+
+/** Stops at the first block with a value, from the middle of the raster on: margins are where nodata stands. */
+async function checkHasValue(blocks: RasterBlocks): Promise<void> {
+  const { blocksAcross, blocksDown, file } = blocks;
+  const count = blocksAcross * blocksDown;
+  for (let n = 0; n < count; n++) {
+    const k = (n + (count >> 1)) % count;
+    const block = await blocks.readBlock(k % blocksAcross, Math.floor(k / blocksAcross));
+    if (block.some((value) => !Number.isNaN(value))) return;
+  }
+  throw new RainprintError(
+    'COVARIATE_EMPTY',
+    `${file.path} has no value: each of its cells is nodata (${file.nodata}); check the declared nodata value with gdalinfo`,
+    { path: file.path, nodata: file.nodata },
+  );
+}
