@@ -1,188 +1,62 @@
-import { extname } from 'node:path';
 import type { Command } from 'commander';
-import { RainprintError } from '../errors.js';
-import {
-  createSupport,
-  type Isoscape,
-  type Places,
-  type Predictions,
-  predictPlaces,
-  readIsoscape,
-  type Target,
-} from '../isoscape/index.js';
-import {
-  degreesText,
-  type GridPlan,
-  type GridResult,
-  makeGrid,
-  parseBounds,
-  parseCell,
-  planGrid,
-  type SupportAsker,
-} from '../jobs/index.js';
-import { bundledElevationPath, type ElevationGrid, openElevation } from '../raster/index.js';
 import type { CliContext } from './context.js';
-import { readInputText } from './input-file.js';
-import { EXIT_INTERRUPTED, runInterruptible } from './interrupt.js';
-import { openOutput } from './output-file.js';
-import { createProgress } from './progress.js';
+import { type GridFlags, readGridOptions } from './grid/grid-options.js';
+import { runGrid } from './grid/run-grid.js';
+import { collected } from './repeated-options.js';
 
-interface GridFlags {
-  readonly bounds: string;
-  readonly cell: string;
-  readonly output: string;
-  readonly elevation?: string;
-  readonly target: string;
-  readonly plugIn?: boolean;
-}
+const HELP = `
+Bands: d18O, d18O_se, d2H, d2H_se, dexcess, dexcess_se, cov_d18O_d2H (one isotope: its value and
+standard error) and, with --support, the reasons why a cell leans on little, as bits. Float32, nodata
+-9999, a Cloud-Optimized GeoTIFF. Beside FILE.tif stands FILE.tif.run.json: what would run it again.
 
-/** An isoscape of 10,000 stations is a few megabytes. */
-const MAX_ISOSCAPE_BYTES = 2 ** 28;
-/** Keeps a turn of the event loop near a tenth of a second: a place costs about n² operations. */
-const OPERATIONS_PER_TURN = 2 ** 24;
+Each cell is predicted at its centre, at its own elevation. With the elevation grid that comes with
+the program the sea is predicted at 0 m, unless --land leaves it out; with --elevation FILE a cell
+without elevation has no value. A value that precipitation cannot have is not written, and counted on
+standard error.
 
-const EXAMPLE = `
-Example, a quarter-degree grid over the antimeridian:
-  rainprint grid rain.isoscape.json --bounds 170,-25,-170,-10 --cell 0.25 -o rain.tif
+Cells far from stations are interpolated; --tolerance says how far they may be from cells computed
+one by one, and a sample of cells is computed so and compared. Values are rounded to powers of two
+below the tolerance, so that the file is smaller.
 
-Bands: d18O, d18O_se, d2H, d2H_se, dexcess, dexcess_se, cov_d18O_d2H (one isotope: its value and standard error);
-float32, nodata -9999 where there is no land, and where the
-trend runs to values that precipitation does not have (counted on standard error). Each cell is predicted at its centre, at its own elevation.`;
+Examples:
+  a quarter-degree grid over the antimeridian
+    rainprint grid rain.isoscape.json --bounds 170,-25,-170,-10 --cell 0.25 -o rain.tif
+  one kilometre in a projected system, land only, elevations of one's own
+    rainprint grid rain.isoscape.json --crs EPSG:3035 --bounds 4000000,2500000,4800000,3200000 \\
+      --cell 1000 --elevation dem.tif --land -o rain.tif
+  on the cells of another raster, inside an area, one file a band
+    rainprint grid rain.isoscape.json --like landcover.tif --mask area.geojson --split -o rain.tif`;
 
+/** `rainprint grid`: values with errors on the cells of a raster. */
 export function registerGrid(program: Command, context: CliContext): void {
   program
     .command('grid')
-    .description('predict over an area and write a GeoTIFF')
+    .description('predict on the cells of a raster and write a Cloud-Optimized GeoTIFF')
     .argument('<isoscape>', 'file written by rainprint fit')
-    .requiredOption('--bounds <W,S,E,N>', 'edges in degrees; W above E runs over the antimeridian')
-    .requiredOption('--cell <degrees>', 'size of a cell, like 0.25 or 1/12')
     .requiredOption('-o, --output <file>', 'the GeoTIFF to write')
+    .option(
+      '--bounds <W,S,E,N>',
+      'edges in units of the CRS; degrees may run over the antimeridian (W above E)',
+    )
+    .option('--cell <size>', 'side of a cell in units of the CRS, like 0.25, 1/12 or 1000')
+    .option('--crs <code>', 'EPSG code of the coordinate reference system (default: EPSG:4326)')
+    .option('--like <file>', 'take CRS, cells and nodata of this GeoTIFF, in place of bounds and cell')
     .option('--elevation <file>', 'GeoTIFF of elevations in metres (default: the bundled 5-minute grid)')
+    .option('--covariate <name=file>', 'GeoTIFF of a covariate of the isoscape; once for each', collected, [])
+    .option('--mask <file>', 'GeoJSON polygons: cells whose centre lies outside have no value')
+    .option('--land', 'cells on the sea have no value')
     .option('--target <target>', 'site (a place, its micro-scale variation included) or field', 'site')
     .option('--plug-in', 'take the fitted parameters for known, for comparison with other programs')
-    .addHelpText('after', EXAMPLE)
-    .action((isoscapePath: string, flags: GridFlags) => runGrid(isoscapePath, flags, context));
-}
-
-async function runGrid(isoscapePath: string, flags: GridFlags, context: CliContext): Promise<void> {
-  const target = parseTarget(flags.target);
-  const plan = planGrid(parseBounds(flags.bounds), parseCell(flags.cell));
-  const isoscape = readIsoscape(await readInputText(isoscapePath, MAX_ISOSCAPE_BYTES));
-  const elevationPath = flags.elevation ?? bundledElevationPath();
-  if (plan.extended) {
-    const edges = [plan.westDeg, plan.southDeg, plan.eastDeg, plan.northDeg].map(degreesText).join(',');
-    context.stderr.write(`rainprint: bounds moved outwards to whole cells: ${edges}\n`);
-  }
-  const call = { plan, isoscape, target, plugIn: flags.plugIn === true, output: flags.output };
-  const finished = await runInterruptible(async (signal) => {
-    await checkOutput(flags.output, [isoscapePath, elevationPath]);
-    const elevation = await openElevation(elevationPath);
-    try {
-      const result = await writeGrid(call, elevation, signal, context);
-      context.stderr.write(summary(flags.output, result));
-    } finally {
-      await elevation.close();
-    }
-  });
-  if (finished) return;
-  context.stderr.write(`rainprint: stopped; ${flags.output} was not written\n`);
-  context.setExitCode(EXIT_INTERRUPTED);
-}
-
-interface GridCall {
-  readonly plan: GridPlan;
-  readonly isoscape: Isoscape;
-  readonly target: Target;
-  readonly plugIn: boolean;
-  readonly output: string;
-}
-
-async function writeGrid(
-  call: GridCall,
-  elevation: ElevationGrid,
-  signal: AbortSignal,
-  context: CliContext,
-): Promise<GridResult> {
-  const { plan, isoscape, target, plugIn } = call;
-  const progress = createProgress(context, 'grid');
-  const request = {
-    plan,
-    isotopes: isoscape.isotopes,
-    amountWeighted: isoscape.sampling.kind === 'records' && isoscape.sampling.amountWeighted,
-    predict: (places: Places, out: Predictions) => predictPlaces(isoscape, places, out, { target, plugIn }),
-    support: supportAsker(isoscape),
-    placesPerTurn: placesPerTurn(isoscape),
-    elevation,
-    items: provenance(call, elevation.source, context.toolVersion),
-    software: `rainprint ${context.toolVersion}`,
-  };
-  try {
-    return await makeGrid(call.output, request, {
-      signal,
-      onProgress: (done, total) => progress.update(done, total),
-    });
-  } finally {
-    progress.end();
-  }
-}
-
-/** That elevations come from a grid holds for every cell and is no news. */
-function supportAsker(isoscape: Isoscape): SupportAsker {
-  const support = createSupport(isoscape);
-  return (lonDeg, latDeg, elevationM) => support.flags(lonDeg, latDeg, elevationM, false);
-}
-
-function summary(path: string, result: GridResult): string {
-  const { width, height, landCells, impossibleCells, flaggedCells, flags } = result;
-  const lines = [`${path}: ${width} × ${height} cells, ${landCells + impossibleCells} of them land`];
-  if (impossibleCells > 0) {
-    lines.push(
-      `${impossibleCells} land cells are nodata: their values are beyond what precipitation has, the trend is extrapolated far beyond the stations`,
+    .option('--tolerance <permil>', 'error allowed in d18O and its standard error; 8 times in d2H', '0.005')
+    .option('--exact', 'compute every cell by itself, which is slow')
+    .option('--bands <names>', 'only these bands, separated by commas')
+    .option('--support', 'add the band support')
+    .option('--split', 'one file a band: out.d18O.tif, out.d18O_se.tif, ...')
+    .option('--full-precision', 'round nothing: every bit float32 has')
+    .option('--tile <cells>', 'side of a tile of the file: 256 or 512', '512')
+    .option('--threads <count>', 'threads that work (default: as many as the machine runs at once)')
+    .addHelpText('after', HELP)
+    .action((isoscapePath: string, flags: GridFlags) =>
+      runGrid(isoscapePath, readGridOptions(flags), context),
     );
-  }
-  if (flaggedCells > 0) {
-    const reasons = Object.entries(flags).map(([flag, cells]) => `${flag} ${cells}`);
-    lines.push(`${flaggedCells} land cells lean on little (${reasons.join(', ')}): read them with care`);
-  }
-  return lines.map((line) => `rainprint: ${line}\n`).join('');
-}
-
-function parseTarget(text: string): Target {
-  if (text === 'site' || text === 'field') return text;
-  throw new RainprintError('OPTION_INVALID', `--target is site or field, got "${text}"`, { target: text });
-}
-
-/** Finds out before the long work, not after it, that the output cannot be written. */
-async function checkOutput(path: string, inputs: readonly string[]): Promise<void> {
-  const output = await openOutput(path, inputs);
-  await output.abort();
-  const extension = extname(path);
-  if (extension === '' || /^\.tiff?$/i.test(extension)) return;
-  throw new RainprintError(
-    'OUTPUT_PATH_INVALID',
-    `${path}: grid writes a GeoTIFF, whose name ends in .tif or .tiff, got "${extension}"`,
-    { path, extension },
-  );
-}
-
-function placesPerTurn(isoscape: Isoscape): number {
-  const stationCount = isoscape.stations.id.length;
-  return Math.min(4096, Math.max(16, Math.floor(OPERATIONS_PER_TURN / stationCount ** 2)));
-}
-
-/** What someone who finds the file needs to know, as metadata items of the file. */
-function provenance(call: GridCall, elevationSource: string, toolVersion: string): Record<string, string> {
-  const { isoscape, target, plugIn } = call;
-  return {
-    isoscape_id: isoscape.id,
-    network: isoscape.networkName,
-    stations: String(isoscape.stations.id.length),
-    season: isoscape.season.label,
-    target,
-    parameters: plugIn ? 'plug-in' : 'averaged',
-    elevation_source: elevationSource,
-    tool_version: toolVersion,
-    caution:
-      "Predictions lean on the stations: far from them, or beyond their elevations and latitudes, the standard errors are a model's word only.",
-  };
 }

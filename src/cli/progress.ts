@@ -9,10 +9,17 @@ export interface Progress {
 
 const SILENT: Progress = { update() {}, end() {} };
 const MIN_INTERVAL_MS = 100;
+/** Before that the first pieces of the work say little about the rest. */
+const FIRST_FORECAST_MS = 2000;
 
-/** A progress line on stderr, only where that is a terminal: a log file gets none. */
-export function createProgress(context: CliContext, label: string): Progress {
+/**
+ * A progress line on stderr, only where that is a terminal: a log file gets none.
+ *
+ * @param forecast whether the time left is shown, as if the rest went on as the work did so far
+ */
+export function createProgress(context: CliContext, label: string, forecast = false): Progress {
   if (!context.isTty) return SILENT;
+  const startMs = Date.now();
   let lastMs = Number.NEGATIVE_INFINITY;
   let shownLength = 0;
   return {
@@ -20,7 +27,8 @@ export function createProgress(context: CliContext, label: string): Progress {
       const nowMs = Date.now();
       if (nowMs - lastMs < MIN_INTERVAL_MS) return;
       lastMs = nowMs;
-      const text = [label, stage, amount(done, total)].filter((part) => part !== '').join(' ');
+      const left = forecast ? timeLeft(nowMs - startMs, done, total) : '';
+      const text = [label, stage, amount(done, total), left].filter((part) => part !== '').join(' ');
       context.stderr.write(`\r${text.padEnd(shownLength)}`);
       shownLength = text.length;
     },
@@ -34,4 +42,16 @@ export function createProgress(context: CliContext, label: string): Progress {
 function amount(done: number, total: number): string {
   if (total <= 0) return done.toLocaleString('en-US');
   return `${done.toLocaleString('en-US')}/${total.toLocaleString('en-US')} (${Math.floor((100 * done) / total)} %)`;
+}
+
+function timeLeft(spentMs: number, done: number, total: number): string {
+  if (spentMs < FIRST_FORECAST_MS || done <= 0 || total <= done) return '';
+  const seconds = Math.ceil((spentMs * (total - done)) / done / 1000);
+  const text =
+    seconds < 90
+      ? `${seconds} s`
+      : seconds < 5400
+        ? `${Math.round(seconds / 60)} min`
+        : `${(seconds / 3600).toFixed(1)} h`;
+  return `about ${text} left`;
 }

@@ -1,20 +1,30 @@
-export { gridBands } from './grid-bands.js';
 export {
-  degreesText,
-  type GridBounds,
-  type GridPlan,
-  MAX_GRID_CELLS,
-  MAX_GRID_SIDE,
-  parseBounds,
-  parseCell,
-  planGrid,
-} from './grid-plan.js';
+  BAND_NAMES,
+  type BandName,
+  CELL_FLAGS,
+  chooseBands,
+  type GridBand,
+  SUPPORT_BITS,
+} from './grid-bands.js';
+export { CHECKED, checkTolerance, type GridCheck } from './grid-check.js';
+export type { GridCounts } from './grid-counts.js';
+export { bandPath, type WrittenFile } from './grid-files.js';
 export {
+  coordinateText,
+  type FrameOptions,
+  type FramePlan,
+  MAX_FRAME_CELLS,
+  MAX_FRAME_SIDE,
+  planFrame,
+} from './grid-frame.js';
+export type { GroundNames } from './grid-sources.js';
+export type { GroundPaths } from './grid-work.js';
+export {
+  availableBands,
+  DEFAULT_TOLERANCE,
   GRID_NODATA,
   type GridRequest,
   type GridResult,
   type GridRun,
   makeGrid,
-  type PlacePredictor,
-  type SupportAsker,
 } from './make-grid.js';

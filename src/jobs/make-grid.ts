@@ -1,199 +1,214 @@
-import { setImmediate as nextTurn } from 'node:timers/promises';
 import { RainprintError } from '../errors.js';
-import { createPlaces, createPredictions, type Places, type Predictions } from '../isoscape/places.js';
-import { impossibleValue } from '../isoscape/possible-value.js';
-import { type ElevationCells, type ElevationGrid, type LonLatGrid, writeGeoTiff } from '../raster/index.js';
-import type { IsotopeChoice } from '../stations/index.js';
-import { gridBands, writeBandCell } from './grid-bands.js';
-import type { GridPlan } from './grid-plan.js';
+import { type Isoscape, readIsoscape, type Target } from '../isoscape/index.js';
+import { type BlockPosition, blockOrder, type GridFrame } from '../raster/index.js';
+import { type BlockPool, defaultThreads, openBlockPool } from './block-pool.js';
+import { chooseBands, type GridBand, gridBands } from './grid-bands.js';
+import { addCheck, createCheck, type GridCheck } from './grid-check.js';
+import { addCounts, createCounts, type GridCounts } from './grid-counts.js';
+import { type GridFile, GridFiles, planFiles, type WrittenFile } from './grid-files.js';
+import { gridItems } from './grid-items.js';
+import { gridRounding } from './grid-rounding.js';
+import { checkGround, type GroundNames } from './grid-sources.js';
+import type { GridBlock, GridWork, GroundPaths } from './grid-work.js';
 
-/** The one door to the model: fills `out` for flat columns of places. */
-export type PlacePredictor = (places: Places, out: Predictions) => void;
-
-/** Names why a prediction at a place leans on little; empty where it does not. */
-export type SupportAsker = (lonDeg: number, latDeg: number, elevationM: number) => readonly string[];
-
+/** A grid as asked for: plain data. */
 export interface GridRequest {
-  readonly plan: GridPlan;
-  readonly isotopes: IsotopeChoice;
-  /** Whether the station means are known to be weighted by amounts: the bands say so. */
-  readonly amountWeighted: boolean;
-  readonly predict: PlacePredictor;
-  readonly support: SupportAsker;
-  /** Places predicted between two looks at progress and cancelling. */
-  readonly placesPerTurn: number;
-  readonly elevation: ElevationGrid;
-  /** Items about the whole file: where it comes from. */
-  readonly items: Readonly<Record<string, string>>;
-  readonly software: string;
+  /** The isoscape as its file's text. */
+  readonly isoscapeText: string;
+  readonly frame: GridFrame;
+  readonly ground: GroundPaths;
+  readonly target: Target;
+  readonly plugIn: boolean;
+  /** Largest error in δ18O and its standard error, ‰; that of δ2H and d-excess is 8 times as large. */
+  readonly tolerance: number;
+  /** Every cell for itself, without interpolation. */
+  readonly exact: boolean;
+  /** Names of bands; null for all but `support`. */
+  readonly bands: readonly string[] | null;
+  /** Whether the band `support` is added. */
+  readonly support: boolean;
+  /** One file a band: `out.tif` becomes `out.d18O.tif`, … */
+  readonly split: boolean;
+  readonly fullPrecision: boolean;
+  readonly tileSizePx: 256 | 512;
+  readonly toolVersion: string;
 }
 
 export interface GridRun {
   readonly signal?: AbortSignal;
   readonly onProgress?: (cellsDone: number, cellCount: number) => void;
+  /** Worker threads; 0 works in the calling thread. As many as the machine runs at once where not given. */
+  readonly threads?: number;
 }
 
 export interface GridResult {
   readonly width: number;
   readonly height: number;
-  /** Cells that are land and have a prediction. */
-  readonly landCells: number;
-  /** Land cells left nodata because the predicted value cannot be precipitation (see `impossibleValue`). */
-  readonly impossibleCells: number;
-  /** Cells that some reason says lean on little, and how many each reason names. */
-  readonly flaggedCells: number;
-  readonly flags: Readonly<Record<string, number>>;
+  readonly bands: readonly GridBand[];
+  readonly counts: GridCounts;
+  readonly check: GridCheck;
+  readonly ground: GroundNames;
+  /** The metadata items of the file. */
+  readonly items: Readonly<Record<string, string>>;
+  readonly files: readonly WrittenFile[];
 }
 
+export const DEFAULT_TOLERANCE = 0.005;
 export const GRID_NODATA = -9999;
-const TILE_SIZE_PX = 256;
-/** Elevations are read for about this many cells at once. */
-const ELEVATION_CELLS = 65_536;
+/** zlib's own default. */
+const DEFLATE_LEVEL = 6;
+const PROGRESS_INTERVAL_MS = 100;
 
 /**
- * Predicts at the centre of every cell of land, at the cell's elevation, and writes the bands to `path`; cells without
- * elevation, and those whose value cannot be precipitation, are nodata. Throws GRID_EMPTY where no cell has a value; an aborted signal rejects with its reason. In both
- * cases, as on any failure, no file is left.
+ * Predicts at the centre of every wanted cell and writes a Cloud-Optimized GeoTIFF; cells that are not wanted, have no
+ * elevation or covariate, or whose value cannot be precipitation, are nodata. The bytes written do not depend on the
+ * number of threads. Files that cannot be read are refused before any long work. Throws GRID_EMPTY where no cell has a
+ * value; an aborted signal rejects with its reason. In both cases, as on any failure, no file is left.
  */
 export async function makeGrid(path: string, request: GridRequest, run: GridRun = {}): Promise<GridResult> {
-  const { plan, isotopes, elevation } = request;
-  const bands = gridBands(isotopes, request.amountWeighted);
-  const cellCount = plan.width * plan.height;
-  const tally: Tally = { landCells: 0, impossibleCells: 0, flaggedCells: 0, flags: {} };
-  const fillRows = async (firstRow: number, rowCount: number): Promise<Float32Array[]> => {
-    const rows = bands.map(() => new Float32Array(plan.width * rowCount).fill(Number.NaN));
-    for (const block of rowBlocks(firstRow, rowCount, plan.width)) {
-      const part = {
-        ...plan,
-        height: block.rowCount,
-        northDeg: plan.northDeg - block.firstRow * plan.cellDeg,
-      };
-      const cells = await elevation.sampleGrid(part);
-      const start = (block.firstRow - firstRow) * plan.width;
-      const onCells = (done: number) => run.onProgress?.(block.firstRow * plan.width + done, cellCount);
-      await fillBlock(request, part, cells, { rows, start, tally, onCells }, run.signal);
-    }
-    if (firstRow + rowCount === plan.height && tally.landCells === 0)
-      throw gridEmpty(elevation.source, tally);
-    return rows;
-  };
-  await writeGeoTiff(
-    path,
-    {
-      width: plan.width,
-      height: plan.height,
-      sampleType: 'float32',
-      tileSizePx: TILE_SIZE_PX,
-      crs: 'EPSG:4326',
-      transform: {
-        originX: plan.westDeg,
-        originY: plan.northDeg,
-        cellWidth: plan.cellDeg,
-        cellHeight: plan.cellDeg,
-      },
-      pixelIs: 'area',
-      nodata: GRID_NODATA,
-      bands,
-      items: request.items,
-      software: request.software,
-    },
-    fillRows,
-    run.signal === undefined ? {} : { signal: run.signal },
-  );
-  return { width: plan.width, height: plan.height, ...tally };
-}
-
-interface Tally {
-  landCells: number;
-  impossibleCells: number;
-  flaggedCells: number;
-  readonly flags: Record<string, number>;
-}
-
-/** Where the predictions of some whole rows go: bands from cell `start` on, counts, progress. */
-interface BlockSink {
-  readonly rows: readonly Float32Array[];
-  readonly start: number;
-  readonly tally: Tally;
-  readonly onCells: (done: number) => void;
-}
-
-/** Predicts the land cells of some whole rows. */
-async function fillBlock(
-  request: GridRequest,
-  grid: LonLatGrid,
-  cells: ElevationCells,
-  sink: BlockSink,
-  signal: AbortSignal | undefined,
-): Promise<void> {
-  const land = landIndices(cells);
-  for (let first = 0; first < land.length; first += request.placesPerTurn) {
-    signal?.throwIfAborted();
-    const some = land.subarray(first, first + request.placesPerTurn);
-    const places = placesOf(grid, cells, some);
-    const predictions = createPredictions(some.length);
-    request.predict(places, predictions);
-    for (let i = 0; i < some.length; i++) {
-      if (impossibleValue(request.isotopes, predictions.d18O[i]!, predictions.d2H[i]!) !== null) {
-        sink.tally.impossibleCells++;
-        continue;
-      }
-      writeBandCell(request.isotopes, predictions, i, sink.rows, sink.start + some[i]!);
-      count(sink.tally, request.support(places.lonDeg[i]!, places.latDeg[i]!, places.elevationM[i]!));
-    }
-    sink.onCells(some[some.length - 1]! + 1);
-    await nextTurn(); // lets signals and the terminal in
-  }
+  const { signal } = run;
   signal?.throwIfAborted();
-  sink.onCells(grid.width * grid.height);
-}
-
-function count(tally: Tally, flags: readonly string[]): void {
-  tally.landCells++;
-  if (flags.length > 0) tally.flaggedCells++;
-  for (const flag of flags) tally.flags[flag] = (tally.flags[flag] ?? 0) + 1;
-}
-
-function landIndices(cells: ElevationCells): Uint32Array {
-  const out = new Uint32Array(cells.elevationM.length);
-  let count = 0;
-  cells.elevationM.forEach((elevationM, k) => {
-    if (!Number.isNaN(elevationM)) out[count++] = k;
-  });
-  return out.subarray(0, count);
-}
-
-/** Cell centres; longitudes past 180 come back to the usual range. */
-function placesOf(grid: LonLatGrid, cells: ElevationCells, land: Uint32Array): Places {
-  const places = createPlaces(land.length);
-  land.forEach((k, i) => {
-    const lonDeg = grid.westDeg + ((k % grid.width) + 0.5) * grid.cellDeg;
-    places.lonDeg[i] = lonDeg >= 180 ? lonDeg - 360 : lonDeg;
-    places.latDeg[i] = grid.northDeg - (Math.floor(k / grid.width) + 0.5) * grid.cellDeg;
-    places.elevationM[i] = cells.elevationM[k]!;
-    places.elevationVarM2[i] = cells.varianceM2[k]!;
-  });
-  return places;
-}
-
-function* rowBlocks(firstRow: number, rowCount: number, width: number) {
-  const step = Math.max(1, Math.floor(ELEVATION_CELLS / width));
-  for (let row = firstRow; row < firstRow + rowCount; row += step) {
-    yield { firstRow: row, rowCount: Math.min(step, firstRow + rowCount - row) };
+  const isoscape = readIsoscape(request.isoscapeText);
+  const bands = chooseBands(availableBands(isoscape), request.bands, request.support);
+  const planned = planFiles(path, bands, request.split, formatOf(request));
+  const ground = await checkGround(request.ground, isoscape, request.frame);
+  const files = await GridFiles.open(planned, request.frame, `rainprint ${request.toolVersion}`);
+  try {
+    const work = workOf(request, planned, ground);
+    const tally = await makeBlocks(work, files, run);
+    if (tally.counts.predicted === 0) throw gridEmpty(tally.counts, ground);
+    const items = gridItems(isoscape, request, { ...tally, ground, rounding: work.rounding, bands });
+    const written = await files.finish(items, signal);
+    const { width, height } = request.frame;
+    return { width, height, bands, ...tally, ground, items, files: written };
+  } catch (error) {
+    await files.abort();
+    throw error;
   }
 }
 
-function gridEmpty(source: string, { impossibleCells }: Tally): RainprintError {
-  if (impossibleCells > 0) {
-    return new RainprintError(
-      'GRID_EMPTY',
-      `all ${impossibleCells} land cells have values beyond what precipitation has: the trend is extrapolated far beyond the stations; check --bounds (W,S,E,N)`,
-      { impossibleCells },
-    );
+/** What `chooseBands` chooses from. */
+export function availableBands({ isotopes, sampling }: Isoscape): readonly GridBand[] {
+  return gridBands(isotopes, sampling.kind === 'records' && sampling.amountWeighted);
+}
+
+function formatOf({ frame, tileSizePx }: GridRequest) {
+  return {
+    width: frame.width,
+    height: frame.height,
+    tileSizePx,
+    sampleType: 'float32' as const,
+    nodata: GRID_NODATA,
+    deflateLevel: DEFLATE_LEVEL,
+    overviews: true,
+  };
+}
+
+function workOf(request: GridRequest, planned: readonly GridFile[], groundNames: GroundNames): GridWork {
+  const { isoscapeText, frame, ground, target, plugIn, tolerance, exact, fullPrecision } = request;
+  return {
+    isoscapeText,
+    frame,
+    ground,
+    groundNames,
+    target,
+    plugIn,
+    tolerance,
+    exact,
+    rounding: fullPrecision ? null : gridRounding(tolerance),
+    files: planned.map(({ bands, format }) => ({ bands: bands.map(({ name }) => name), format })),
+  };
+}
+
+interface GridTally {
+  readonly counts: GridCounts;
+  readonly check: GridCheck;
+}
+
+async function makeBlocks(work: GridWork, files: GridFiles, run: GridRun): Promise<GridTally> {
+  const { signal } = run;
+  const pool = openBlockPool(work, run.threads ?? defaultThreads());
+  const cellCount = work.frame.width * work.frame.height;
+  const tell = () => run.onProgress?.(pool.cellsDone(), cellCount);
+  const ticker = setInterval(tell, PROGRESS_INTERVAL_MS);
+  const stop = () => void pool.close();
+  signal?.addEventListener('abort', stop, { once: true });
+  try {
+    const tally = await dispatch(work, files, pool, signal, tell);
+    run.onProgress?.(cellCount, cellCount);
+    return tally;
+  } catch (error) {
+    throw signal?.aborted === true ? signal.reason : error; // workers that were stopped complain of it
+  } finally {
+    clearInterval(ticker);
+    signal?.removeEventListener('abort', stop);
+    await pool.close();
   }
+}
+
+/** A bounded number of blocks is under way, and a place is free only when its block is on disk: memory stays flat. */
+async function dispatch(
+  work: GridWork,
+  files: GridFiles,
+  pool: BlockPool,
+  signal: AbortSignal | undefined,
+  tell: () => void,
+): Promise<GridTally> {
+  const tally: GridTally = { counts: createCounts(), check: createCheck() };
+  const underWay = new Set<Promise<void>>();
+  const one = async (block: GridBlock) => {
+    const made = await pool.run(block);
+    addCounts(tally.counts, made.counts); // sums of whole numbers and largest values: the same in any order
+    addCheck(tally.check, made.check);
+    await files.add(block, made.files);
+    tell();
+  };
+  for (const position of blockOrder(work.files[0]!.format)) {
+    if (underWay.size >= pool.width) await Promise.race(underWay);
+    signal?.throwIfAborted();
+    const job: Promise<void> = one(blockAt(work, position)).then(() => void underWay.delete(job));
+    job.catch(() => undefined); // it stays in the set and is heard there
+    underWay.add(job);
+  }
+  await Promise.all(underWay);
+  signal?.throwIfAborted();
+  return tally;
+}
+
+function blockAt({ frame, files }: GridWork, { blockColumn, blockRow }: BlockPosition): GridBlock {
+  const side = files[0]!.format.tileSizePx;
+  const [firstColumn, firstRow] = [blockColumn * side, blockRow * side];
+  return {
+    blockColumn,
+    blockRow,
+    firstColumn,
+    firstRow,
+    width: Math.min(side, frame.width - firstColumn),
+    height: Math.min(side, frame.height - firstRow),
+  };
+}
+
+function gridEmpty(counts: GridCounts, ground: GroundNames): RainprintError {
+  const reasons = [
+    [
+      counts.impossible,
+      'have values beyond what precipitation has, the trend being extrapolated far beyond the stations',
+    ],
+    [counts.masked, 'lie outside the mask or have no value in the template'],
+    [counts.sea, `are sea in ${ground.elevation}`],
+    [counts.offEarth, 'lie where the CRS does not reach'],
+    [counts.withoutElevation, `have no elevation in ${ground.elevation}`],
+    [counts.withoutCovariate, 'have no value of a covariate'],
+  ] as const;
+  const said = reasons.filter(([cells]) => cells > 0).map(([cells, reason]) => `${cells} ${reason}`);
   return new RainprintError(
     'GRID_EMPTY',
-    `no cell of the grid has an elevation: ${source} has only sea there, or does not reach it; check --bounds (W,S,E,N) and --elevation`,
-    { source },
+    `no cell of the grid has a value: ${said.join('; ')}; check the bounds (W,S,E,N) and the files named`,
+    {
+      impossible: counts.impossible,
+      masked: counts.masked,
+      sea: counts.sea,
+      withoutElevation: counts.withoutElevation,
+    },
   );
 }

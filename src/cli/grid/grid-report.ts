@@ -1,0 +1,61 @@
+import { SUPPORT_FLAGS } from '../../isoscape/index.js';
+import { CHECKED, checkTolerance, type GridCheck, type GridResult } from '../../jobs/index.js';
+import type { GridOptions } from './grid-options.js';
+
+/** What a person is told once a grid is written, one line each. */
+export function gridReport(options: GridOptions, result: GridResult): string[] {
+  const { width, height, counts, files } = result;
+  const sizeMb = files.reduce((sum, { summary }) => sum + summary.sizeBytes, 0) / 1e6;
+  const name = files.length === 1 ? files[0]!.path : `${files.length} files beside ${options.outputPath}`;
+  const lines = [
+    `${name}: ${width} × ${height} cells, ${counts.predicted} of them with a value (${sizeMb.toFixed(1)} MB)`,
+  ];
+  lines.push(...nodataLines(result), ...result.ground.notes.map((note) => `note: ${note}`));
+  if (counts.impossible > 0) {
+    lines.push(
+      `${counts.impossible} cells are nodata: their values are beyond what precipitation has, the trend is extrapolated far beyond the stations`,
+    );
+  }
+  if (counts.flagged > 0) {
+    const reasons = counts.byFlag.flatMap((cells, bit) =>
+      cells > 0 ? `${SUPPORT_FLAGS[bit]} ${cells}` : [],
+    );
+    lines.push(`${counts.flagged} cells lean on little (${reasons.join(', ')}): read them with care`);
+  }
+  if (!options.exact) lines.push(...checkLines(options.tolerance, result.check));
+  return lines;
+}
+
+function nodataLines({ counts, ground }: GridResult): string[] {
+  const reasons = [
+    [counts.masked, 'not asked for (mask or template)'],
+    [counts.sea, 'sea'],
+    [counts.offEarth, 'where the CRS does not reach'],
+    [counts.withoutElevation, `without elevation in ${ground.elevation}`],
+    [
+      counts.withoutCovariate,
+      `without a value in ${ground.covariates.map(({ source }) => source).join(', ')}`,
+    ],
+  ] as const;
+  const said = reasons.filter(([cells]) => cells > 0).map(([cells, reason]) => `${cells} ${reason}`);
+  return said.length === 0 ? [] : [`nodata: ${said.join(', ')}`];
+}
+
+/** What the interpolation cost, as found on a sample; more than allowed is a fault of ours and must be said. */
+function checkLines(tolerance: number, { cells, largest }: GridCheck): string[] {
+  if (cells === 0) return [];
+  const measured = CHECKED.filter((name) => largest[name] > 0).map(
+    (name) => `${name} ${largest[name].toExponential(1)}`,
+  );
+  const found = measured.length === 0 ? 'none' : measured.join(', ');
+  const lines = [
+    `largest error on ${cells} cells computed again exactly: ${found} (per mil; allowed ${tolerance} in d18O, ${checkTolerance('d2H', tolerance)} in d2H and d-excess)`,
+  ];
+  const beyond = CHECKED.filter((name) => largest[name] > checkTolerance(name, tolerance));
+  if (beyond.length > 0) {
+    lines.push(
+      `WARNING: ${beyond.join(', ')} missed the tolerance: do not rely on this grid to that tolerance; --exact computes every cell`,
+    );
+  }
+  return lines;
+}
