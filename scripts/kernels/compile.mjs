@@ -3,6 +3,7 @@
 // The module carries a digest of everything its bytes depend on; the same sources give the same bytes.
 import { createHash } from 'node:crypto';
 import { existsSync, readdirSync, readFileSync, renameSync, writeFileSync } from 'node:fs';
+import { createRequire } from 'node:module';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 
@@ -86,6 +87,5 @@ export async function buildKernels() {
 }
 
 function compilerVersion() {
-  const path = fileURLToPath(new URL('../package.json', import.meta.resolve('assemblyscript')));
-  return JSON.parse(readFileSync(path, 'utf8')).version;
+  return createRequire(import.meta.url)('assemblyscript/package.json').version;
 }

@@ -28,10 +28,10 @@ function correlationAt(kind: i32, u: v128): v128 {
     const third = f64x2.div(f64x2.mul(u, u), f64x2.splat(3));
     return f64x2.mul(f64x2.add(f64x2.add(one, u), third), exponential(f64x2.neg(u)));
   }
-  // Spherical: 1 − 1.5u + 0.5u³ below u = 1, else 0. A NaN must stay one: the test is for "at or beyond".
+  // Spherical: 1 − 1.5u + 0.5u³ below u = 1, else 0 (also for NaN, as in the reference).
   const cubic = f64x2.mul(f64x2.mul(f64x2.splat(0.5), u), f64x2.mul(u, u));
   const inside = f64x2.add(f64x2.sub(one, f64x2.mul(f64x2.splat(1.5), u)), cubic);
-  return v128.andnot(inside, f64x2.ge(u, one));
+  return v128.and(inside, f64x2.lt(u, one));
 }
 
 /**

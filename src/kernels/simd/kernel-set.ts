@@ -18,10 +18,21 @@ const INVERSE_ROWS = 24;
 const PRODUCT_OPERATIONS = 16_384;
 const PRODUCT_INNER = 4;
 const COVARIANCES = 64;
+/** Enough for matrices of 200 rows. */
+const FIRST_SCRATCH_BYTES = 2 ** 20;
 
-/** The compiled kernels; null where the engine has no WebAssembly SIMD. */
+/**
+ * The compiled kernels; null where the engine has no WebAssembly SIMD, or no room for one memory: an engine may reserve
+ * 10 GB of addresses for each, which a limit on them (`ulimit -v`) can forbid.
+ */
 export function simdKernels(): KernelSet | null {
-  return compiledModule() === null ? null : SIMD_KERNELS;
+  if (compiledModule() === null) return null;
+  try {
+    scratchMemory(FIRST_SCRATCH_BYTES);
+    return SIMD_KERNELS;
+  } catch {
+    return null;
+  }
 }
 
 const SIMD_KERNELS: KernelSet = {
