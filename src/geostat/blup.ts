@@ -1,6 +1,10 @@
 import {
+  borrowWorkspace,
   choleskyInPlace,
+  correlationMatrix,
+  covarianceBlock,
   crossProduct,
+  type DenseWorkspace,
   solveLowerInPlace,
   solveLowerManyInPlace,
   solveLowerTransposedInPlace,
@@ -12,6 +16,8 @@ import { distanceKm } from './positions.js';
 
 /** Places handled together: 64 columns of 1,000 stations (512 kB) stay in the second-level cache. */
 export const PLACES_PER_BLOCK = 64;
+/** Places whose solution takes as long as copying the factor; fewer are solved where it stands. */
+const PLACES_WORTH_A_COPY = 12;
 
 /**
  * One field at one set of parameters, factorised once for any number of places: the best linear unbiased
@@ -28,43 +34,53 @@ export class FieldSystem {
   readonly #whitenedTrend: Float64Array;
   readonly #trendFactor: Float64Array;
 
-  /** @throws MATRIX_NOT_POSITIVE_DEFINITE */
+  /**
+   * @param trendFactor  Cholesky factor of FᵀV⁻¹F of a whole network of which `geometry` holds some stations only: the
+   *                     trend is then the network's, and `solveData` must be given its coefficients
+   * @throws MATRIX_NOT_POSITIVE_DEFINITE
+   */
   constructor(
     geometry: FieldGeometry,
     family: CovarianceFamily,
     parameters: FieldParameters,
     errorVariance: Float64Array,
+    trendFactor: Float64Array | null = null,
   ) {
     const { n, p, distancesKm, trend } = geometry;
-    const rho = correlationFunction(family).correlation;
     const factor = new Float64Array(n * n);
+    correlationMatrix(family, 'correlation', parameters.rangeKm, distancesKm, n, factor);
     for (let i = 0; i < n; i++) {
-      for (let j = 0; j < i; j++) {
-        factor[i * n + j] = parameters.sill * rho(distancesKm[i * n + j] / parameters.rangeKm);
-      }
+      for (let j = 0; j < i; j++) factor[i * n + j] *= parameters.sill;
       factor[i * n + i] = parameters.sill + parameters.nugget + errorVariance[i];
     }
     choleskyInPlace(factor, n);
     this.#whitenedTrend = Float64Array.from(trend);
     solveLowerManyInPlace(factor, n, this.#whitenedTrend, p);
-    this.#trendFactor = new Float64Array(p * p);
-    crossProduct(this.#whitenedTrend, p, this.#whitenedTrend, p, n, this.#trendFactor);
-    choleskyInPlace(this.#trendFactor, p);
+    this.#trendFactor = trendFactor ?? new Float64Array(p * p);
+    if (trendFactor === null) {
+      crossProduct(this.#whitenedTrend, p, this.#whitenedTrend, p, n, this.#trendFactor);
+      choleskyInPlace(this.#trendFactor, p);
+    }
     this.parameters = parameters;
     this.#geometry = geometry;
     this.#family = family;
     this.#factor = factor;
   }
 
-  /** GLS coefficients β̂ (p) and weights w = V⁻¹(z − Fβ̂) (n) of one set of values. */
-  solveData(z: Float64Array): FieldData {
+  /**
+   * GLS coefficients β̂ (p) and weights w = V⁻¹(z − Fβ̂) (n) of one set of values.
+   * @param given  the coefficients, where they come from a larger network
+   */
+  solveData(z: Float64Array, given: Float64Array | null = null): FieldData {
     const { n, p } = this.#geometry;
     const weights = Float64Array.from(z);
     solveLowerInPlace(this.#factor, n, weights);
-    const coefficients = new Float64Array(p);
-    crossProduct(this.#whitenedTrend, p, weights, 1, n, coefficients);
-    solveLowerInPlace(this.#trendFactor, p, coefficients);
-    solveLowerTransposedInPlace(this.#trendFactor, p, coefficients);
+    const coefficients = given ?? new Float64Array(p);
+    if (given === null) {
+      crossProduct(this.#whitenedTrend, p, weights, 1, n, coefficients);
+      solveLowerInPlace(this.#trendFactor, p, coefficients);
+      solveLowerTransposedInPlace(this.#trendFactor, p, coefficients);
+    }
     for (let i = 0; i < n; i++) {
       for (let c = 0; c < p; c++) weights[i] -= this.#whitenedTrend[i * p + c] * coefficients[c];
     }
@@ -93,6 +109,10 @@ export class FieldSystem {
   covariances(places: Float64Array, first: number, count: number, out: Float64Array): void {
     const { n, positionsKm, metric } = this.#geometry;
     const { sill, rangeKm } = this.parameters;
+    if (metric === 'euclidean') {
+      covarianceBlock(this.#family, sill, rangeKm, positionsKm, n, places, first, count, out);
+      return;
+    }
     const rho = correlationFunction(this.#family).correlation;
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < count; j++) {
@@ -106,8 +126,36 @@ export class FieldSystem {
    * factor (count × p), so that the variance is a sum of squares. Both parts of the kriging variance follow.
    */
   reduce(c: Float64Array, count: number, trendRows: Float64Array, firstRow: number, out: Float64Array): void {
+    solveLowerManyInPlace(this.#factor, this.#geometry.n, c, count);
+    this.#reduceTrend(c, count, trendRows, firstRow, out);
+  }
+
+  /** As `reduce` in a workspace lent by `borrowFactor`, whose block holds the covariances. */
+  reduceIn(
+    workspace: DenseWorkspace,
+    count: number,
+    trendRows: Float64Array,
+    firstRow: number,
+    out: Float64Array,
+  ): void {
+    workspace.solveLower(count);
+    this.#reduceTrend(workspace.block, count, trendRows, firstRow, out);
+  }
+
+  /** The factor in memory in which many blocks of places are solved without copying it again; lent until the next
+   * kernel call on plain matrices. */
+  borrowFactor(): DenseWorkspace {
+    return borrowWorkspace(this.#factor, this.#geometry.n, PLACES_PER_BLOCK);
+  }
+
+  #reduceTrend(
+    c: Float64Array,
+    count: number,
+    trendRows: Float64Array,
+    firstRow: number,
+    out: Float64Array,
+  ): void {
     const { n, p } = this.#geometry;
-    solveLowerManyInPlace(this.#factor, n, c, count);
     const w = this.#whitenedTrend;
     const g = this.#trendFactor;
     for (let j = 0; j < count; j++) {
@@ -215,14 +263,17 @@ export function predictField(
 ): void {
   const n = system.stationCount;
   const p = system.trendCount;
-  const { covariances, reduced } = workspace;
+  const { reduced } = workspace;
+  const lent = count < PLACES_WORTH_A_COPY ? null : system.borrowFactor();
+  const covariances = lent?.block ?? workspace.covariances;
   for (let first = 0; first < count; first += PLACES_PER_BLOCK) {
     const block = Math.min(PLACES_PER_BLOCK, count - first);
     system.covariances(places, first, block, covariances);
     for (let d = 0; d < data.length; d++) {
       writeMeans(covariances, n, p, block, trendRows, first, data[d], means[d]);
     }
-    system.reduce(covariances, block, trendRows, first, reduced);
+    if (lent === null) system.reduce(covariances, block, trendRows, first, reduced);
+    else system.reduceIn(lent, block, trendRows, first, reduced);
     for (let j = 0; j < block; j++) variance[first + j] = system.parameters.sill;
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < block; j++) variance[first + j] -= covariances[i * block + j] ** 2;

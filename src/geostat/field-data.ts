@@ -1,5 +1,6 @@
 import { Matrix, SingularValueDecomposition, solve } from 'ml-matrix';
 import { RainprintError } from '../errors.js';
+import type { ConditioningSets } from './conditioning-sets.js';
 import { distanceKm, type Metric } from './positions.js';
 
 /**
@@ -14,8 +15,10 @@ export interface FieldGeometry {
   readonly metric: Metric;
   /** n × p, row-major. */
   readonly trend: Float64Array;
-  /** n × n, row-major, lower triangle filled, km. */
+  /** n × n, row-major, lower triangle filled, km. Beyond MAX_STORED_DISTANCES places computed at each access. */
   readonly distancesKm: Float64Array;
+  /** Where the likelihood is Vecchia's: what each station is conditioned on. Null where it is exact. */
+  readonly conditioning: ConditioningSets | null;
   readonly smallestSpacingKm: number;
   readonly diameterKm: number;
   /** ln|FᵀF|. */
@@ -28,6 +31,9 @@ export interface FieldGeometry {
  */
 export const MAX_TREND_CONDITION = 1e6;
 
+/** Places beyond which no matrix of their distances is kept: it would take more memory than the factor. */
+const MAX_STORED_DISTANCES = 2500;
+
 /**
  * @throws STATIONS_TOO_FEW (n < p + 2), TREND_COLLINEAR, STATIONS_COINCIDENT (all places the same)
  */
@@ -36,6 +42,7 @@ export function createGeometry(
   trend: Float64Array,
   p: number,
   metric: Metric = 'euclidean',
+  conditioning: ConditioningSets | null = null,
 ): FieldGeometry {
   const n = positionsKm.length / 3;
   if (n < p + 2) {
@@ -45,17 +52,7 @@ export function createGeometry(
       { stations: n, needed: p + 2 },
     );
   }
-  const distancesKm = new Float64Array(n * n);
-  let smallestSpacingKm = Number.POSITIVE_INFINITY;
-  let diameterKm = 0;
-  for (let i = 0; i < n; i++) {
-    for (let j = 0; j < i; j++) {
-      const h = distanceKm(positionsKm, i, positionsKm, j, metric);
-      distancesKm[i * n + j] = h;
-      if (h > 0 && h < smallestSpacingKm) smallestSpacingKm = h;
-      if (h > diameterKm) diameterKm = h;
-    }
-  }
+  const { smallestSpacingKm, diameterKm } = extremeDistances(positionsKm, metric);
   if (!(diameterKm > 0)) {
     throw new RainprintError('STATIONS_COINCIDENT', `all ${n} stations stand at the same place`, {
       stations: n,
@@ -72,17 +69,81 @@ export function createGeometry(
   }
   const f = new Matrix(toRows(trend, n, p));
   const logDetFtF = 2 * logAbsDiagonalOfR(f);
-  return { n, p, positionsKm, metric, trend, distancesKm, smallestSpacingKm, diameterKm, logDetFtF };
+  const places = { positionsKm, metric, conditioning, smallestSpacingKm, diameterKm };
+  return withDistances({ n, p, trend, logDetFtF, ...places });
+}
+
+/** Some of a geometry's stations with their distances and trend; bounds stay those of the whole, likelihoods are exact. */
+export function stationSubset(geometry: FieldGeometry, indices: ArrayLike<number>): FieldGeometry {
+  const at = Array.from(indices);
+  const { p } = geometry;
+  const rows = (values: Float64Array, width: number) => {
+    const out = new Float64Array(at.length * width);
+    at.forEach((i, k) => {
+      out.set(values.subarray(i * width, (i + 1) * width), k * width);
+    });
+    return out;
+  };
+  return withDistances({
+    ...geometry,
+    n: at.length,
+    positionsKm: rows(geometry.positionsKm, 3),
+    trend: rows(geometry.trend, p),
+    conditioning: null,
+  });
+}
+
+/** Copying a large geometry with `{...}` leaves its distances behind; `stationSubset` makes them anew. */
+function withDistances(geometry: Omit<FieldGeometry, 'distancesKm'>): FieldGeometry {
+  const { n, positionsKm, metric } = geometry;
+  if (n <= MAX_STORED_DISTANCES) return { ...geometry, distancesKm: allDistances(positionsKm, metric) };
+  const large = { ...geometry };
+  Object.defineProperty(large, 'distancesKm', {
+    get: () => allDistances(positionsKm, metric),
+    enumerable: false,
+  });
+  return large as FieldGeometry;
+}
+
+function allDistances(positionsKm: Float64Array, metric: Metric): Float64Array {
+  const n = positionsKm.length / 3;
+  const distances = new Float64Array(n * n);
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j < i; j++) distances[i * n + j] = distanceKm(positionsKm, i, positionsKm, j, metric);
+  }
+  return distances;
+}
+
+function extremeDistances(
+  positionsKm: Float64Array,
+  metric: Metric,
+): Pick<FieldGeometry, 'smallestSpacingKm' | 'diameterKm'> {
+  const n = positionsKm.length / 3;
+  let smallestSpacingKm = Number.POSITIVE_INFINITY;
+  let diameterKm = 0;
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j < i; j++) {
+      const h = distanceKm(positionsKm, i, positionsKm, j, metric);
+      if (h > 0 && h < smallestSpacingKm) smallestSpacingKm = h;
+      if (h > diameterKm) diameterKm = h;
+    }
+  }
+  return { smallestSpacingKm, diameterKm };
 }
 
 /** Two stations at one place without a known error between them, which only a nugget can tell apart; null if none. */
 export function coincidentPair(
-  { n, distancesKm }: FieldGeometry,
+  { n, positionsKm }: Pick<FieldGeometry, 'n' | 'positionsKm'>,
   errorVariance: Float64Array,
 ): readonly [number, number] | null {
+  const first = new Map<string, number>();
   for (let i = 0; i < n; i++) {
     if (errorVariance[i]! > 0) continue;
-    for (let j = 0; j < i; j++) if (distancesKm[i * n + j] === 0 && errorVariance[j] === 0) return [j, i];
+    // 0 and −0 are one coordinate: both are written "0".
+    const place = positionsKm.subarray(3 * i, 3 * i + 3).join(' ');
+    const other = first.get(place);
+    if (other !== undefined) return [other, i];
+    first.set(place, i);
   }
   return null;
 }

@@ -1,8 +1,9 @@
 import { RainprintError } from '../errors.js';
-import { type CovarianceFamily, correlationFunction } from './covariance/families.js';
+import type { CovarianceFamily } from './covariance/families.js';
 import { coincidentPair, type FieldGeometry, ordinaryLeastSquares } from './field-data.js';
-import { type Criterion, FieldLikelihood, type FieldParameters } from './likelihood.js';
+import type { Criterion, FieldParameters } from './likelihood.js';
 import { boxed, type LocalDerivatives, newtonStep, updateSecant } from './newton-step.js';
+import { createLikelihood, type ProfiledLikelihood } from './profiled-likelihood.js';
 import {
   boundsReached,
   coordinatesOf,
@@ -72,7 +73,7 @@ export function fitField(
   errorVariance: Float64Array,
   family: CovarianceFamily,
   options: FieldFitOptions = {},
-  likelihood = new FieldLikelihood(geometry, correlationFunction(family), errorVariance, options.criterion),
+  likelihood: ProfiledLikelihood = createLikelihood(geometry, family, errorVariance, options.criterion),
 ): FieldFit {
   const scale = options.scaleVariance ?? ordinaryLeastSquares(geometry, z).residualVariance;
   const coincident = coincidentPair(geometry, errorVariance);
@@ -111,7 +112,7 @@ function startingPoints(
   geometry: FieldGeometry,
   z: Float64Array,
   space: SearchSpace,
-  likelihood: FieldLikelihood,
+  likelihood: ProfiledLikelihood,
   options: FieldFitOptions,
 ): Float64Array[] {
   const given = (options.starts ?? []).map((parameters) => coordinatesOf(space, parameters));
@@ -137,7 +138,7 @@ function startingPoints(
  * 7:348–368).
  */
 function climb(
-  likelihood: FieldLikelihood,
+  likelihood: ProfiledLikelihood,
   z: Float64Array,
   space: SearchSpace,
   start: Float64Array,
@@ -188,7 +189,7 @@ function climb(
 }
 
 function localDerivatives(
-  likelihood: FieldLikelihood,
+  likelihood: ProfiledLikelihood,
   space: SearchSpace,
   x: Float64Array,
 ): LocalDerivatives {

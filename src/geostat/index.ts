@@ -9,6 +9,7 @@ export {
   PLACES_PER_BLOCK,
   predictField,
 } from './blup.js';
+export { type ConditioningSets, conditioningSets } from './conditioning-sets.js';
 export {
   COVARIANCE_FAMILIES,
   type CovarianceFamily,
@@ -17,7 +18,13 @@ export {
   practicalRangeKm,
 } from './covariance/families.js';
 export { empiricalVariogram, type VariogramBin, type VariogramInput } from './empirical-variogram.js';
-export { createGeometry, type FieldGeometry, ordinaryLeastSquares, scaledCondition } from './field-data.js';
+export {
+  createGeometry,
+  type FieldGeometry,
+  ordinaryLeastSquares,
+  scaledCondition,
+  stationSubset,
+} from './field-data.js';
 export { type FieldFit, type FieldFitOptions, fitField } from './fit-field.js';
 export { gaussianCdf, gaussianDensity, gaussianQuantile } from './gaussian.js';
 export { predictFieldJointly, weightedAverage } from './joint.js';
@@ -34,6 +41,7 @@ export {
   positionsOnSphereKm,
   writePositionKm,
 } from './positions.js';
+export { createLikelihood, type ProfiledLikelihood } from './profiled-likelihood.js';
 export {
   type Coverage,
   coverageAt,

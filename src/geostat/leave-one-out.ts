@@ -2,6 +2,7 @@ import { choleskyInPlace, solveLowerInPlace, solveLowerTransposedInPlace } from 
 import { type CovarianceFamily, correlationFunction } from './covariance/families.js';
 import type { FieldGeometry } from './field-data.js';
 import { FieldLikelihood, type FieldParameters } from './likelihood.js';
+import { createLikelihood } from './profiled-likelihood.js';
 
 /**
  * Closed-form leave-one-out of one field: residual e_i = (Qz)_i/Q_ii and the variance 1/Q_ii of the left-out
@@ -19,7 +20,7 @@ export function leaveOneOutField(
   residuals: readonly Float64Array[],
   variance: Float64Array,
 ): void {
-  const likelihood = new FieldLikelihood(geometry, correlationFunction(family), errorVariance);
+  const likelihood = createLikelihood(geometry, family, errorVariance);
   const diagonal = new Float64Array(geometry.n);
   data.forEach((z, d) => {
     likelihood.evaluate(z, parameters);

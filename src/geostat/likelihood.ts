@@ -1,13 +1,14 @@
 import { RainprintError } from '../errors.js';
 import {
   choleskyInPlace,
+  correlationMatrix,
   crossProduct,
   innerProduct,
-  inverseFromCholesky,
   multiplyVector,
   solveLowerInPlace,
   solveLowerManyInPlace,
   solveLowerTransposedInPlace,
+  withInverse,
 } from '../kernels/index.js';
 import type { CorrelationFunction } from './covariance/family.js';
 import type { FieldGeometry } from './field-data.js';
@@ -48,8 +49,6 @@ export class FieldLikelihood {
   readonly #trendFactor: Float64Array;
   readonly #whitenedData: Float64Array;
   readonly #qz: Float64Array;
-  #work: Float64Array | null = null;
-  #inverse: Float64Array | null = null;
   #parameters: FieldParameters = { rangeKm: 1, sill: 1, nugget: 0 };
   #correlationRangeKm = Number.NaN;
 
@@ -134,10 +133,6 @@ export class FieldLikelihood {
    */
   derivatives(gradient: Float64Array, information: Float64Array): void {
     const { n } = this.#geometry;
-    this.#inverse ??= new Float64Array(n * n);
-    this.#work ??= new Float64Array(n * n);
-    const trace = this.#inverse;
-    inverseFromCholesky(this.#factor, n, this.#work, trace);
     const projection = this.#projectionColumns();
     const qz = this.#qz;
     const sill = this.#parameters.sill;
@@ -149,39 +144,39 @@ export class FieldLikelihood {
     for (let i = 0; i < n; i++) moved[0][i] *= sill;
     symmetricProduct(this.#correlation, n, qz, moved[1]);
     moved[2].set(qz);
-    const traces = this.#traces(trace, projection);
-    for (let k = 0; k < 3; k++) gradient[k] = -0.5 * (traces[k] - innerProduct(qz, moved[k]));
-
-    const projected = new Float64Array(n);
-    for (let k = 0; k < 3; k++) {
-      this.#applyQ(trace, projection, moved[k], projected);
-      for (let m = 0; m <= k; m++) {
-        const value = 0.5 * innerProduct(moved[m], projected);
-        information[k * 3 + m] = value;
-        information[m * 3 + k] = value;
+    withInverse(this.#factor, n, (inverse) => {
+      const traces = this.#traces(inverse, projection);
+      for (let k = 0; k < 3; k++) gradient[k] = -0.5 * (traces[k] - innerProduct(qz, moved[k]));
+      const projected = new Float64Array(n);
+      for (let k = 0; k < 3; k++) {
+        this.#applyQ(inverse, projection, moved[k], projected);
+        for (let m = 0; m <= k; m++) {
+          const value = 0.5 * innerProduct(moved[m], projected);
+          information[k * 3 + m] = value;
+          information[m * 3 + k] = value;
+        }
       }
-    }
+    });
   }
 
   /** Diagonal of Q (n) at the last evaluation, for closed-form leave-one-out. */
   diagonalOfQ(out: Float64Array): void {
     const { n, p } = this.#geometry;
-    this.#inverse ??= new Float64Array(n * n);
-    this.#work ??= new Float64Array(n * n);
-    inverseFromCholesky(this.#factor, n, this.#work, this.#inverse);
     const b = this.#projectionColumns();
-    for (let i = 0; i < n; i++) {
-      let value = this.#inverse[i * n + i];
-      for (let c = 0; c < p; c++) value -= b[i * p + c] ** 2;
-      out[i] = value;
-    }
+    withInverse(this.#factor, n, (inverse) => {
+      for (let i = 0; i < n; i++) {
+        let value = inverse[i * n + i];
+        for (let c = 0; c < p; c++) value -= b[i * p + c] ** 2;
+        out[i] = value;
+      }
+    });
   }
 
   /** Q as a full n × n matrix at the last evaluation (group-wise leave-out). */
   fullQ(): Float64Array {
     const { n, p } = this.#geometry;
     const q = new Float64Array(n * n);
-    inverseFromCholesky(this.#factor, n, new Float64Array(n * n), q);
+    withInverse(this.#factor, n, (inverse) => q.set(inverse));
     const b = this.#projectionColumns();
     for (let i = 0; i < n; i++) {
       for (let j = 0; j < n; j++) {
@@ -194,26 +189,14 @@ export class FieldLikelihood {
   #fillCorrelation(rangeKm: number): void {
     if (rangeKm === this.#correlationRangeKm) return;
     const { n, distancesKm } = this.#geometry;
-    const family = this.#family;
-    const correlation = this.#correlation;
-    for (let i = 0; i < n; i++) {
-      for (let j = 0; j < i; j++)
-        correlation[i * n + j] = family.correlation(distancesKm[i * n + j] / rangeKm);
-      correlation[i * n + i] = 1;
-    }
+    correlationMatrix(this.#family.kind, 'correlation', rangeKm, distancesKm, n, this.#correlation);
     this.#correlationRangeKm = rangeKm;
   }
 
   /** ∂R/∂(ln range), lower triangle, zero diagonal. */
   #fillSlope(): void {
     const { n, distancesKm } = this.#geometry;
-    const { rangeKm } = this.#parameters;
-    const family = this.#family;
-    const slope = this.#slope;
-    for (let i = 0; i < n; i++) {
-      for (let j = 0; j < i; j++) slope[i * n + j] = family.logRangeSlope(distancesKm[i * n + j] / rangeKm);
-      slope[i * n + i] = 0;
-    }
+    correlationMatrix(this.#family.kind, 'slope', this.#parameters.rangeKm, distancesKm, n, this.#slope);
   }
 
   #factorise({ sill, nugget }: FieldParameters): void {

@@ -1,5 +1,5 @@
 import type { FieldFit } from '../fit-field.js';
-import type { FieldLikelihood } from '../likelihood.js';
+import type { ProfiledLikelihood } from '../profiled-likelihood.js';
 import { parametersAt, type SearchSpace } from '../search-space.js';
 import { integrateScale, type ScaleIntegral, scaleAtOptimum, scaleMoments } from './scale-integral.js';
 import { logScalePrior } from './scale-prior.js';
@@ -64,7 +64,7 @@ interface Cell extends ScaleIntegral {
  * Deterministic. Weights sum to 1.
  */
 export function posteriorGrid(
-  likelihood: FieldLikelihood,
+  likelihood: ProfiledLikelihood,
   z: Float64Array,
   fit: FieldFit,
   errorVariance: Float64Array,
@@ -135,7 +135,7 @@ function positionIn({ low, high, points, isRoot }: AxisWindow, i: number): numbe
 }
 
 function evaluateCells(
-  likelihood: FieldLikelihood,
+  likelihood: ProfiledLikelihood,
   z: Float64Array,
   errorVariance: Float64Array,
   fit: FieldFit,

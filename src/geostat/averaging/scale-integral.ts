@@ -1,5 +1,5 @@
 import type { FieldFit } from '../fit-field.js';
-import type { FieldLikelihood } from '../likelihood.js';
+import type { ProfiledLikelihood } from '../profiled-likelihood.js';
 import { parametersAt, type SearchSpace } from '../search-space.js';
 import { logScalePrior } from './scale-prior.js';
 
@@ -68,7 +68,7 @@ function rescalingGain(quadratic: number, n: number): number {
  * largest found; not at all where no scale can reach `floor`.
  */
 export function integrateScale(
-  likelihood: FieldLikelihood,
+  likelihood: ProfiledLikelihood,
   z: Float64Array,
   errorVariance: Float64Array,
   space: SearchSpace,

@@ -5,6 +5,7 @@ const SQRT5 = Math.sqrt(5);
 
 /** ρ = (1 + √3t)e^(−√3t) (Rasmussen & Williams 2006, eq. 4.17). gstat's `Mat` with κ = 1.5 has range a/√3. */
 export const matern32: CorrelationFunction = {
+  kind: 'matern32',
   correlation: (t) => {
     const u = SQRT3 * t;
     return (1 + u) * Math.exp(-u);
@@ -17,6 +18,7 @@ export const matern32: CorrelationFunction = {
 
 /** ρ = (1 + √5t + 5t²/3)e^(−√5t) (Rasmussen & Williams 2006, eq. 4.17). */
 export const matern52: CorrelationFunction = {
+  kind: 'matern52',
   correlation: (t) => {
     const u = SQRT5 * t;
     return (1 + u + (u * u) / 3) * Math.exp(-u);
