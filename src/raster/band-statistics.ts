@@ -16,33 +16,32 @@ export const NO_STATISTICS: BandStatistics = {
   m2: 0,
 };
 
-/**
- * Statistics of one block of a band, in one pass over distances to the first value. With n cells the squared distance of
- * that value to the mean is at most n variances, so even where it lies far off all others mean and deviation keep ten
- * digits of the deviation (n ≤ 512²).
- */
+/** Statistics of one block of a band, in two passes: one loses digits where the mean is far from 0. */
 export function bandStatistics(band: Float32Array): BandStatistics {
-  let start = 0;
-  while (start < band.length && Number.isNaN(band[start]!)) start++;
-  if (start === band.length) return NO_STATISTICS;
-  const first = band[start]!;
   let count = 0;
   let sum = 0;
-  let squares = 0;
-  let min = first;
-  let max = first;
-  for (let k = start; k < band.length; k++) {
+  let min = Number.POSITIVE_INFINITY;
+  let max = Number.NEGATIVE_INFINITY;
+  for (let k = 0; k < band.length; k++) {
     const value = band[k]!;
     if (Number.isNaN(value)) continue;
-    const distance = value - first;
     count++;
-    sum += distance;
-    squares += distance * distance;
+    sum += value;
     min = Math.min(min, value);
     max = Math.max(max, value);
   }
-  const m2 = Math.max(0, squares - (sum * sum) / count);
-  return { count, min, max, mean: first + sum / count, m2 };
+  if (count === 0) return NO_STATISTICS;
+  const mean = sum / count;
+  return { count, min, max, mean, m2: squaredDistances(band, mean) };
+}
+
+function squaredDistances(band: Float32Array, mean: number): number {
+  let sum = 0;
+  for (let k = 0; k < band.length; k++) {
+    const distance = band[k]! - mean;
+    if (!Number.isNaN(distance)) sum += distance * distance;
+  }
+  return sum;
 }
 
 /**

@@ -18,12 +18,12 @@ describe('band statistics', () => {
     expect(bandStatistics(new Float32Array(5))).toEqual({ count: 5, min: 0, max: 0, mean: 0, m2: 0 });
   });
 
-  it('hold where the first value lies far off all others', () => {
+  it('hold where one value lies far off all others', () => {
     const gaussian = seededGaussian(seededUniform(20240405));
     const values = Array.from({ length: 50_000 }, (_, k) => (k === 0 ? 1e6 : Math.fround(-12 + gaussian())));
     const [ours, expected] = [bandStatistics(Float32Array.from(values)), plain(values)];
-    expect(Math.abs(ours.mean - expected.mean) / standardDeviation(expected)).toBeLessThan(1e-10);
-    expect(Math.abs(ours.m2 / expected.m2 - 1)).toBeLessThan(1e-10);
+    expect(Math.abs(ours.mean - expected.mean) / standardDeviation(expected)).toBeLessThan(1e-12);
+    expect(Math.abs(ours.m2 / expected.m2 - 1)).toBeLessThan(1e-12);
   });
 
   it('merge to those of all cells, wherever they are cut', () => {

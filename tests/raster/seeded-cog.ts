@@ -124,3 +124,10 @@ export function halfOf(
 /** NaN as it stands in the file. */
 export const stored = (band: Float32Array, nodata: number) =>
   band.map((value) => (Number.isNaN(value) ? nodata : value));
+
+/** Index of the first element that is not the same, NaN being NaN; −1 where there is none. */
+export function firstDifference(a: ArrayLike<number>, b: ArrayLike<number>): number {
+  if (a.length !== b.length) return Math.min(a.length, b.length);
+  for (let k = 0; k < a.length; k++) if (!Object.is(a[k], b[k])) return k;
+  return -1;
+}
