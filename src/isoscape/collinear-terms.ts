@@ -26,7 +26,8 @@ export function checkCovariatesTellApart(
   const names = new Set(trend.covariates.map(({ name }) => name));
   const covariate = involved.filter((term) => names.has(term)).at(-1);
   if (covariate === undefined) return;
-  const others = involved.filter((term) => term !== covariate);
+  // A constant beside others is no news: any two terms in a line may differ by one.
+  const others = involved.filter((term) => term !== covariate && term !== 'intercept');
   throw new RainprintError(
     'COVARIATE_COLLINEAR',
     `over these ${n} stations the covariate "${covariate}" is a combination of other terms of the trend ` +

@@ -1,18 +1,16 @@
 import { RainprintError } from '../errors.js';
 import type { Network } from '../stations/network.js';
 import { type Covariate, type CovariateValues, checkCovariateName } from './covariate.js';
+import type { StationColumns } from './isoscape.js';
 
 /** Spread relative to the largest value up to which a covariate is constant: rounding of sampled values. */
 const CONSTANT = 1e-9;
 
-/** A covariate ready to be fitted: its values in the order of the network's stations, and how the trend scales them. */
-export type FitCovariate = Covariate & CovariateValues;
-
 /**
- * Checks the covariates of a fit and finds their centres and scales; in the order of their names.
- * @throws COVARIATE_NAME_INVALID, COVARIATE_TWICE, COVARIATE_MISSING (a station without a value), COVARIATE_CONSTANT
+ * The covariates of a fit, checked, in the order of their names.
+ * @throws COVARIATE_NAME_INVALID, COVARIATE_TWICE, COVARIATE_MISSING (a station without a value)
  */
-export function prepareCovariates(network: Network, given: readonly CovariateValues[]): FitCovariate[] {
+export function checkCovariates(network: Network, given: readonly CovariateValues[]): CovariateValues[] {
   const names = given.map(({ name }) => checkCovariateName(name));
   const twice = names.find((name, k) => names.indexOf(name) !== k);
   if (twice !== undefined) {
@@ -21,7 +19,16 @@ export function prepareCovariates(network: Network, given: readonly CovariateVal
     });
   }
   for (const covariate of given) checkValues(network, covariate);
-  return [...given].sort((a, b) => (a.name < b.name ? -1 : 1)).map((each) => ({ ...each, ...spread(each) }));
+  return [...given].sort((a, b) => (a.name < b.name ? -1 : 1));
+}
+
+/**
+ * How the trend centres and scales them.
+ * @param stations columns in their canonical order, so that the order of the table changes no bit
+ * @throws COVARIATE_CONSTANT
+ */
+export function scaleCovariates(given: readonly CovariateValues[], stations: StationColumns): Covariate[] {
+  return given.map(({ name, source }, k) => ({ name, source, ...spread(name, stations.covariates[k]) }));
 }
 
 function checkValues(network: Network, { name, values }: CovariateValues): void {
@@ -38,7 +45,7 @@ function checkValues(network: Network, { name, values }: CovariateValues): void 
 }
 
 /** Mean and sample standard deviation (Welford 1962, Technometrics 4:419–420). */
-function spread({ name, values }: CovariateValues): { centre: number; scale: number } {
+function spread(name: string, values: Float64Array): { centre: number; scale: number } {
   let centre = 0;
   let squares = 0;
   let low = Number.POSITIVE_INFINITY;

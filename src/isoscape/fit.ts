@@ -3,7 +3,7 @@ import { positionsOnSphereKm } from '../geostat/index.js';
 import type { Network } from '../stations/network.js';
 import { checkCovariatesTellApart } from './collinear-terms.js';
 import { type FitContext, termsAskedFor } from './fit-context.js';
-import { prepareCovariates } from './fit-covariates.js';
+import { checkCovariates, scaleCovariates } from './fit-covariates.js';
 import { fitJoint } from './fit-joint.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import { fitSingle } from './fit-single.js';
@@ -27,14 +27,15 @@ export function fitIsoscape(
   onProgress: OnFitProgress = () => {},
 ): Isoscape {
   checkOptions(network, options);
-  const covariates = prepareCovariates(network, options.covariates ?? []);
-  const stations = stationColumns(network, covariates);
+  const given = checkCovariates(network, options.covariates ?? []);
+  const stations = stationColumns(network, given);
+  const covariates = scaleCovariates(given, stations);
   const context: FitContext = {
     network,
     options,
     onProgress,
     stations,
-    covariates: covariates.map(({ name, source, centre, scale }) => ({ name, source, centre, scale })),
+    covariates,
     positionsKm: positionsOnSphereKm(stations.lonDeg, stations.latDeg),
   };
   if (covariates.length > 0) {
