@@ -1,14 +1,7 @@
 export { MAX_NODES, type ParameterNode, parameterNodes } from './averaging/nodes.js';
 export { type Baseline, meanBaseline, nearestBaseline, regressionBaseline } from './baselines.js';
 export { spatialBlocks } from './blocks.js';
-export {
-  type BlupWorkspace,
-  createBlupWorkspace,
-  type FieldData,
-  FieldSystem,
-  PLACES_PER_BLOCK,
-  predictField,
-} from './blup.js';
+export { type FieldData, FieldSystem, PLACES_PER_BLOCK } from './blup.js';
 export { type ConditioningSets, conditioningSets } from './conditioning-sets.js';
 export {
   COVARIANCE_FAMILIES,
@@ -41,6 +34,7 @@ export {
   positionsOnSphereKm,
   writePositionKm,
 } from './positions.js';
+export { type BlupWorkspace, createBlupWorkspace, predictField } from './predict-field.js';
 export { createLikelihood, type ProfiledLikelihood } from './profiled-likelihood.js';
 export {
   type Coverage,

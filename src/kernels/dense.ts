@@ -77,3 +77,36 @@ export function covarianceBlock(
 ): void {
   currentKernels().covarianceBlock(kind, sill, rangeKm, stationsKm, n, placesKm, first, count, out);
 }
+
+/**
+ * Correlations of stations at given distances, or their slopes ∂ρ/∂(ln range), as a lower triangle; the diagonal is
+ * that of distance 0 (1, or 0).
+ *
+ * @param distancesKm  n × n row-major, lower triangle read; @param out n × n, lower triangle written
+ */
+export function correlationMatrix(
+  kind: CovarianceKind,
+  what: 'correlation' | 'slope',
+  rangeKm: number,
+  distancesKm: Float64Array,
+  n: number,
+  out: Float64Array,
+): void {
+  currentKernels().correlations(kind, what, rangeKm, distancesKm, n, out);
+}
+
+/**
+ * A workspace whose matrix holds the factor `l`, in memory this thread lends: it is valid until the next call of any
+ * kernel on plain arrays, but for `covarianceBlock` into its block.
+ */
+export function borrowWorkspace(l: Float64Array, n: number, width: number): DenseWorkspace {
+  return currentKernels().borrowWorkspace(l, n, width);
+}
+
+/**
+ * Shows (L·Lᵀ)⁻¹ of a factor, both triangles, to `use`, which must keep no reference and call no kernel on plain
+ * matrices: the memory is lent.
+ */
+export function withInverse(l: Float64Array, n: number, use: (inverse: Float64Array) => void): void {
+  currentKernels().withInverse(l, n, use);
+}

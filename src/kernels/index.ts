@@ -1,11 +1,14 @@
 export { COVARIANCE_KINDS, type CovarianceKind } from './covariance-kind.js';
 export {
+  borrowWorkspace,
   choleskyInPlace,
+  correlationMatrix,
   covarianceBlock,
   createDenseWorkspace,
   inverseFromCholesky,
   multiplyInto,
   solveLowerManyInPlace,
+  withInverse,
 } from './dense.js';
 export type { DenseWorkspace } from './kernel-set.js';
 export { dot } from './reference/cholesky.js';

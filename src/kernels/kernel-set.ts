@@ -47,4 +47,14 @@ export interface KernelSet {
     count: number,
     out: Float64Array,
   ): void;
+  correlations(
+    kind: CovarianceKind,
+    what: 'correlation' | 'slope',
+    rangeKm: number,
+    distancesKm: Float64Array,
+    n: number,
+    out: Float64Array,
+  ): void;
+  borrowWorkspace(l: Float64Array, n: number, width: number): DenseWorkspace;
+  withInverse(l: Float64Array, n: number, use: (inverse: Float64Array) => void): void;
 }

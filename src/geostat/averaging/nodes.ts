@@ -1,8 +1,9 @@
-import { createBlupWorkspace, FieldSystem, predictField } from '../blup.js';
+import { FieldSystem } from '../blup.js';
 import { type CovarianceFamily, correlationFunction } from '../covariance/families.js';
 import type { FieldGeometry } from '../field-data.js';
 import type { FieldFit } from '../fit-field.js';
 import { FieldLikelihood, type FieldParameters } from '../likelihood.js';
+import { createBlupWorkspace, predictField } from '../predict-field.js';
 import { parametersAt } from '../search-space.js';
 import { compressWeights } from './compress.js';
 import { posteriorGrid } from './posterior-grid.js';

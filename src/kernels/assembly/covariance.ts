@@ -28,9 +28,25 @@ function correlationAt(kind: i32, u: v128): v128 {
     const third = f64x2.div(f64x2.mul(u, u), f64x2.splat(3));
     return f64x2.mul(f64x2.add(f64x2.add(one, u), third), exponential(f64x2.neg(u)));
   }
-  // Spherical: 1 − 1.5u + 0.5u³ below u = 1, else 0 (also for NaN, as in the reference).
+  // Spherical: 1 − 1.5u + 0.5u³ below u = 1, else 0.
   const cubic = f64x2.mul(f64x2.mul(f64x2.splat(0.5), u), f64x2.mul(u, u));
   const inside = f64x2.add(f64x2.sub(one, f64x2.mul(f64x2.splat(1.5), u)), cubic);
+  return v128.and(inside, f64x2.lt(u, one));
+}
+
+/** ∂ρ/∂(ln range) at the same u. */
+// @ts-ignore: decorator
+@inline
+function slopeAt(kind: i32, u: v128): v128 {
+  const one = f64x2.splat(1);
+  const square = f64x2.mul(u, u);
+  if (kind == EXPONENTIAL) return f64x2.mul(u, exponential(f64x2.neg(u)));
+  if (kind == MATERN32) return f64x2.mul(square, exponential(f64x2.neg(u)));
+  if (kind == MATERN52) {
+    const factor = f64x2.mul(f64x2.div(square, f64x2.splat(3)), f64x2.add(one, u));
+    return f64x2.mul(factor, exponential(f64x2.neg(u)));
+  }
+  const inside = f64x2.mul(f64x2.mul(f64x2.splat(1.5), u), f64x2.sub(one, square));
   return v128.and(inside, f64x2.lt(u, one));
 }
 
@@ -65,6 +81,19 @@ export function covariance(
       place += 16;
       out += j + 1 < count ? 16 : 8;
     }
+  }
+}
+
+/**
+ * Correlations of `count` distances, or their slopes in the logarithm of the range, in place; an odd last one with its
+ * neighbour.
+ */
+export function correlations(kind: i32, rangeKm: f64, distances: usize, count: i32, slopes: bool): void {
+  const scale = f64x2.splat(scaleOf(kind, rangeKm));
+  for (let i = 0; i < count; i += 2) {
+    const u = f64x2.mul(v128.load(distances), scale);
+    v128.store(distances, slopes ? slopeAt(kind, u) : correlationAt(kind, u));
+    distances += 16;
   }
 }
 

@@ -11,7 +11,31 @@ const CORRELATION: Record<CovarianceKind, (t: number) => number> = {
   spherical: (t) => (t < 1 ? 1 - 1.5 * t + 0.5 * t * t * t : 0),
 };
 
-/** See `covarianceBlock` of index.ts. */
+/** ∂ρ/∂(ln range) at scaled distance t. */
+const SLOPE: Record<CovarianceKind, (t: number) => number> = {
+  exponential: (t) => t * Math.exp(-t),
+  matern32: (t) => 3 * t * t * Math.exp(-SQRT3 * t),
+  matern52: (t) => (5 / 3) * t * t * (1 + SQRT5 * t) * Math.exp(-SQRT5 * t),
+  spherical: (t) => (t < 1 ? 1.5 * t - 1.5 * t * t * t : 0),
+};
+
+/** See `correlationMatrix` of dense.ts. */
+export function correlations(
+  kind: CovarianceKind,
+  what: 'correlation' | 'slope',
+  rangeKm: number,
+  distancesKm: Float64Array,
+  n: number,
+  out: Float64Array,
+): void {
+  const at = (what === 'slope' ? SLOPE : CORRELATION)[kind];
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j < i; j++) out[i * n + j] = at(distancesKm[i * n + j] / rangeKm);
+    out[i * n + i] = what === 'slope' ? 0 : 1;
+  }
+}
+
+/** See `covarianceBlock` of dense.ts. */
 export function covarianceBlock(
   kind: CovarianceKind,
   sill: number,

@@ -1,6 +1,13 @@
 import { dot } from './cholesky.js';
 import { sums, tileDots } from './tile.js';
 
+/** See `withInverse` of dense.ts. */
+export function withInverse(l: Float64Array, n: number, use: (inverse: Float64Array) => void): void {
+  const inverse = new Float64Array(n * n);
+  inverseFromCholesky(l, n, new Float64Array(n * n), inverse);
+  use(inverse);
+}
+
 /**
  * (L·Lᵀ)⁻¹ of a Cholesky factor, both triangles filled.
  *

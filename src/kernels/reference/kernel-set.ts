@@ -1,10 +1,10 @@
 import type { KernelSet } from '../kernel-set.js';
 import { choleskyInPlace } from './cholesky.js';
-import { covarianceBlock } from './covariance.js';
-import { inverseFromCholesky } from './inverse.js';
+import { correlations, covarianceBlock } from './covariance.js';
+import { inverseFromCholesky, withInverse } from './inverse.js';
 import { multiplyInto } from './multiply.js';
 import { solveLowerManyInPlace } from './triangular.js';
-import { createDenseWorkspace } from './workspace.js';
+import { createDenseWorkspace, workspaceOn } from './workspace.js';
 
 /** The kernels in plain TypeScript: what the compiled ones are compared with, and the way without SIMD. */
 export const referenceKernels: KernelSet = {
@@ -15,4 +15,7 @@ export const referenceKernels: KernelSet = {
   inverseFromCholesky,
   multiplyInto,
   covarianceBlock,
+  correlations,
+  borrowWorkspace: workspaceOn,
+  withInverse,
 };

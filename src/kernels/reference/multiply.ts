@@ -1,4 +1,4 @@
-/** See `multiplyInto` of index.ts: four rows of A at a time share each loaded row of B. */
+/** See `multiplyInto` of dense.ts: four rows of A at a time share each loaded row of B. */
 export function multiplyInto(
   a: Float64Array,
   rows: number,

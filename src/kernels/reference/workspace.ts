@@ -2,9 +2,13 @@ import type { DenseWorkspace } from '../kernel-set.js';
 import { choleskyInPlace } from './cholesky.js';
 import { solveLowerManyInPlace, solveLowerTransposedManyInPlace } from './triangular.js';
 
-/** See `createDenseWorkspace` of index.ts. */
+/** See `createDenseWorkspace` of dense.ts. */
 export function createDenseWorkspace(n: number, width: number): DenseWorkspace {
-  const matrix = new Float64Array(n * n);
+  return workspaceOn(new Float64Array(n * n), n, width);
+}
+
+/** See `borrowWorkspace` of dense.ts: nothing is copied here. */
+export function workspaceOn(matrix: Float64Array, n: number, width: number): DenseWorkspace {
   const block = new Float64Array(n * width);
   return {
     n,

@@ -61,6 +61,7 @@ export interface CompiledKernels {
     count: number,
     out: number,
   ): void;
+  correlations(kind: number, rangeKm: number, distances: number, count: number, slopes: number): void;
   exponentials(x: number, count: number): void;
 }
 

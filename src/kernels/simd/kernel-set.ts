@@ -1,5 +1,5 @@
-import type { CovarianceKind } from '../covariance-kind.js';
-import type { KernelSet } from '../kernel-set.js';
+import { COVARIANCE_KINDS, type CovarianceKind } from '../covariance-kind.js';
+import type { DenseWorkspace, KernelSet } from '../kernel-set.js';
 import { referenceKernels } from '../reference/kernel-set.js';
 import { compiledModule } from './compiled-kernels.js';
 import { writeCovariances } from './covariance.js';
@@ -7,7 +7,7 @@ import { DenseMemory } from './dense-memory.js';
 import { fitsKernelMemory } from './kernel-memory.js';
 import { covarianceLayout, denseLayout, productLayout } from './layout.js';
 import { scratchMemory } from './scratch.js';
-import { createDenseWorkspace, workspaceOf } from './workspace.js';
+import { createDenseWorkspace, workspaceIn, workspaceOf } from './workspace.js';
 
 // Sizes from which copying in and out is paid back. They depend on sizes alone: one call always goes one way, and its
 // result does not depend on what else the thread has done.
@@ -18,6 +18,7 @@ const INVERSE_ROWS = 24;
 const PRODUCT_OPERATIONS = 16_384;
 const PRODUCT_INNER = 4;
 const COVARIANCES = 64;
+const CORRELATION_ROWS = 16;
 /** Enough for matrices of 200 rows. */
 const FIRST_SCRATCH_BYTES = 2 ** 20;
 
@@ -43,6 +44,9 @@ const SIMD_KERNELS: KernelSet = {
   inverseFromCholesky,
   multiplyInto,
   covarianceBlock,
+  correlations,
+  borrowWorkspace,
+  withInverse,
 };
 
 function choleskyInPlace(a: Float64Array, n: number): void {
@@ -142,6 +146,48 @@ function covarianceBlock(
   const { block, positions } = layout;
   writeCovariances(memory, positions, kind, sill, rangeKm, stationsKm, n, placesKm, first, count, block);
   out.set(memory.numbers(block, n * count));
+}
+
+function correlations(
+  kind: CovarianceKind,
+  what: 'correlation' | 'slope',
+  rangeKm: number,
+  distancesKm: Float64Array,
+  n: number,
+  out: Float64Array,
+): void {
+  if (n < CORRELATION_ROWS) {
+    referenceKernels.correlations(kind, what, rangeKm, distancesKm, n, out);
+    return;
+  }
+  const memory = scratchMemory(8 * (n + 1));
+  const code = COVARIANCE_KINDS.indexOf(kind);
+  const row = memory.numbers(0, n + 1);
+  for (let i = 0; i < n; i++) {
+    row.set(distancesKm.subarray(i * n, i * n + i + 1));
+    row[i] = 0;
+    memory.kernels.correlations(code, rangeKm, 0, i + 1, what === 'slope' ? 1 : 0);
+    out.set(row.subarray(0, i + 1), i * n);
+  }
+}
+
+function borrowWorkspace(l: Float64Array, n: number, width: number): DenseWorkspace {
+  const { bytes } = denseLayout(n, width);
+  if (!fitsKernelMemory(bytes)) return referenceKernels.borrowWorkspace(l, n, width);
+  const workspace = workspaceIn(scratchMemory(bytes), n, width);
+  workspace.matrix.set(l.subarray(0, n * n));
+  return workspace;
+}
+
+function withInverse(l: Float64Array, n: number, use: (inverse: Float64Array) => void): void {
+  const dense = n < INVERSE_ROWS ? null : scratch(n, n);
+  if (dense === null) {
+    referenceKernels.withInverse(l, n, use);
+    return;
+  }
+  dense.matrix.set(l.subarray(0, n * n));
+  dense.inverse();
+  use(dense.matrix);
 }
 
 /** Scratch for an n × n matrix and a block; null where it would be larger than a memory may be. */

@@ -8,7 +8,11 @@ const byMemory = new WeakMap<ArrayBufferLike, DenseMemory>();
 
 /** See `createDenseWorkspace` of ../dense.ts. @throws MATRIX_TOO_LARGE, KERNEL_MEMORY_MISSING */
 export function createDenseWorkspace(n: number, width: number): DenseWorkspace {
-  const memory = new KernelMemory(denseLayout(n, width).bytes);
+  return workspaceIn(new KernelMemory(denseLayout(n, width).bytes), n, width);
+}
+
+/** A workspace laid out in a memory that is there already. */
+export function workspaceIn(memory: KernelMemory, n: number, width: number): DenseWorkspace {
   const dense = new DenseMemory(memory, n, width);
   byMemory.set(memory.buffer, dense);
   return {
