@@ -1,5 +1,5 @@
 import { RainprintError } from '../errors.js';
-import { type EpsgCrs, forwardOf } from '../raster/index.js';
+import { type EpsgCrs, forwardOf, looksLikeDegrees } from '../raster/index.js';
 
 /** Edges as asked for, in units of the CRS. East below west runs over the antimeridian where these are degrees. */
 export interface FrameBounds {
@@ -46,19 +46,12 @@ export function checkBounds(bounds: FrameBounds, crs: EpsgCrs): void {
     checkDegrees(bounds, crs);
     return;
   }
-  if (looksLikeDegrees(bounds)) throw degreesInsteadOf(bounds, crs);
+  if (looksLikeDegrees(west, south, east, north)) throw degreesInsteadOf(bounds, crs);
   if (west > east) {
     throw boundsInvalid(
       `west must lie below east in EPSG:${crs.epsg} (${crs.unit}), got west ${west} and east ${east} (order: W,S,E,N)`,
     );
   }
-}
-
-/** Four numbers of this size in metres would be an area of some hundred metres around the CRS's origin. */
-export function looksLikeDegrees({ west, south, east, north }: FrameBounds): boolean {
-  return (
-    [west, east].every((lon) => Math.abs(lon) <= 360) && [south, north].every((lat) => Math.abs(lat) <= 90)
-  );
 }
 
 function checkDegrees(bounds: FrameBounds, crs: EpsgCrs): void {

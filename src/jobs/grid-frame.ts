@@ -1,6 +1,6 @@
 import { RainprintError } from '../errors.js';
 import { type EpsgCrs, epsgCrs, frameReach, type GridFrame } from '../raster/index.js';
-import { checkBounds, type FrameBounds, looksLikeDegrees, parseBounds, parseCell } from './grid-bounds.js';
+import { checkBounds, type FrameBounds, parseBounds, parseCell } from './grid-bounds.js';
 import { openTemplate } from './grid-template.js';
 
 export interface FrameOptions {
@@ -138,10 +138,9 @@ function checkReach(frame: GridFrame, bounds: FrameBounds, crs: EpsgCrs): void {
   if (reach.anywhere && reach.nearAreaOfUse) return;
   const given = [bounds.west, bounds.south, bounds.east, bounds.north].map(coordinateText).join(',');
   const where = reach.anywhere ? 'lie far outside its area of use' : 'lie where it does not reach';
-  const degrees = looksLikeDegrees(bounds) ? ' (are they degrees? then --crs EPSG:4326)' : '';
   throw new RainprintError(
     'BOUNDS_INVALID',
-    `bounds ${given} in EPSG:${crs.epsg} (${crs.name}, ${crs.unit}) ${where}, longitude ${crs.areaOfUse[0]} to ${crs.areaOfUse[2]}, latitude ${crs.areaOfUse[1]} to ${crs.areaOfUse[3]}; the order is W,S,E,N, easting before northing${degrees}`,
+    `bounds ${given} in EPSG:${crs.epsg} (${crs.name}, ${crs.unit}) ${where}, longitude ${crs.areaOfUse[0]} to ${crs.areaOfUse[2]}, latitude ${crs.areaOfUse[1]} to ${crs.areaOfUse[3]}; the order is W,S,E,N, easting before northing`,
     { epsg: crs.epsg, bounds: given },
   );
 }

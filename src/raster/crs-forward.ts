@@ -1,4 +1,4 @@
-import proj4 from 'proj4';
+import { crsConversion } from './crs-conversion.js';
 import { type FrameCrs, isLonLat } from './epsg-crs.js';
 
 /** About 10 m: a hundredth of a cell of the finest grids used here, far above rounding. */
@@ -9,14 +9,22 @@ export type CrsForward = (lonDeg: number, latDeg: number) => [number, number];
 
 export function forwardOf(crs: FrameCrs): CrsForward {
   if (isLonLat(crs)) return (lonDeg, latDeg) => [lonDeg, latDeg];
-  const converter = proj4('EPSG:4326', crs.definition);
+  const conversion = crsConversion(crs);
+  const at = { x: 0, y: 0 };
   return (lonDeg, latDeg) => {
-    const [x, y] = converter.forward([lonDeg, latDeg]) as [number, number];
-    if (!Number.isFinite(x) || !Number.isFinite(y)) return [Number.NaN, Number.NaN];
+    at.x = lonDeg;
+    at.y = latDeg;
+    conversion.fromLonLat(at);
+    const { x, y } = at;
     // Far from its zone a projection may fold over and hit the raster: only what comes back is believed.
-    const [backLonDeg, backLatDeg] = converter.inverse([x, y]) as [number, number];
-    const turnDeg = Math.abs(((((backLonDeg - lonDeg) % 360) + 540) % 360) - 180);
-    const near = turnDeg < ROUND_TRIP_DEG && Math.abs(backLatDeg - latDeg) < ROUND_TRIP_DEG;
-    return near ? [x, y] : [Number.NaN, Number.NaN];
+    conversion.toLonLat(at);
+    const turnDeg = Math.abs(((((at.x - lonDeg) % 360) + 540) % 360) - 180);
+    const near = turnDeg < ROUND_TRIP_DEG && Math.abs(at.y - latDeg) < ROUND_TRIP_DEG;
+    return near || isPole(at.y, latDeg) ? [x, y] : [Number.NaN, Number.NaN];
   };
+}
+
+/** At a pole any longitude comes back. */
+function isPole(backLatDeg: number, latDeg: number): boolean {
+  return Math.abs(latDeg) > 90 - ROUND_TRIP_DEG && Math.abs(backLatDeg - latDeg) < ROUND_TRIP_DEG;
 }

@@ -40,6 +40,11 @@ export function frameReach(frame: GridFrame, crs: EpsgCrs): FrameReach {
   return { anywhere, nearAreaOfUse };
 }
 
+/** Numbers of this size in metres would be an area of some hundred metres around a projected CRS's origin. */
+export function looksLikeDegrees(west: number, south: number, east: number, north: number): boolean {
+  return Math.max(Math.abs(west), Math.abs(east)) <= 360 && Math.max(Math.abs(south), Math.abs(north)) <= 90;
+}
+
 function isNear(area: EpsgCrs['areaOfUse'], lonDeg: number, latDeg: number): boolean {
   const [west, south, east, north] = area;
   const height = north - south;

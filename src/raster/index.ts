@@ -14,7 +14,7 @@ export {
 export { type EpsgCrs, epsgCrs, type FrameCrs, isLonLat } from './epsg-crs.js';
 export { type FrameElevation, GROUND } from './frame-elevation.js';
 export { type FrameLocator, frameLocator } from './frame-locator.js';
-export { frameReach } from './frame-reach.js';
+export { frameReach, looksLikeDegrees } from './frame-reach.js';
 export type { BandDescription } from './gdal-metadata.js';
 export type { NorthUpTransform, WritableCrs } from './geo-keys.js';
 export {

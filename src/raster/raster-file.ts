@@ -5,7 +5,7 @@ import { basename } from 'node:path';
 import { GeoTIFF, type GeoTIFFImage } from 'geotiff';
 import { RainprintError } from '../errors.js';
 import { fileSource } from './file-source.js';
-import { frameReach } from './frame-reach.js';
+import { frameReach, looksLikeDegrees } from './frame-reach.js';
 import type { NorthUpTransform } from './geo-keys.js';
 import { type GeoKeys, type RasterCrs, rasterCrs } from './raster-crs.js';
 import { northUpTransform } from './raster-transform.js';
@@ -160,18 +160,19 @@ function checkPlace(
 ): void {
   const { originX, originY, cellWidth, cellHeight } = transform;
   const southY = originY - height * cellHeight;
+  const eastX = originX + width * cellWidth;
   if (crs.kind === 'geographic') {
     // Cells centred on the poles or on 180° hang half a cell over.
     const slack = cellHeight;
     const inside = originY <= 90 + slack && southY >= -90 - slack && Math.abs(originX) <= 360 + slack;
-    if (inside && width * cellWidth <= 360 + cellWidth) return;
-  } else {
+    if (inside && eastX - originX <= 360 + 1.01 * cellWidth) return;
+  } else if (!looksLikeDegrees(originX, southY, eastX, originY)) {
     const reach = frameReach({ width, height, crs, ...transform }, crs);
     if (reach.anywhere && reach.nearAreaOfUse) return;
   }
   throw new RainprintError(
     'CRS_WRONG',
-    `${path} says it is in EPSG:${crs.epsg} (${crs.name}, ${crs.unit}), but its cells reach from x ${originX} to ${originX + width * cellWidth} and y ${southY} to ${originY}, which lie elsewhere; give it the CRS it is in: gdal_translate -a_srs EPSG:CODE in.tif out.tif`,
+    `${path} says it is in EPSG:${crs.epsg} (${crs.name}, ${crs.unit}), but its cells reach from x ${originX} to ${eastX} and y ${southY} to ${originY}, which lie elsewhere; give it the CRS it is in: gdal_translate -a_srs EPSG:CODE in.tif out.tif`,
     { path, epsg: crs.epsg, west: originX, north: originY, south: southY },
   );
 }

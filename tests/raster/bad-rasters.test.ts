@@ -48,7 +48,37 @@ describe('openElevation refuses', () => {
 
   it.each<[string, HandMade, string, string]>([
     ['a file without CRS', withTags(...PLACE), 'CRS_MISSING', '-a_srs'],
-    ['a CRS it has no definition for', withTags(utm(2180), ...PLACE), 'CRS_UNSUPPORTED', 'gdalwarp -t_srs'],
+    ['a CRS no registry knows', withTags(utm(60000), ...PLACE), 'CRS_UNSUPPORTED', 'gdalwarp -t_srs'],
+    [
+      'a CRS whose datum needs a grid of shifts',
+      withTags(utm(31467), ...corner(3_500_000, 5_500_000, 30, 30)),
+      'CRS_UNSUPPORTED',
+      'grid shifts',
+    ],
+    ['degrees labelled as metres', withTags(utm(32632), ...corner(8, 47, 0.1, 0.1)), 'CRS_WRONG', '-a_srs'],
+    [
+      'coordinates of another projection',
+      withTags(utm(32632), ...corner(-8_000_000, 3_200_000, 1000, 1000)),
+      'CRS_WRONG',
+      'UTM zone 32N',
+    ],
+    [
+      'coordinates no projection reaches',
+      withTags(utm(3035), ...corner(90_000_000, 3_200_000, 1000, 1000)),
+      'CRS_WRONG',
+      'LAEA',
+    ],
+    [
+      'a longitude/latitude raster that goes round the Earth twice',
+      {
+        width: 800,
+        height: 1,
+        values: new Array(800).fill(5),
+        tags: [LON_LAT, ...corner(-180, 45, 0.5, 0.5)],
+      },
+      'CRS_WRONG',
+      'to 220',
+    ],
     ['a CRS without a code', withTags(utm(32767), ...PLACE), 'CRS_UNSUPPORTED', '32767'],
     ['a geocentric CRS', withTags(geoKeys([1024, 3]), ...PLACE), 'CRS_UNSUPPORTED', 'model type 3'],
     [
@@ -66,7 +96,7 @@ describe('openElevation refuses', () => {
     [
       'metres labelled as degrees',
       withTags(LON_LAT, ...corner(400_000, 5_040_000, 30, 30)),
-      'CRS_UNSUPPORTED',
+      'CRS_WRONG',
       '5040000',
     ],
     ['a file that does not say where it lies', withTags(LON_LAT), 'TRANSFORM_MISSING', '-a_ullr'],
