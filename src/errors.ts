@@ -14,6 +14,7 @@ export const ERROR_CODES = {
   OUTPUT_PATH_INVALID: 'input',
   FIX_INVALID: 'input',
   SITES_WITH_PROBLEMS: 'input',
+  AREAS_WITH_PROBLEMS: 'input',
   JOINT_TOO_MANY_SITES: 'input',
   INTERNAL: 'fault',
   // geostat, kernels
@@ -24,6 +25,7 @@ export const ERROR_CODES = {
   WITHIN_COVARIANCE_SINGULAR: 'input',
   PARAMETER_OUT_OF_RANGE: 'input',
   LIKELIHOOD_NOT_CONVERGED: 'fault',
+  NETWORK_TOO_LARGE: 'input',
   MATRIX_TOO_LARGE: 'input',
   KERNEL_MEMORY_MISSING: 'fault',
   KERNELS_UNAVAILABLE: 'fault',
@@ -97,6 +99,10 @@ export const ERROR_CODES = {
   MASK_OUTSIDE: 'input',
   GRID_EMPTY: 'input',
   BAND_UNKNOWN: 'input',
+  AREA_INVALID: 'input',
+  AREA_VALUES_MISSING: 'input',
+  AREA_WEIGHT_NEGATIVE: 'input',
+  AREA_WEIGHT_ZERO: 'input',
 } as const satisfies Record<string, 'input' | 'fault'>;
 
 export type ErrorCode = keyof typeof ERROR_CODES;

@@ -1,4 +1,5 @@
 import { Command } from 'commander';
+import { registerArea } from './area.js';
 import { registerCheck } from './check.js';
 import { type CliContext, createContext } from './context.js';
 import { reportFailure } from './failure.js';
@@ -37,7 +38,14 @@ export function createProgram(context: CliContext): Command {
       outputError: () => {}, // said once, with its code, in reportFailure
     })
     .showSuggestionAfterError(true);
-  for (const register of [registerCheck, registerFit, registerValidate, registerSites, registerGrid])
+  for (const register of [
+    registerCheck,
+    registerFit,
+    registerValidate,
+    registerSites,
+    registerArea,
+    registerGrid,
+  ])
     register(program, context);
   return program;
 }

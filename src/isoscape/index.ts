@@ -10,6 +10,8 @@
  * predictPlaces(isoscape, places, out);
  * console.log(out.d18O[0], Math.sqrt(out.varD18O[0]));
  */
+export { type AreaPoints, type AreaPrediction, predictArea, type WeightedPlaces } from './area.js';
+export { type AreaLattice, type AreaPart, areaLattice, ringAreaKm2 } from './area-lattice.js';
 export { backTransform, type Matrix2, pairCovariance } from './axes.js';
 export { canonicalJson, contentHash } from './canonical-json.js';
 export { type Covariate, type CovariateValues, checkCovariateName } from './covariate.js';
