@@ -23,6 +23,20 @@ export { gaussianCdf, gaussianDensity, gaussianQuantile } from './gaussian.js';
 export { predictFieldJointly, weightedAverage } from './joint.js';
 export { leaveGroupOutField, leaveOneOutField } from './leave-one-out.js';
 export { type Criterion, FieldLikelihood, type FieldParameters } from './likelihood.js';
+export {
+  CONDITIONING_NEIGHBOURS,
+  type LocalSystem,
+  localSystem,
+  NearestStations,
+  networkTrend,
+} from './nearest-stations.js';
+export {
+  type LocalStations,
+  NEIGHBOURHOOD_STATIONS,
+  Neighbourhoods,
+  type PlaceGroup,
+  stationsAround,
+} from './neighbourhoods.js';
 export { findNeighbours, type Neighbours } from './neighbours.js';
 export {
   arcFromChordKm,

@@ -4,10 +4,14 @@ import {
   type FieldData,
   type FieldGeometry,
   FieldSystem,
+  type LocalStations,
+  NearestStations,
+  type Neighbourhoods,
   positionsOnSphereKm,
   predictField,
 } from '../geostat/index.js';
 import type { FieldNode, FittedField, Isoscape } from './isoscape.js';
+import { requireFactor } from './large-network.js';
 import { trendRows } from './trend.js';
 
 /** Geometry of an isoscape's stations and trend. */
@@ -25,7 +29,7 @@ export function nodesOf(field: FittedField, plugIn: boolean): readonly FieldNode
   return plugIn ? [{ ...field.parameters, weight: 1 }] : field.nodes;
 }
 
-interface PreparedNode {
+export interface PreparedNode {
   readonly weight: number;
   readonly nugget: number;
   readonly system: FieldSystem;
@@ -54,16 +58,21 @@ export class FieldAverage {
   readonly #field: FittedField;
   readonly #otherValues: Float64Array | null;
   readonly #nodes: readonly FieldNode[];
+  readonly #neighbourhoods: Neighbourhoods | null;
   #kept: PreparedNode[] | null = null;
+  #networks: NearestStations[] | null = null;
   #coefficients: Float64Array | null = null;
 
+  /** @param neighbourhoods  where predictions use the stations near a place; null where they use all */
   constructor(
     isoscape: Isoscape,
     geometry: FieldGeometry,
     field: FittedField,
     otherValues: Float64Array | null,
     plugIn: boolean,
+    neighbourhoods: Neighbourhoods | null = null,
   ) {
+    this.#neighbourhoods = neighbourhoods;
     this.#isoscape = isoscape;
     this.#geometry = geometry;
     this.#field = field;
@@ -78,32 +87,68 @@ export class FieldAverage {
 
   /** GLS coefficients averaged over the nodes (p). */
   get coefficients(): Float64Array {
-    if (this.#coefficients === null) {
-      const coefficients = new Float64Array(this.#geometry.p);
-      for (const node of this.preparedNodes()) {
-        for (let c = 0; c < coefficients.length; c++) {
-          coefficients[c] += node.weight * node.own.coefficients[c];
-        }
-      }
-      this.#coefficients = coefficients;
+    if (this.#coefficients === null && this.#neighbourhoods !== null) {
+      this.#coefficients = this.#average(this.networks().map((network) => network.coefficients[0]));
     }
-    return this.#coefficients;
+    if (this.#coefficients === null) for (const _ of this.preparedNodes());
+    return this.#coefficients!;
   }
 
-  /** Every node, factorised: kept where memory allows, else built one after the other. */
+  #average(coefficients: readonly Float64Array[]): Float64Array {
+    const average = new Float64Array(this.#geometry.p);
+    coefficients.forEach((of, k) => {
+      for (let c = 0; c < average.length; c++) average[c] += this.#nodes[k].weight * of[c];
+    });
+    return average;
+  }
+
+  /** True where residuals are kriged from the stations near a place: predictions come from `localNodes` then. */
+  get usesNearest(): boolean {
+    return this.#neighbourhoods !== null;
+  }
+
+  /** Every node over the whole network, without a factor: trend from all stations, residuals from those nearby. */
+  networks(): readonly NearestStations[] {
+    this.#networks ??= this.#nodes.map((node) => {
+      const data = this.#otherValues === null ? [] : [this.#otherValues];
+      return new NearestStations(this.#geometry, this.#isoscape.family, node, this.#field.samplingVariance, [
+        this.#field.values,
+        ...data,
+      ]);
+    });
+    return this.#networks;
+  }
+
+  /** Every node over some of the stations, with the network's trend. */
+  *localNodes(stations: LocalStations): Generator<PreparedNode> {
+    for (const [k, network] of this.networks().entries()) {
+      const { weight, nugget } = this.#nodes[k];
+      const { system, data } = network.over(stations);
+      yield { weight, nugget, system, own: data[0], other: data[1] ?? null };
+    }
+  }
+
+  /**
+   * Every node, factorised over all stations: kept where memory allows, else built one after the other.
+   * @throws NETWORK_TOO_LARGE
+   */
   *preparedNodes(): Generator<PreparedNode> {
+    requireFactor(this.#geometry.n, 'an answer from all stations');
     const bytes = this.#nodes.length * this.#geometry.n ** 2 * 8;
     if (this.#kept !== null) {
       yield* this.#kept;
       return;
     }
     const kept: PreparedNode[] | null = bytes <= KEPT_NODES_BYTES ? [] : null;
+    const coefficients: Float64Array[] = [];
     for (const node of this.#nodes) {
       const prepared = this.#prepare(node);
       kept?.push(prepared);
+      coefficients.push(prepared.own.coefficients);
       yield prepared;
     }
     this.#kept = kept;
+    this.#coefficients ??= this.#average(coefficients);
   }
 
   #prepare(node: FieldNode): PreparedNode {
@@ -121,6 +166,37 @@ export class FieldAverage {
    * @param places    count × 3, km; @param trendRows count × p
    */
   predict(places: Float64Array, trendRows: Float64Array, count: number): FieldAnswer {
+    const { n, p } = this.#geometry;
+    if (this.#neighbourhoods === null) {
+      return this.#predictFrom(this.preparedNodes(), n, places, trendRows, count);
+    }
+    const column = () => new Float64Array(count);
+    const answer = { mean: column(), variance: column(), otherMean: this.#otherValues && column() };
+    for (const group of this.#neighbourhoods.groups(places, count)) {
+      const size = group.places.length;
+      const part = this.#predictFrom(
+        this.localNodes(group.stations),
+        group.stations.indices.length,
+        pickRows(places, 3, group.places),
+        pickRows(trendRows, p, group.places),
+        size,
+      );
+      for (const [k, j] of group.places.entries()) {
+        answer.mean[j] = part.mean[k];
+        answer.variance[j] = part.variance[k];
+        if (answer.otherMean !== null) answer.otherMean[j] = part.otherMean![k];
+      }
+    }
+    return answer;
+  }
+
+  #predictFrom(
+    nodes: Iterable<PreparedNode>,
+    stationCount: number,
+    places: Float64Array,
+    trendRows: Float64Array,
+    count: number,
+  ): FieldAnswer {
     const column = () => new Float64Array(count);
     const answer = { mean: column(), variance: column(), otherMean: this.#otherValues && column() };
     const nodeMean = column();
@@ -129,9 +205,9 @@ export class FieldAverage {
     // Spread of the node means about the first one, so that no digits cancel.
     const first = column();
     const square = column();
-    const workspace = createBlupWorkspace(this.#geometry.n, this.#geometry.p);
+    const workspace = createBlupWorkspace(stationCount, this.#geometry.p);
     let isFirst = true;
-    for (const { weight, system, own, other } of this.preparedNodes()) {
+    for (const { weight, system, own, other } of nodes) {
       const data = other === null ? [own] : [own, other];
       predictField(system, places, trendRows, count, data, [nodeMean, nodeOther], nodeVariance, workspace);
       if (isFirst) first.set(nodeMean);
@@ -150,4 +226,12 @@ export class FieldAverage {
     }
     return answer;
   }
+}
+
+function pickRows(values: Float64Array, width: number, rows: readonly number[]): Float64Array {
+  const out = new Float64Array(rows.length * width);
+  rows.forEach((row, k) => {
+    out.set(values.subarray(row * width, (row + 1) * width), k * width);
+  });
+  return out;
 }

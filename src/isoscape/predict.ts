@@ -1,7 +1,8 @@
-import { positionsOnSphereKm } from '../geostat/index.js';
+import { Neighbourhoods, positionsOnSphereKm } from '../geostat/index.js';
 import { backTransform, type Matrix2 } from './axes.js';
 import { type FieldAnswer, FieldAverage, isoscapeGeometry } from './field-average.js';
 import type { Isoscape } from './isoscape.js';
+import { type StationsUsed, usesNearest } from './large-network.js';
 import { type Places, type Predictions, requireCovariates } from './places.js';
 import { trendRows } from './trend.js';
 
@@ -12,6 +13,8 @@ export interface PredictOptions {
   readonly target?: Target;
   /** Take the fitted covariance parameters and turn for known (for comparison with other programs). */
   readonly plugIn?: boolean;
+  /** Stations that enter the residual part of a prediction: all, or those near the place. Default auto, by their number. */
+  readonly stations?: StationsUsed;
 }
 
 /** The fields of an isoscape, ready to predict, and the way back to the isotopes. */
@@ -24,31 +27,43 @@ export interface PreparedIsoscape {
   readonly elevationColumn: number;
 }
 
-const prepared = new WeakMap<Isoscape, { averaged?: PreparedIsoscape; plugIn?: PreparedIsoscape }>();
+const prepared = new WeakMap<Isoscape, Map<string, PreparedIsoscape>>();
 
 /** Factorised fields of an isoscape; built on first use and kept as long as the isoscape is. */
-export function prepareIsoscape(isoscape: Isoscape, plugIn: boolean): PreparedIsoscape {
-  const slot = prepared.get(isoscape) ?? {};
+export function prepareIsoscape(
+  isoscape: Isoscape,
+  plugIn: boolean,
+  stations: StationsUsed = 'auto',
+): PreparedIsoscape {
+  const slot = prepared.get(isoscape) ?? new Map<string, PreparedIsoscape>();
   prepared.set(isoscape, slot);
-  const key = plugIn ? 'plugIn' : 'averaged';
-  slot[key] ??= build(isoscape, plugIn);
-  return slot[key];
+  const nearest = usesNearest(stations, isoscape.stations.id.length);
+  const key = `${plugIn} ${nearest}`;
+  const ready = slot.get(key) ?? prepareAfresh(isoscape, plugIn, nearest ? {} : null);
+  slot.set(key, ready);
+  return ready;
 }
 
-function build(isoscape: Isoscape, plugIn: boolean): PreparedIsoscape {
+/** As `prepareIsoscape`, not kept. @param nearest  null for all stations, or how many stand for a place */
+export function prepareAfresh(
+  isoscape: Isoscape,
+  plugIn: boolean,
+  nearest: { readonly stationCount?: number } | null,
+): PreparedIsoscape {
   const geometry = isoscapeGeometry(isoscape);
+  const neighbourhoods = nearest === null ? null : new Neighbourhoods(geometry, nearest.stationCount);
   const elevationIndex = isoscape.terms.indexOf('elevation');
   const elevationColumn = elevationIndex < 0 ? -1 : elevationIndex + 1;
   if (isoscape.isotopes !== 'both') {
-    const field = new FieldAverage(isoscape, geometry, isoscape.field, null, plugIn);
+    const field = new FieldAverage(isoscape, geometry, isoscape.field, null, plugIn, neighbourhoods);
     return { fields: [field], back: null, turnVarianceRad2: 0, elevationColumn };
   }
   const { along, across, turnVarianceRad2, whitening, turnRad } = isoscape;
   const needOther = !plugIn && turnVarianceRad2 > 0;
   return {
     fields: [
-      new FieldAverage(isoscape, geometry, along, needOther ? across.values : null, plugIn),
-      new FieldAverage(isoscape, geometry, across, needOther ? along.values : null, plugIn),
+      new FieldAverage(isoscape, geometry, along, needOther ? across.values : null, plugIn, neighbourhoods),
+      new FieldAverage(isoscape, geometry, across, needOther ? along.values : null, plugIn, neighbourhoods),
     ],
     back: backTransform(whitening, turnRad),
     turnVarianceRad2: needOther ? turnVarianceRad2 : 0,
@@ -72,13 +87,23 @@ export function predictPlaces(
   options: PredictOptions = {},
 ): void {
   requireCovariates(isoscape, places);
-  const ready = prepareIsoscape(isoscape, options.plugIn ?? false);
+  const ready = prepareIsoscape(isoscape, options.plugIn ?? false, options.stations);
+  predictPrepared(isoscape, ready, places, out, options.target ?? 'site');
+}
+
+/** As `predictPlaces`, from fields prepared by the caller. */
+export function predictPrepared(
+  isoscape: Isoscape,
+  ready: PreparedIsoscape,
+  places: Places,
+  out: Predictions,
+  target: Target,
+): void {
   const count = places.count;
   const positions = positionsOnSphereKm(places.lonDeg.subarray(0, count), places.latDeg.subarray(0, count));
   const rows = trendRows(isoscape, places, count);
   const answers = ready.fields.map((field) => field.predict(positions, rows, count));
-  const site = (options.target ?? 'site') === 'site';
-  combineFields(isoscape, ready, answers, site, places.elevationVarM2, count, out);
+  combineFields(isoscape, ready, answers, target === 'site', places.elevationVarM2, count, out);
 }
 
 /** The part of a `FieldAnswer` that the isotopes are made of. */
