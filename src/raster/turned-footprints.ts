@@ -90,25 +90,28 @@ function lazyCentres(frame: GridFrame, placement: RasterPlacement, window: CellW
 
 /** Corners in the order round the cell: x, y of top left, top right, bottom right, bottom left. */
 function readQuad(corners: Positions, a: number, stride: number, quad: Float64Array): void {
-  const order = [a, a + 1, a + stride + 1, a + stride];
-  for (let i = 0; i < 4; i++) {
-    quad[2 * i] = corners.x[order[i]];
-    quad[2 * i + 1] = corners.y[order[i]];
-  }
+  const { x, y } = corners;
+  quad[0] = x[a];
+  quad[1] = y[a];
+  quad[2] = x[a + 1];
+  quad[3] = y[a + 1];
+  quad[4] = x[a + stride + 1];
+  quad[5] = y[a + stride + 1];
+  quad[6] = x[a + stride];
+  quad[7] = y[a + stride];
 }
 
 /** False where a corner has no place. */
 function writeBox(quad: Float64Array, placement: RasterPlacement, k: number, out: TurnedFootprints): boolean {
   const { turn } = placement;
   if (turn !== null && unwind(quad, turn.cells) !== 0) return writePole(quad, placement, k, out);
-  const [x0, y0, x1, y1, x2, y2, x3, y3] = quad;
-  const acrossX = (x1 - x0 + x2 - x3) / 2;
-  const acrossY = (y1 - y0 + y2 - y3) / 2;
-  const downX = (x3 - x0 + x2 - x1) / 2;
-  const downY = (y3 - y0 + y2 - y1) / 2;
-  const x = (x0 + x1 + x2 + x3) / 4;
+  const acrossX = (quad[2] - quad[0] + quad[4] - quad[6]) / 2;
+  const acrossY = (quad[3] - quad[1] + quad[5] - quad[7]) / 2;
+  const downX = (quad[6] - quad[0] + quad[4] - quad[2]) / 2;
+  const downY = (quad[7] - quad[1] + quad[5] - quad[3]) / 2;
+  const x = (quad[0] + quad[2] + quad[4] + quad[6]) / 4;
   out.x[k] = turn === null ? x : x - Math.floor((x + turn.leftOfRaster) / turn.cells) * turn.cells;
-  out.y[k] = (y0 + y1 + y2 + y3) / 4;
+  out.y[k] = (quad[1] + quad[3] + quad[5] + quad[7]) / 4;
   out.boxWidth[k] = Math.sqrt(acrossX * acrossX + downX * downX);
   out.boxHeight[k] = Math.sqrt(acrossY * acrossY + downY * downY);
   return !Number.isNaN(out.x[k] + out.y[k]);
