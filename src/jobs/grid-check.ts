@@ -1,6 +1,7 @@
 import {
   createPlaces,
   createPredictions,
+  HYDROGEN_TOLERANCE_FACTOR,
   type Isoscape,
   type Places,
   type Predictions,
@@ -19,8 +20,6 @@ export interface GridCheck {
 export const CHECKED = ['d18O', 'd18O_se', 'd2H', 'd2H_se', 'dexcess', 'dexcess_se'] as const;
 export type CheckedName = (typeof CHECKED)[number];
 
-/** What is allowed for δ2H and d-excess where `tolerance` is allowed for δ18O. */
-const OTHERS_PER_D18O = 8;
 const SAMPLE_CELLS = 256;
 
 export function createCheck(): GridCheck {
@@ -34,7 +33,7 @@ export function addCheck(sum: GridCheck, part: GridCheck): void {
 
 /** Tolerance of each checked value, ‰. */
 export function checkTolerance(name: CheckedName, tolerance: number): number {
-  return name.startsWith('d18O') ? tolerance : OTHERS_PER_D18O * tolerance;
+  return name.startsWith('d18O') ? tolerance : HYDROGEN_TOLERANCE_FACTOR * tolerance;
 }
 
 /** Cells of a grid to be checked: the same for every worker, drawn from the grid's size alone. All of a small grid. */

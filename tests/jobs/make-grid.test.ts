@@ -1,233 +1,436 @@
-import { existsSync, readdirSync } from 'node:fs';
+import { readdirSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
-import { fromFile } from 'geotiff';
-import { describe, expect, it } from 'vitest';
-import type { Places, Predictions } from '../../src/isoscape/places.js';
-import { type GridRequest, makeGrid, parseBounds, planGrid } from '../../src/jobs/index.js';
-import type { ElevationGrid } from '../../src/raster/index.js';
+import proj4 from 'proj4';
+import { beforeAll, describe, expect, it } from 'vitest';
+import {
+  createPlaces,
+  createPredictions,
+  createSupport,
+  type Isoscape,
+  predictPlaces,
+  SUPPORT_FLAGS,
+} from '../../src/isoscape/index.js';
+import { dExcessVariance } from '../../src/isotope/index.js';
+import { type GridRequest, makeGrid } from '../../src/jobs/index.js';
+import {
+  bundledElevationPath,
+  type FrameElevation,
+  type GridFrame,
+  openElevation,
+} from '../../src/raster/index.js';
+import { fitCsv, HELD } from '../support/fit-csv.js';
+import { gridRequest, readBandNames, readBands, readItems } from '../support/grid-request.js';
+import { writeInventedLand } from '../support/invented-land.js';
+import { inventNetwork } from '../support/invented-network.js';
 import { scratchFolder } from '../support/scratch.js';
 
 const folder = scratchFolder();
+const landPath = join(folder, 'land.tif');
+const AREA = { bounds: '-34,-50,-26,-42', cell: '0.2' }; // 40 × 40 cells
+let isoscape: Isoscape;
 let fileCount = 0;
 const newPath = () => join(folder, `grid-${fileCount++}.tif`);
+const unfinished = () => readdirSync(folder).filter((name) => name.endsWith('.tmp'));
 
-/** Elevations without a file: land where the test says, heights that tell the place. */
-const elevation = (isLand: (lonDeg: number, latDeg: number) => boolean): ElevationGrid => ({
-  source: 'invented',
-  sample: () => Promise.reject(new Error('a grid asks for cells')),
-  close: () => Promise.resolve(),
-  sampleGrid: async (grid) => {
-    const elevationM = new Float32Array(grid.width * grid.height);
-    elevationM.forEach((_, k) => {
-      const lonDeg = grid.westDeg + ((k % grid.width) + 0.5) * grid.cellDeg;
-      const latDeg = grid.northDeg - (Math.floor(k / grid.width) + 0.5) * grid.cellDeg;
-      elevationM[k] = isLand(lonDeg, latDeg) ? 100 + latDeg : Number.NaN;
-    });
-    return { elevationM, varianceM2: elevationM.map((m) => m / 2) };
-  },
+beforeAll(async () => {
+  await writeInventedLand(landPath);
+  isoscape = await fitCsv(inventNetwork({ stationCount: 40, seed: 7 }).csv, HELD);
 });
 
-/** A stand-in for the model whose answer tells which place it was asked about. */
-const predict = (places: Places, out: Predictions): void => {
-  for (let i = 0; i < places.count; i++) {
-    out.d18O[i] = places.lonDeg[i]! / 10;
-    out.d2H[i] = places.latDeg[i]! + places.elevationM[i]! / 1000;
-    out.varD18O[i] = 0.5 + places.elevationVarM2[i]! / 1000;
-    out.varD2H[i] = 30;
-    out.cov[i] = 3;
-  }
-};
+const request = (change: Partial<GridRequest> = {}, frame: object = AREA) =>
+  gridRequest(isoscape, landPath, frame, change);
 
-const request = (bounds: string, cellDeg: number, change: Partial<GridRequest> = {}): GridRequest => ({
-  plan: planGrid(parseBounds(bounds), cellDeg),
-  isotopes: 'both',
-  amountWeighted: true,
-  predict,
-  support: () => [],
-  placesPerTurn: 100,
-  elevation: elevation(() => true),
-  items: { isoscape_id: 'x' },
-  software: 'test',
-  ...change,
-});
-
-async function readBands(path: string): Promise<Float32Array[]> {
-  const tiff = await fromFile(path);
-  const bands = await (await tiff.getImage()).readRasters();
-  await tiff.close();
-  return Array.from(bands as unknown as Float32Array[]);
+/** What the library answers for a cell of a frame in degrees, computed by itself. */
+function exactCell(frame: GridFrame, cells: FrameElevation, k: number) {
+  const lonDeg = frame.originX + ((k % frame.width) + 0.5) * frame.cellWidth;
+  const latDeg = frame.originY - (Math.floor(k / frame.width) + 0.5) * frame.cellHeight;
+  return exactPlace(lonDeg, latDeg, cells, k);
 }
 
-describe('makeGrid', () => {
-  it('predicts each land cell at its centre and elevation, nodata elsewhere', async () => {
+function exactPlace(lonDeg: number, latDeg: number, { elevationM, varianceM2 }: FrameElevation, k: number) {
+  const places = createPlaces(1);
+  const out = createPredictions(1);
+  places.lonDeg[0] = lonDeg;
+  places.latDeg[0] = latDeg;
+  places.elevationM[0] = elevationM[k]!;
+  places.elevationVarM2[0] = varianceM2[k]!;
+  predictPlaces(isoscape, places, out, { plugIn: true });
+  const [o, h, varO, varH, cov] = [out.d18O[0]!, out.d2H[0]!, out.varD18O[0]!, out.varD2H[0]!, out.cov[0]!];
+  const seD = Math.sqrt(dExcessVariance(varO, cov, varH));
+  return [o, Math.sqrt(varO), h, Math.sqrt(varH), h - 8 * o, seD, cov] as const;
+}
+
+async function elevationsOf({ frame, ground }: GridRequest): Promise<FrameElevation> {
+  const grid = await openElevation(ground.elevationPath);
+  const { width, height } = frame;
+  const cells = await grid.sampleFrame(frame, { firstColumn: 0, firstRow: 0, width, height });
+  await grid.close();
+  return cells;
+}
+
+describe('makeGrid predicts each cell at its centre and elevation', () => {
+  it.each([
+    [
+      'within the tolerance and half a rounding step',
+      {},
+      [0.00525, 0.00525, 0.042, 0.042, 0.046, 0.042, 0.1],
+    ],
+    // float32 keeps 24 bits, and d-excess is made of two rounded ones
+    ['exactly', { exact: true, fullPrecision: true }, [1e-6, 1e-7, 1e-5, 1e-6, 2e-5, 1e-6, 1e-6]],
+  ] as const)('%s', async (_, change, allowed) => {
     const path = newPath();
-    const isLand = (lonDeg: number, latDeg: number) => lonDeg > 3 || latDeg > 52;
-    const made = request('-10,40,20,60', 0.1, { elevation: elevation(isLand) });
-    const result = await makeGrid(path, made);
+    const asked = await request(change);
+    const result = await makeGrid(path, asked, { threads: 0 });
     const bands = await readBands(path);
+    const cells = await elevationsOf(asked);
     let land = 0;
-    for (let k = 0; k < 300 * 200; k++) {
-      const lonDeg = -10 + ((k % 300) + 0.5) * 0.1;
-      const latDeg = 60 - (Math.floor(k / 300) + 0.5) * 0.1;
-      if (!isLand(lonDeg, latDeg)) {
-        if (!bands.every((band) => band[k] === -9999)) expect(bands.map((band) => band[k])).toEqual([]);
+    for (let k = 0; k < 1600; k++) {
+      const values = bands.map((band) => band[k]!);
+      if (Number.isNaN(cells.elevationM[k])) {
+        expect(values).toEqual(new Array(7).fill(-9999));
         continue;
       }
       land++;
-      const elevationM = 100 + latDeg;
-      const varD18O = 0.5 + elevationM / 2000;
-      const expected = [lonDeg / 10, Math.sqrt(varD18O), latDeg + elevationM / 1000, Math.sqrt(30)];
-      expected.forEach((value, b) => {
-        if (Math.abs(bands[b]![k]! - value) > 1e-5) expect(bands[b]![k]).toBeCloseTo(value, 5);
-      });
+      const exact = exactCell(asked.frame, cells, k);
+      for (const [b, value] of values.entries()) {
+        if (Math.abs(value - exact[b]!) > allowed[b]!) expect([k, b, value]).toEqual([k, b, exact[b]]);
+      }
     }
-    expect(result).toEqual({
-      width: 300,
-      height: 200,
-      landCells: land,
-      impossibleCells: 0,
-      flaggedCells: 0,
-      flags: {},
-    });
+    expect(land).toBeGreaterThan(900);
+    expect(result.counts).toMatchObject({ predicted: land, withoutElevation: 1600 - land, sea: 0 });
   });
 
-  it('has a d-excess of its own pair and an error of the joint error', async () => {
+  it('in metres of a projected system too', async () => {
     const path = newPath();
-    await makeGrid(path, request('-10,40,20,60', 0.5));
-    const [d18O, seO, d2H, seH, dexcess, seD, cov] = await readBands(path);
-    for (let k = 0; k < d18O!.length; k++) {
-      expect(dexcess![k]).toBe(Math.fround(d2H![k]! - 8 * d18O![k]!));
-      const variance = seH![k]! ** 2 + 64 * seO![k]! ** 2 - 16 * cov![k]!;
-      expect(seD![k]).toBeCloseTo(Math.sqrt(variance), 4);
-    }
-  });
-
-  it('asks over the antimeridian with longitudes in the usual range', async () => {
-    const path = newPath();
-    await makeGrid(path, request('170,-25,-170,-10', 1));
-    const [d18O] = await readBands(path);
-    expect(Array.from(d18O!.slice(0, 20), (v) => Math.round(v * 100) / 10)).toEqual([
-      170.5, 171.5, 172.5, 173.5, 174.5, 175.5, 176.5, 177.5, 178.5, 179.5, -179.5, -178.5, -177.5, -176.5,
-      -175.5, -174.5, -173.5, -172.5, -171.5, -170.5,
-    ]);
-    const tiff = await fromFile(path);
-    expect((await tiff.getImage()).getBoundingBox()).toEqual([170, -25, 190, -10]);
-    await tiff.close();
-  });
-
-  it('gives the same file however many places go at once', async () => {
-    const [a, b] = [newPath(), newPath()];
-    await makeGrid(a, request('-10,40,20,60', 0.25, { placesPerTurn: 7 }));
-    await makeGrid(b, request('-10,40,20,60', 0.25, { placesPerTurn: 4096 }));
-    expect(await readBands(a)).toEqual(await readBands(b));
-  });
-
-  it('writes the two bands of a one-isotope isoscape', async () => {
-    for (const isotopes of ['d18O', 'd2H'] as const) {
-      const path = newPath();
-      await makeGrid(path, request('0,0,2,2', 1, { isotopes }));
-      const tiff = await fromFile(path);
-      const image = await tiff.getImage();
-      expect(image.getSamplesPerPixel()).toBe(2);
-      expect(await image.getGDALMetadata(0)).toMatchObject({ DESCRIPTION: isotopes, UNITTYPE: 'permil' });
-      expect(await image.getGDALMetadata(1)).toMatchObject({ DESCRIPTION: `${isotopes}_se` });
-      await tiff.close();
-      const [value] = await readBands(path);
-      expect(value![0]).toBeCloseTo(isotopes === 'd18O' ? 0.05 : 1.5 + 0.1015, 5);
-    }
-  });
-
-  it('leaves cells nodata whose value cannot be precipitation, and counts them', async () => {
-    const path = newPath();
-    const tooHigh = (places: Places, out: Predictions) => {
-      predict(places, out);
-      for (let i = 0; i < places.count; i++) if (places.lonDeg[i]! > 7) out.d18O[i] = 36.4;
-    };
-    const result = await makeGrid(path, request('0,0,10,10', 1, { predict: tooHigh, support: () => ['x'] }));
-    expect(result).toMatchObject({ landCells: 70, impossibleCells: 30, flaggedCells: 70, flags: { x: 70 } });
+    const frame = { crs: 'EPSG:32725', bounds: '400000,4800000,600000,5000000', cell: '10000' };
+    const asked = await request({ exact: true, fullPrecision: true }, frame);
+    await makeGrid(path, asked, { threads: 0 });
     const bands = await readBands(path);
-    for (let k = 0; k < 100; k++) {
-      for (const band of bands) expect(band[k] === -9999).toBe(k % 10 >= 7);
+    const cells = await elevationsOf(asked);
+    const utm = proj4('+proj=utm +zone=25 +south +datum=WGS84 +units=m');
+    let land = 0;
+    for (let k = 0; k < 400; k++) {
+      if (Number.isNaN(cells.elevationM[k])) continue;
+      land++;
+      const centre = [405_000 + 10_000 * (k % 20), 4_995_000 - 10_000 * Math.floor(k / 20)];
+      const [lonDeg, latDeg] = utm.inverse(centre) as [number, number];
+      const exact = exactPlace(lonDeg, latDeg, cells, k);
+      for (const [b, value] of exact.entries()) expect(Math.abs(bands[b]![k]! - value)).toBeLessThan(2e-5);
     }
-    const one = await makeGrid(newPath(), request('0,0,10,10', 1, { predict: tooHigh, isotopes: 'd2H' }));
-    expect(one).toMatchObject({ landCells: 100, impossibleCells: 0 });
+    expect(land).toBeGreaterThan(300);
   });
 
-  it('says amount-weighted only where that is known', async () => {
-    for (const amountWeighted of [true, false]) {
+  it('with the sea at 0 m where the elevations know it, or without it', async () => {
+    const area = { bounds: '-9.5,36,3.5,44', cell: '0.5' };
+    const ground = (landOnly: boolean) => ({
+      elevationPath: bundledElevationPath(),
+      seaAtZero: true,
+      landOnly,
+    });
+    const [all, land] = [newPath(), newPath()];
+    const base = await gridRequest(isoscape, bundledElevationPath(), area);
+    const asked = (landOnly: boolean) => ({
+      ...base,
+      exact: true,
+      fullPrecision: true,
+      ground: { ...base.ground, ...ground(landOnly) },
+    });
+    const whole = await makeGrid(all, asked(false), { threads: 0 });
+    const dry = await makeGrid(land, asked(true), { threads: 0 });
+    expect(whole.counts).toMatchObject({ predicted: 26 * 16, sea: 0 });
+    expect(dry.counts.predicted + dry.counts.sea).toBe(26 * 16);
+    expect(dry.counts.sea).toBeGreaterThan(100);
+    const [everywhere, dryOnly] = [await readBands(all), await readBands(land)];
+    const cells = await elevationsOf(asked(false));
+    for (let k = 0; k < 26 * 16; k++) {
+      if (cells.ground[k] === 0) {
+        expect(dryOnly.map((band) => band[k])).toEqual(everywhere.map((band) => band[k]));
+        continue;
+      }
+      expect(dryOnly[0]![k]).toBe(-9999);
+      const atSea = { ...cells, elevationM: new Float32Array(416), varianceM2: new Float32Array(416) };
+      expect(Math.abs(everywhere[0]![k]! - exactCell(base.frame, atSea, k)[0])).toBeLessThan(1e-5);
+    }
+    expect(await readItems(all)).toMatchObject({ sea: 'predicted at 0 m' });
+    expect(await readItems(land)).toMatchObject({ sea: 'nodata' });
+  });
+});
+
+describe('makeGrid rounds', () => {
+  it('to powers of two below the tolerance, with a d-excess exact to the last bit', async () => {
+    const path = newPath();
+    await makeGrid(path, await request(), { threads: 0 });
+    const [d18O, seO, d2H, seH, dexcess, seD, cov] = await readBands(path);
+    let land = 0;
+    for (let k = 0; k < d18O!.length; k++) {
+      if (d18O![k] === -9999) continue;
+      land++;
+      for (const value of [d18O![k]! * 2048, seO![k]! * 2048]) expect(Number.isInteger(value)).toBe(true);
+      for (const value of [d2H![k]!, seH![k]!, seD![k]!, cov![k]!]) {
+        expect(Number.isInteger(value * 256)).toBe(true);
+      }
+      expect(dexcess![k]).toBe(d2H![k]! - 8 * d18O![k]!); // in float64: no rounding at all
+    }
+    expect(land).toBeGreaterThan(900);
+    expect((await readItems(path)).rounding).toContain('2^-11');
+  });
+
+  it('finer where the tolerance is smaller, and not at all on request', async () => {
+    const [fine, full, usual] = [newPath(), newPath(), newPath()];
+    const options = { threads: 0 };
+    await makeGrid(fine, await request({ tolerance: 0.001 }), options);
+    await makeGrid(full, await request({ fullPrecision: true }), options);
+    await makeGrid(usual, await request(), options);
+    const share = async (path: string, steps: number) => {
+      const values = (await readBands(path))[0]!.filter((value) => value !== -9999);
+      return values.filter((value) => Number.isInteger(value * steps)).length / values.length;
+    };
+    expect(await share(fine, 2 ** 13)).toBe(1);
+    expect(await share(fine, 2 ** 12)).toBeLessThan(0.7);
+    expect(await share(full, 2 ** 13)).toBeLessThan(0.2);
+    expect(await readItems(full)).toMatchObject({ rounding: 'none: full precision' });
+    expect((await readItems(fine)).tolerance).toMatch(/^0\.001 permil .* 0\.008 permil/);
+    const [a, b] = [await readBands(full), await readBands(usual)];
+    expect(Math.max(...a[0]!.map((value, k) => Math.abs(value - b[0]![k]!)))).toBeLessThanOrEqual(2 ** -12);
+  });
+});
+
+describe('makeGrid writes the bands asked for', () => {
+  it('in their own order, d-excess of a rounded pair that is not written itself', async () => {
+    const [all, some] = [newPath(), newPath()];
+    await makeGrid(all, await request(), { threads: 0 });
+    await makeGrid(some, await request({ bands: ['dexcess', 'd18O_se'] }), { threads: 0 });
+    expect(await readBandNames(some)).toEqual(['d18O_se', 'dexcess']);
+    const [of, picked] = [await readBands(all), await readBands(some)];
+    expect(picked).toEqual([of[1], of[4]]);
+  });
+
+  it('with support as bits that createSupport would set', async () => {
+    const path = newPath();
+    const asked = await request({ support: true }, { bounds: '-36,-52,-24,-40', cell: '0.5' });
+    const result = await makeGrid(path, asked, { threads: 0 });
+    const bands = await readBands(path);
+    expect(bands).toHaveLength(8);
+    const support = createSupport(isoscape);
+    const cells = await elevationsOf(asked);
+    let flagged = 0;
+    for (let k = 0; k < bands[7]!.length; k++) {
+      if (bands[0]![k] === -9999) {
+        expect(bands[7]![k]).toBe(-9999);
+        continue;
+      }
+      const lonDeg = -36 + ((k % 24) + 0.5) * 0.5;
+      const latDeg = -40 - (Math.floor(k / 24) + 0.5) * 0.5;
+      const flags = support.flags(lonDeg, latDeg, cells.elevationM[k]!, false);
+      const bits = flags.reduce((sum, flag) => sum + 2 ** SUPPORT_FLAGS.indexOf(flag), 0);
+      expect(bands[7]![k]).toBe(bits);
+      if (bits > 0) flagged++;
+    }
+    expect(flagged).toBeGreaterThan(5);
+    expect(result.counts.flagged).toBe(flagged);
+    expect((await readItems(path)).support_bits).toMatch(
+      /^1 outside-hull, 2 far-from-stations, 4 elevation-/,
+    );
+  });
+
+  it('one a file, all of them or none', async () => {
+    const path = newPath();
+    const [whole, name] = [newPath(), path.slice(0, -4)];
+    await makeGrid(whole, await request(), { threads: 0 });
+    const result = await makeGrid(path, await request({ split: true, support: true }), { threads: 0 });
+    const names = ['d18O', 'd18O_se', 'd2H', 'd2H_se', 'dexcess', 'dexcess_se', 'cov_d18O_d2H', 'support'];
+    expect(result.files.map((file) => file.path)).toEqual(names.map((band) => `${name}.${band}.tif`));
+    const bands = await readBands(whole);
+    for (const [b, band] of names.slice(0, 7).entries()) {
+      expect(await readBands(`${name}.${band}.tif`)).toEqual([bands[b]]);
+      expect(await readBandNames(`${name}.${band}.tif`)).toEqual([band]);
+    }
+    expect(unfinished()).toEqual([]);
+  });
+
+  it('all of one isotope: two, and support', async () => {
+    const csv = inventNetwork({ stationCount: 40, seed: 7 }).csv;
+    for (const isotope of ['d18O', 'd2H'] as const) {
+      const one = await fitCsv(csv, { family: 'exponential', terms: ['elevation'] }, { isotopes: isotope });
       const path = newPath();
-      await makeGrid(path, request('0,0,2,2', 1, { amountWeighted }));
-      const tiff = await fromFile(path);
-      const said = JSON.stringify(await (await tiff.getImage()).getGDALMetadata(2));
-      expect(said).toContain('δ2H, ');
-      expect(said).toContain('mean of local rain, VSMOW-SLAP');
-      expect(said.includes('amount-weighted')).toBe(amountWeighted);
-      await tiff.close();
+      const asked = await gridRequest(one, landPath, AREA, { support: true });
+      const { check } = await makeGrid(path, asked, { threads: 0 });
+      expect(await readBandNames(path)).toEqual([isotope, `${isotope}_se`, 'support']);
+      const [value, se] = await readBands(path);
+      const k = 20 * 40 + 20;
+      expect(value![k]).toBeLessThan(0);
+      expect(se![k]).toBeGreaterThan(0);
+      expect(check.cells).toBeGreaterThan(100);
+      const items = await readItems(path);
+      expect(items[`largest_error_${isotope}`]).toBeDefined();
+      expect(items.largest_error_dexcess).toBeUndefined();
     }
   });
 
-  it('counts the land cells that lean on little, by reason', async () => {
-    const support = (lonDeg: number, latDeg: number) => [
-      ...(lonDeg > 5 ? ['far-from-stations'] : []),
-      ...(latDeg > 5 ? ['outside-hull'] : []),
-    ];
-    const result = await makeGrid(newPath(), request('0,0,10,10', 1, { support }));
-    expect(result).toMatchObject({
-      landCells: 100,
-      flaggedCells: 75,
-      flags: { 'far-from-stations': 50, 'outside-hull': 50 },
+  it.each([
+    [['d180'], 'no band is called "d180" here; there are d18O, d18O_se, d2H'],
+    [[], 'there are d18O'],
+  ])('and refuses %j', async (bands, message) => {
+    const asked = await request({ bands });
+    await expect(makeGrid(newPath(), asked, { threads: 0 })).rejects.toMatchObject({
+      code: 'BAND_UNKNOWN',
+      message: expect.stringContaining(message),
     });
   });
+});
 
-  it('tells how far it is, up to the last cell', async () => {
-    const seen: number[] = [];
-    await makeGrid(newPath(), request('0,0,10,10', 0.1), {
-      onProgress: (done, total) => {
-        expect(total).toBe(10_000);
-        seen.push(done);
-      },
-    });
-    expect(seen.length).toBeGreaterThan(50);
-    expect(seen).toEqual([...seen].sort((a, b) => a - b));
-    expect(seen.at(-1)).toBe(10_000);
+describe('makeGrid says how accurate it is', () => {
+  it('by computing a sample of cells again, the same one every time', async () => {
+    const [a, b] = [newPath(), newPath()];
+    const options = { threads: 0 };
+    const first = await makeGrid(a, await request(), options);
+    const second = await makeGrid(b, await request(), options);
+    expect(first.check).toEqual(second.check);
+    expect(first.check.cells).toBeGreaterThan(100);
+    expect(first.check.cells).toBeLessThan(256);
+    for (const [name, most] of Object.entries(first.check.largest)) {
+      expect(most).toBeLessThanOrEqual(name.startsWith('d18O') ? 0.005 : 0.04);
+    }
+    const items = await readItems(a);
+    expect(Number(items.largest_error_d2H_se)).toBeCloseTo(first.check.largest.d2H_se, 6);
+    expect(items.checked_cells).toBe(String(first.check.cells));
+  });
+
+  it('or that every cell was computed', async () => {
+    const path = newPath();
+    await makeGrid(path, await request({ exact: true }), { threads: 0 });
+    const items = await readItems(path);
+    expect(items.tolerance).toBe('0 (every cell computed exactly)');
+    expect(items.checked_cells).toBeUndefined();
   });
 });
 
 describe('makeGrid leaves no file', () => {
-  it('where no cell has an elevation', async () => {
-    const path = newPath();
-    const job = makeGrid(path, request('0,0,2,2', 1, { elevation: elevation(() => false) }));
-    await expect(job).rejects.toMatchObject({ code: 'GRID_EMPTY' });
-    expect(existsSync(path)).toBe(false);
-  });
+  const rejected = async (asked: GridRequest, path = newPath()) => {
+    const failure = makeGrid(path, asked, { threads: 0 });
+    await expect(failure).rejects.toMatchObject({ code: 'GRID_EMPTY' });
+    expect(unfinished()).toEqual([]);
+    return failure.catch((error: Error) => error.message);
+  };
 
-  it('where no value can be precipitation', async () => {
-    const path = newPath();
-    const tooLow = (places: Places, out: Predictions) => {
-      predict(places, out);
-      out.d2H.fill(-700);
-    };
-    const job = makeGrid(path, request('0,0,2,2', 1, { predict: tooLow }));
-    await expect(job).rejects.toMatchObject({
-      code: 'GRID_EMPTY',
-      message: expect.stringMatching(/all 4 land cells/),
+  it('where no cell has a value, and says why', async () => {
+    expect(await rejected(await request({}, { bounds: '0,0,5,5', cell: '1' }))).toContain(
+      '25 have no elevation in land.tif',
+    );
+    const base = await gridRequest(isoscape, bundledElevationPath(), {
+      bounds: '-34,-50,-26,-42',
+      cell: '1',
     });
-    expect(existsSync(path)).toBe(false);
+    const sea = { ...base, ground: { ...base.ground, seaAtZero: true, landOnly: true } };
+    expect(await rejected(sea)).toContain('64 are sea in elevation-5min.tif');
   });
 
-  it('where the model fails, or the call is stopped', async () => {
+  it('where a mask lies elsewhere: before any work', async () => {
+    const maskPath = join(folder, 'elsewhere.geojson');
+    const ring = [
+      [10, 10],
+      [20, 10],
+      [20, 20],
+      [10, 10],
+    ];
+    writeFileSync(maskPath, JSON.stringify({ type: 'Polygon', coordinates: [ring] }));
+    const asked = await request();
+    const masked = { ...asked, ground: { ...asked.ground, maskPath } };
+    await expect(makeGrid(newPath(), masked, { threads: 0 })).rejects.toMatchObject({ code: 'MASK_OUTSIDE' });
+  });
+
+  it('where the call is stopped, and keeps what was there', async () => {
     const path = newPath();
-    const failing = () => {
-      throw new Error('no answer');
-    };
-    await expect(makeGrid(path, request('0,0,2,2', 1, { predict: failing }))).rejects.toThrow('no answer');
+    writeFileSync(path, 'older');
     const stop = new AbortController();
-    const onProgress = (done: number) => {
-      if (done > 500) stop.abort();
-    };
-    const job = makeGrid(path, request('0,0,10,10', 0.1), { signal: stop.signal, onProgress });
+    const onProgress = () => stop.abort();
+    const asked = await request({}, { bounds: '-34,-50,-26,-42', cell: '0.02' });
+    const job = makeGrid(path, asked, { threads: 0, signal: stop.signal, onProgress });
     await expect(job).rejects.toMatchObject({ name: 'AbortError' });
-    expect(existsSync(path)).toBe(false);
-    expect(readdirSync(folder).filter((name) => name.endsWith('.tmp'))).toEqual([]);
+    expect(readdirSync(folder)).toContain(path.slice(folder.length + 1));
+    expect(unfinished()).toEqual([]);
+    await expect(makeGrid(path, asked, { signal: AbortSignal.abort() })).rejects.toMatchObject({
+      name: 'AbortError',
+    });
+  });
+});
+
+describe('makeGrid', () => {
+  it('takes a mask: cells whose centre lies outside have no value', async () => {
+    const maskPath = join(folder, 'mask.geojson');
+    const ring = [
+      [-32, -48],
+      [-29, -48],
+      [-29, -45],
+      [-32, -45],
+      [-32, -48],
+    ];
+    writeFileSync(maskPath, JSON.stringify({ type: 'Polygon', coordinates: [ring] }));
+    const asked = await request();
+    const [all, some] = [newPath(), newPath()];
+    await makeGrid(all, asked, { threads: 0 });
+    const masked = { ...asked, ground: { ...asked.ground, maskPath } };
+    const { counts } = await makeGrid(some, masked, { threads: 0 });
+    expect(counts.masked).toBe(1600 - 15 * 15);
+    const [a, b] = [await readBands(all), await readBands(some)];
+    for (let k = 0; k < 1600; k++) {
+      const [x, y] = [(k % 40) * 0.2 - 34 + 0.1, -42 - 0.1 - Math.floor(k / 40) * 0.2];
+      const inside = x > -32 && x < -29 && y > -48 && y < -45;
+      expect(b[0]![k]).toBe(inside ? a[0]![k] : -9999);
+    }
+    expect((await readItems(some)).mask).toMatch(/^mask\.geojson sha256:[0-9a-f]{12}$/);
+  });
+
+  it('takes the cells of another raster, and leaves nodata where it has none', async () => {
+    const path = newPath();
+    const asked = await request({}, { like: landPath });
+    const { width, height, counts } = await makeGrid(path, asked, { threads: 0 });
+    expect([width, height]).toEqual([100, 100]);
+    const [[land], [d18O]] = [await readBands(landPath), await readBands(path)];
+    for (let k = 0; k < 10_000; k++) expect(d18O![k] === -9999).toBe(land![k] === -9999);
+    expect(counts.masked).toBe(land!.filter((value) => value === -9999).length);
+  });
+
+  it('leaves cells nodata whose value cannot be precipitation, and counts them', async () => {
+    const csv = inventNetwork({ stationCount: 40, seed: 7 }).csv;
+    const steep = await fitCsv(csv, { ...HELD, terms: ['zonal1', 'elevation'] });
+    const path = newPath();
+    const frame = { bounds: '10,-35,40,70', cell: '5' };
+    const asked = await gridRequest(steep, bundledElevationPath(), frame, { exact: true });
+    const { counts } = await makeGrid(path, asked, { threads: 0 });
+    expect(counts.impossible).toBeGreaterThan(0);
+    expect(counts.predicted).toBeGreaterThan(0);
+    const bands = await readBands(path);
+    expect(bands[0]!.filter((value) => value !== -9999)).toHaveLength(counts.predicted);
+    expect(Math.max(...bands[0]!)).toBeLessThanOrEqual(25);
+    expect(Math.max(...bands[2]!)).toBeLessThanOrEqual(160);
+  });
+
+  it('tells how far it is, up to the last cell', async () => {
+    const seen: number[] = [];
+    await makeGrid(newPath(), await request({ exact: true }, { bounds: AREA.bounds, cell: '0.02' }), {
+      threads: 0,
+      onProgress: (done, total) => {
+        expect(total).toBe(160_000);
+        seen.push(done);
+      },
+    });
+    expect(seen.length).toBeGreaterThanOrEqual(3); // four blocks of 256 × 256 cut short
+    expect(seen.at(-1)).toBe(160_000);
+    expect([...seen].sort((a, b) => a - b)).toEqual(seen);
+  });
+
+  it('says amount-weighted only where that is known', async () => {
+    const path = newPath();
+    await makeGrid(path, await request(), { threads: 0 });
+    const items = await readItems(path);
+    expect(items).toMatchObject({
+      isoscape_id: isoscape.id,
+      target: 'site',
+      parameters: 'plug-in',
+      stations: '40',
+      elevation_source: expect.stringMatching(/^land\.tif sha256:[0-9a-f]{12}$/),
+      tool_version: 'test',
+    });
   });
 });
