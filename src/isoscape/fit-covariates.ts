@@ -62,7 +62,7 @@ function spread(name: string, values: Float64Array): { centre: number; scale: nu
   }
   throw new RainprintError(
     'COVARIATE_CONSTANT',
-    `the covariate "${name}" has the same value (${low}) at all ${values.length} stations: its effect cannot be told`,
+    `the covariate "${name}" has the same value (${Number(low.toPrecision(9))}) at all ${values.length} stations: its effect cannot be told`,
     { covariate: name, value: low },
   );
 }
