@@ -37,10 +37,12 @@ dense_kriging <- function(family, parameters, x, F, z, error, x0, F0, target) {
 }
 
 # Mean over the points of one block: averaged c0 and f0, mean of all pairwise covariances, no nugget.
-dense_block <- function(family, parameters, x, F, z, error, points, f0) {
+dense_block <- function(family, parameters, x, F, z, error, points, f0,
+                        weights = rep(1 / nrow(points), nrow(points))) {
   V <- parameters$sill * correlation(family, cross_distance(x, x), parameters$range) + diag(parameters$nugget + error)
-  c0 <- rowMeans(parameters$sill * correlation(family, cross_distance(x, points), parameters$range))
-  c00 <- mean(parameters$sill * correlation(family, cross_distance(points, points), parameters$range))
+  c0 <- parameters$sill * correlation(family, cross_distance(x, points), parameters$range) %*% weights
+  c00 <- parameters$sill *
+    sum(outer(weights, weights) * correlation(family, cross_distance(points, points), parameters$range))
   Vi <- solve(V)
   A <- solve(t(F) %*% Vi %*% F)
   beta <- A %*% t(F) %*% Vi %*% z

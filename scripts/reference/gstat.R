@@ -52,14 +52,16 @@ kriging_case <- function(name, family, parameters, x, F, z, error, x0, F0) {
   result
 }
 
-# One block: its discretising points as offsets from the first one; the trend at the block is the points' mean.
-block_case <- function(name, family, parameters, x, F, z, error, points, F0) {
-  f0 <- colMeans(F0)
+# One block: its discretising points as offsets from the first one; the trend at the block is the points' weighted mean.
+block_case <- function(name, family, parameters, x, F, z, error, points, F0,
+                       weights = rep(1 / nrow(points), nrow(points))) {
+  f0 <- colSums(weights * F0)
   centre <- spatial(points[1, , drop = FALSE], t(f0))
   offsets <- as.data.frame(sweep(points, 2, points[1, ]))
   names(offsets) <- c("x", "y", "z")[seq_len(ncol(points))]
+  offsets$weights <- weights
   got <- gstat_predict(gstat_model(family, parameters, "Nug"), spatial(x, F, z), error, centre, trend_formula(F), offsets)
-  dense <- dense_block(family, parameters, x, F, z, error, points, f0)
+  dense <- dense_block(family, parameters, x, F, z, error, points, f0, weights)
   check(dense$mean, got$var1.pred, paste(name, "block mean"))
   check(dense$variance, got$var1.var, paste(name, "block variance"))
   list(name = name, family = family, rangeKm = parameters$range, sill = parameters$sill, nugget = parameters$nugget,
@@ -88,12 +90,20 @@ colorado_cases <- list(
 square <- expand.grid(lonDeg = seq(-106.5, -106, length.out = 8), latDeg = seq(38.5, 39, length.out = 8))
 nearest <- apply(cross_distance(chord_positions_km(square$lonDeg, square$latDeg), x0), 1, which.min)
 square$elevationM <- at$elevationM[nearest]
-colorado_block <- function(name, family, parameters)
+colorado_block <- function(name, family, parameters, ...)
   block_case(name, family, parameters, x, trend(st), st$value, st$errorVariance,
-             chord_positions_km(square$lonDeg, square$latDeg), trend(square))
+             chord_positions_km(square$lonDeg, square$latDeg), trend(square), ...)
+# Weights of 128ths (exact in single precision) that grow from west to east: the sum is 1.
+square_weights <- rep(c(0.5, 0.5, 0.5, 0.5, 1, 1, 2, 2), 8) / 64
+stopifnot(sum(square_weights) == 1)
 colorado_blocks <- list(
   colorado_block("colorado-block-exponential", "exponential", list(range = 120, sill = 1.4, nugget = 0.35)),
   colorado_block("colorado-block-spherical", "spherical", list(range = 260, sill = 1.1, nugget = 0.4)))
+colorado_weighted_blocks <- list(
+  colorado_block("colorado-block-weighted-exponential", "exponential", list(range = 120, sill = 1.4, nugget = 0.35),
+                 square_weights),
+  colorado_block("colorado-block-weighted-matern32", "matern32", list(range = 90, sill = 1.2, nugget = 0.45),
+                 square_weights))
 
 # Meuse: planar distances in km; trend 1 and the square root of the distance to the river, or 1 alone.
 ms <- read_columns("meuse.json", "stations")
@@ -122,5 +132,7 @@ write_reference(list(
   colorado = colorado_cases,
   meuse = meuse_cases,
   coloradoBlock = list(lonDeg = square$lonDeg, latDeg = square$latDeg, elevationM = square$elevationM),
-  blocks = colorado_blocks), "gstat.json")
+  blocks = colorado_blocks,
+  blockWeights = square_weights,
+  weightedBlocks = colorado_weighted_blocks), "gstat.json")
 cat("largest difference from dense algebra:", worst, "\n")

@@ -38,7 +38,8 @@ export interface AreaPrediction {
  * `predictJoint`: an elevation grid holds cell means, about which relief averages out inside each cell, so a bound that
  * takes it for shared by the whole area would count an error that is not there.
  *
- * @throws PARAMETER_OUT_OF_RANGE for weights without a positive sum, COVARIATE_MISSING as predictPlaces
+ * @throws PARAMETER_OUT_OF_RANGE for weights without a positive sum, COVARIATE_MISSING as predictPlaces,
+ *   NETWORK_TOO_LARGE as predictJoint
  */
 export function predictArea(
   isoscape: Isoscape,
@@ -48,7 +49,8 @@ export function predictArea(
   const trend = points.trend ?? points;
   requireCovariates(isoscape, points.places);
   requireCovariates(isoscape, trend.places);
-  const ready = prepareIsoscape(isoscape, options.plugIn ?? false);
+  // All stations: an average over an area has no one place whose nearest stations could stand for them.
+  const ready = prepareIsoscape(isoscape, options.plugIn ?? false, 'all');
   const { count, lonDeg, latDeg } = points.places;
   const positions = positionsOnSphereKm(lonDeg.subarray(0, count), latDeg.subarray(0, count));
   const weights = shares(points);

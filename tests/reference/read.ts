@@ -54,6 +54,9 @@ export interface Gstat {
   readonly meuse: KrigingCase[];
   readonly coloradoBlock: { lonDeg: number[]; latDeg: number[]; elevationM: number[] };
   readonly blocks: (FixedModel & { knownErrors: boolean; mean: number; se: number })[];
+  /** The same points under `blockWeights`, whose sum is 1. */
+  readonly blockWeights: number[];
+  readonly weightedBlocks: (FixedModel & { knownErrors: boolean; mean: number; se: number })[];
 }
 
 export interface NlmeCase extends FixedModel {
