@@ -5,7 +5,7 @@ import { type Cap, distanceTo } from './lattice.js';
  * A station is near where its own kink, the cone of its covariance, lies within half a radius of a tile's cap: then
  * what is left on the tile is analytic and Chebyshev interpolation gains a factor of about 3 a node.
  */
-const MARGIN = 0.5;
+const MARGIN = 0.35;
 
 /**
  * Indices (ascending) of the stations a tile must take exactly. A spherical covariance has a second kink where its

@@ -22,8 +22,8 @@ export interface TileExpansions {
 }
 
 /** Nodes along a side: on tiles expanded from stations, and from their parents (smaller, hence smoother). */
-const ROOT_ORDER = 12;
-const CHILD_ORDERS = [8, 12] as const;
+const ROOT_ORDER = 9;
+const CHILD_ORDERS = [6, 9] as const;
 /** Expanding wider caps costs more nodes than it saves. */
 const MAX_ROOT_RADIUS_KM = 3400;
 /** With more near stations than this a tile is quartered before its systems are solved. */
