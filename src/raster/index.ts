@@ -3,6 +3,7 @@ export { bundledElevationPath } from './bundled-elevation.js';
 export { type BandSummary, type CogSpec, type CogSummary, type CogWriter, openCog } from './cog-assembler.js';
 export { blockTransferList, type EncodedBlock, encodeCogBlock } from './cog-block.js';
 export type { CogFormat, Reduction, SampleType } from './cog-format.js';
+export type { RampKind } from './colour-ramp.js';
 export { type CovariateGrid, type CovariateSample, openCovariate } from './covariate-grid.js';
 export { type CrsForward, forwardOf } from './crs-forward.js';
 export {
@@ -28,3 +29,5 @@ export { type CellWindow, cellCentres, type GridFrame } from './grid-frame.js';
 export { roundToPowerOfTwo } from './power-of-two-rounding.js';
 export type { LonLatGrid } from './raster-placement.js';
 export { openRasterValues, type RasterValues } from './raster-values.js';
+export { type StacFile, type StacItem, type StacItemInput, type StacStyle, stacItem } from './stac-item.js';
+export { type BandStyle, bandStyle, colourMapText, sldText } from './style.js';
