@@ -8,7 +8,6 @@ import { openElevation } from '../../src/raster/index.js';
 import { runCaptured } from '../support/captured-run.js';
 import { writeInventedLand } from '../support/invented-land.js';
 import { inventNetwork } from '../support/invented-network.js';
-import { describeWithTool, runTool } from '../support/outside-tool.js';
 import { scratchFolder } from '../support/scratch.js';
 
 const folder = scratchFolder();
@@ -247,29 +246,5 @@ describe('rainprint grid', () => {
     const run = await runCaptured(['grid', '--help']);
     expect(run.exitCode).toBe(0);
     expect(run.stdout).toContain('rainprint grid rain.isoscape.json --bounds');
-  });
-});
-
-// Source: GDAL's own reader.
-describeWithTool('gdallocationinfo', 'rainprint grid, read by GDAL', () => {
-  it('shows seven named bands and the same values', async () => {
-    const path = newPath();
-    await grid(path, '--bounds', '-33,-48,-28,-43', '--cell', '0.25');
-    const bands = await readBands(path);
-    const info = JSON.parse(runTool('gdalinfo', '-json', path)) as {
-      bands: { description: string; unit: string; noDataValue: number }[];
-    };
-    expect(info.bands.map((band) => `${band.description} ${band.unit} ${band.noDataValue}`)).toEqual([
-      'd18O permil -9999',
-      'd18O_se permil -9999',
-      'd2H permil -9999',
-      'd2H_se permil -9999',
-      'dexcess permil -9999',
-      'dexcess_se permil -9999',
-      'cov_d18O_d2H permil2 -9999',
-    ]);
-    const said = runTool('gdallocationinfo', '-valonly', '-wgs84', path, '-30.6', '-45.4').trim().split('\n');
-    const k = Math.floor((-43 + 45.4) / 0.25) * 20 + Math.floor((-30.6 + 33) / 0.25);
-    expect(said.map((text) => Math.fround(Number(text)))).toEqual(bands.map((band) => band[k]));
   });
 });
