@@ -8,7 +8,7 @@ export interface BlockPosition {
 /**
  * All blocks of a grid in Z-order (Morton 1966): the four children of an overview tile follow each other, at every
  * level. A writer fed in about this order holds back a few blocks a level only, however wide the grid is; fed row by
- * row it holds back about a third of a row of blocks.
+ * row it holds back about half a row of blocks.
  */
 export function* blockOrder(format: CogFormat): Generator<BlockPosition> {
   const { tilesAcross, tilesDown } = cogLevels(format)[0]!;

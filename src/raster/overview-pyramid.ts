@@ -19,7 +19,7 @@ type Half = readonly Float32Array[];
 
 /**
  * Builds the overviews from the halves of the level below, in whatever order they come. A half is let go as soon as its
- * tile is made: in Z-order three of them wait at each level, row by row about a third of a row of blocks does.
+ * tile is made: in Z-order three of them wait at each level, row by row about half a row of blocks does.
  */
 export class OverviewPyramid {
   readonly #waiting: readonly Map<number, WaitingTile>[];
