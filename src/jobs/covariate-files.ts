@@ -6,6 +6,8 @@ import { type CovariateGrid, openCovariate } from '../raster/covariate-grid.js';
 export interface CovariateFile {
   readonly name: string;
   readonly path: string;
+  /** Known from an earlier opening of the file, in another thread: its bytes are then not hashed again. */
+  readonly source?: string;
 }
 
 /** The same with the raster open. */
@@ -17,7 +19,10 @@ export interface OpenCovariate extends CovariateFile {
 export async function openCovariates(files: readonly CovariateFile[]): Promise<OpenCovariate[]> {
   const opened: OpenCovariate[] = [];
   try {
-    for (const file of files) opened.push({ ...file, grid: await openCovariate(file.path) });
+    for (const file of files) {
+      const { path, source } = file;
+      opened.push({ ...file, grid: await openCovariate(path, source === undefined ? null : { source }) });
+    }
     return opened;
   } catch (error) {
     await closeCovariates(opened);

@@ -1,4 +1,6 @@
 import { RainprintError } from '../errors.js';
+import { cellIndex } from './axis-footprints.js';
+import { boxMean, cellAt } from './elevation-cells.js';
 import { frameSampler } from './elevation-frame.js';
 import { readRasterWindow } from './elevation-window.js';
 import type { CellWindow, GridFrame } from './grid-frame.js';
@@ -30,9 +32,6 @@ export interface CovariateGrid {
   sampleFrame(frame: GridFrame, window: CellWindow): Promise<{ readonly values: Float32Array }>;
   close(): Promise<void>;
 }
-
-/** In cells: far below any size that matters, far above the rounding of degrees divided by cell sizes. */
-const ROUNDING = 1e-9;
 
 /**
  * Opens a covariate raster: one band, north-up, longitude/latitude or a projected CRS. Throws what `openRaster` throws,
@@ -71,43 +70,14 @@ async function sampleAt(
   const { x, y } = placement.position(lonDeg, latDeg);
   const { width, height } = blocks.file;
   if (!(x >= 0 && x < width && y >= 0 && y < height)) return { kind: 'outside' };
-  const cell = (column: number, row: number) => cellValue(blocks, placement.goesRound, column, row);
-  // A position on a border belongs to the cell to its right or below, however it was rounded.
-  const own = await cell(Math.floor(x + ROUNDING), Math.floor(y + ROUNDING));
-  if (Number.isNaN(own)) return { kind: 'nodata' };
-  const left = Math.floor(x - 0.5);
-  const top = Math.floor(y - 0.5);
-  const right = x - 0.5 - left;
-  const down = y - 0.5 - top;
-  let weighted = 0;
-  let weights = 0;
-  for (const [column, row, weight] of [
-    [left, top, (1 - right) * (1 - down)],
-    [left + 1, top, right * (1 - down)],
-    [left, top + 1, (1 - right) * down],
-    [left + 1, top + 1, right * down],
-  ] as const) {
-    const value = weight > 0 ? await cell(column, row) : Number.NaN;
-    if (Number.isNaN(value)) continue;
-    weighted += weight * value;
-    weights += weight;
-  }
-  return { kind: 'value', value: weights > 0 ? weighted / weights : own };
-}
-
-/** NaN for nodata and beyond the raster's edge; columns go round where the raster does. */
-async function cellValue(
-  blocks: RasterBlocks,
-  goesRound: boolean,
-  column: number,
-  row: number,
-): Promise<number> {
-  const { width, height } = blocks.file;
-  const stored = goesRound ? ((column % width) + width) % width : column;
-  if (stored < 0 || stored >= width || row < 0 || row >= height) return Number.NaN;
-  const out = new Float32Array(1);
-  await blocks.readWindow(stored, row, 1, 1, out, 0, 1);
-  return out[0];
+  const firstColumn = Math.floor(x - 0.5);
+  const firstRow = Math.floor(y - 0.5);
+  const range = { firstColumn, lastColumn: firstColumn + 1, firstRow, lastRow: firstRow + 1 };
+  const cells = await readRasterWindow(blocks, range, placement.goesRound);
+  // A box as large as a cell shares with the four cells around its centre what bilinear interpolation weighs them by.
+  if (Number.isNaN(cellAt(cells, cellIndex(x), cellIndex(y)))) return { kind: 'nodata' };
+  const { elevationM } = boxMean(cells, { left: x - 0.5, right: x + 0.5, top: y - 0.5, bottom: y + 0.5 });
+  return { kind: 'value', value: elevationM };
 }
 
 /** Stops at the first block with a value, from the middle of the raster on: margins are where nodata stands. */
