@@ -5,6 +5,7 @@ import {
   covarianceBlock,
   crossProduct,
   type DenseWorkspace,
+  inverseFromCholesky,
   solveLowerInPlace,
   solveLowerManyInPlace,
   solveLowerTransposedInPlace,
@@ -30,6 +31,7 @@ export class FieldSystem {
   readonly #factor: Float64Array;
   readonly #whitenedTrend: Float64Array;
   readonly #trendFactor: Float64Array;
+  #isInverted = false;
 
   /**
    * @param trendFactor  Cholesky factor of FᵀV⁻¹F of a whole network of which `geometry` holds some stations only: the
@@ -187,6 +189,29 @@ export class FieldSystem {
 
   get family(): CovarianceFamily {
     return this.#family;
+  }
+
+  /**
+   * Columns of L⁻¹ as rows, `indices.length` × n. The whole inverse is made once and lives in the upper triangle of the
+   * factor's matrix, which nothing else reads.
+   */
+  inverseColumns(indices: Int32Array): Float64Array {
+    const { n } = this.#geometry;
+    if (!this.#isInverted) {
+      const transposed = new Float64Array(n * n);
+      inverseFromCholesky(this.#factor, n, transposed, new Float64Array(n * n));
+      for (let i = 0; i < n; i++) {
+        this.#factor.set(transposed.subarray(i * n + i + 1, (i + 1) * n), i * n + i + 1);
+      }
+      this.#isInverted = true;
+    }
+    const rows = new Float64Array(indices.length * n);
+    for (let k = 0; k < indices.length; k++) {
+      const j = indices[k];
+      rows[k * n + j] = 1 / this.#factor[j * n + j];
+      rows.set(this.#factor.subarray(j * n + j + 1, (j + 1) * n), k * n + j + 1);
+    }
+    return rows;
   }
 
   /** L of V = LLᵀ: n × n, row-major, lower triangle; not to be written. */

@@ -11,16 +11,19 @@ import {
   predictField,
 } from '../geostat/index.js';
 import type { FieldNode, FittedField, Isoscape } from './isoscape.js';
-import { requireFactor } from './large-network.js';
+import { conditioningFor, requireFactor } from './large-network.js';
 import { trendRows } from './trend.js';
 
 /** Geometry of an isoscape's stations and trend. */
 export function isoscapeGeometry(isoscape: Isoscape): FieldGeometry {
   const { stations, terms } = isoscape;
+  const positionsKm = positionsOnSphereKm(stations.lonDeg, stations.latDeg);
   return createGeometry(
-    positionsOnSphereKm(stations.lonDeg, stations.latDeg),
+    positionsKm,
     trendRows(isoscape, stations),
     terms.length + 1,
+    'euclidean',
+    conditioningFor(isoscape.likelihood, positionsKm),
   );
 }
 
@@ -83,6 +86,15 @@ export class FieldAverage {
   /** Nugget averaged over the nodes: added to a signal variance for the target `site`. */
   get nugget(): number {
     return this.#nodes.reduce((sum, node) => sum + node.weight * node.nugget, 0);
+  }
+
+  /** Weights of the nodes; they sum to 1. */
+  get weights(): readonly number[] {
+    return this.#nodes.map(({ weight }) => weight);
+  }
+
+  get geometry(): FieldGeometry {
+    return this.#geometry;
   }
 
   /** GLS coefficients averaged over the nodes (p). */

@@ -5,5 +5,7 @@ import type { Surface, SurfaceGrid, SurfaceOptions } from './surface.js';
 
 /** Lays an isoscape over a grid: interpolating under the tolerance, or every cell exactly. */
 export function createSurface(isoscape: Isoscape, grid: SurfaceGrid, options: SurfaceOptions): Surface {
-  return options.exact ? createExactSurface(isoscape, options) : new NearFarSurface(isoscape, grid, options);
+  return options.exact
+    ? createExactSurface(isoscape, options, 'all')
+    : new NearFarSurface(isoscape, grid, options);
 }

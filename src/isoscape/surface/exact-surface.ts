@@ -1,4 +1,5 @@
 import type { Isoscape } from '../isoscape.js';
+import type { StationsUsed } from '../large-network.js';
 import { createPlaces, createPredictions, type Places, type Predictions } from '../places.js';
 import { predictPlaces } from '../predict.js';
 import type { Surface, SurfaceOptions } from './surface.js';
@@ -6,10 +7,14 @@ import type { Surface, SurfaceOptions } from './surface.js';
 /** Cells handed to the predictor at once: enough to pay for loading a factor, few enough to keep memory flat. */
 const CELLS_AT_ONCE = 8192;
 
-/** Every wanted cell by itself: what the interpolating surface is measured against. */
+/**
+ * Every wanted cell by itself: what the interpolating surface is measured against.
+ * @param stations  which enter a prediction: `all` for `--exact`
+ */
 export function createExactSurface(
   isoscape: Isoscape,
   options: Pick<SurfaceOptions, 'plugIn' | 'target'>,
+  stations: StationsUsed,
 ): Surface {
   const { plugIn, target } = options;
   return {
@@ -18,7 +23,7 @@ export function createExactSurface(
       const flush = () => {
         const part = gather(places, cells);
         const answers = createPredictions(cells.length);
-        predictPlaces(isoscape, part, answers, { plugIn, target });
+        predictPlaces(isoscape, part, answers, { plugIn, target, stations });
         scatter(answers, cells, out);
         cells.length = 0;
       };
@@ -32,10 +37,13 @@ export function createExactSurface(
 }
 
 /** The places of some cells, in their order. */
-export function gather(places: Places, cells: readonly number[]): Places {
-  const part = createPlaces(cells.length);
+function gather(places: Places, cells: readonly number[]): Places {
+  const part = createPlaces(cells.length, places.covariates.length);
   for (const name of ['lonDeg', 'latDeg', 'elevationM', 'elevationVarM2'] as const) {
     for (let j = 0; j < cells.length; j++) part[name][j] = places[name][cells[j]];
+  }
+  for (const [c, column] of part.covariates.entries()) {
+    for (let j = 0; j < cells.length; j++) column[j] = places.covariates[c][cells[j]];
   }
   return part;
 }

@@ -1,4 +1,3 @@
-import { positionsOnSphereKm } from '../../geostat/index.js';
 import type { Isoscape } from '../isoscape.js';
 import type { Places, Predictions } from '../places.js';
 import { prepareIsoscape } from '../predict.js';
@@ -22,7 +21,8 @@ const MAX_LEAF_NEAR = 24;
 const MIN_LEAF_SIZE = 8;
 /** A tile with so few near stations serves its quarters as well as expansions of their own. */
 const FEW_NEAR = 10;
-const CACHE_BYTES = 128 * 2 ** 20;
+/** Tiles wider than a window are met again by the windows beside it. */
+const CACHE_BYTES = 48 * 2 ** 20;
 
 /** What is known of a tile: its expansions, or that it has none good enough. */
 interface KnownTile {
@@ -50,11 +50,10 @@ export class NearFarSurface implements Surface {
     const scratch = new Scratch();
     const { tolerance, target } = options;
     const points = new PointPredictor(isoscape, ready, facts, trend, { tolerance, site: target === 'site' });
-    const stationsKm = positionsOnSphereKm(isoscape.stations.lonDeg, isoscape.stations.latDeg);
     this.#grid = grid;
-    this.#expander = new Expander(ready, facts, stationsKm, grid.locate, points, scratch);
+    this.#expander = new Expander(ready, facts, grid.locate, points, scratch);
     this.#leaves = new LeafEvaluator(facts, trend, points, grid.locate, scratch);
-    this.#exact = createExactSurface(isoscape, options);
+    this.#exact = createExactSurface(isoscape, options, 'auto');
     this.#isAverage = facts.length > ready.fields.length;
   }
 

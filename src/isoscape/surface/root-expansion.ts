@@ -1,15 +1,12 @@
 import type { FieldData, FieldSystem } from '../../geostat/index.js';
 import { covarianceBlock, type DenseWorkspace, multiplyInto } from '../../kernels/index.js';
+import type { PreparedNode } from '../field-average.js';
 import { type Expansion, farFunctionCount, type NearStations, type Products } from './expansion.js';
 import type { Lattice, Rect } from './lattice.js';
 import type { SystemFacts } from './system-facts.js';
 
-/** A factorised system with its data, as `FieldAverage.preparedNodes` gives it. */
-export interface RootSystem {
-  readonly system: FieldSystem;
-  readonly own: FieldData;
-  readonly other: FieldData | null;
-}
+/** A factorised system with its data. */
+export type RootSystem = Pick<PreparedNode, 'system' | 'own' | 'other'>;
 
 export interface RootExpansion {
   readonly expansion: Expansion;
@@ -19,7 +16,7 @@ export interface RootExpansion {
 
 /**
  * Expands one system on a tile from its stations: the only place where triangular systems are solved, one right-hand
- * side a Chebyshev node, a test point, and a near station.
+ * side a Chebyshev node or test point.
  *
  * @param workspace  holds the system's factor in `matrix`
  */
@@ -35,7 +32,7 @@ export function expandFromStations(
 ): RootExpansion {
   const n = system.stationCount;
   const p = system.trendCount;
-  const { inverseColumns, near } = solveNear(system, own, other, nearIndices, workspace);
+  const { inverseColumns, near } = gatherNear(system, own, other, nearIndices);
   const functionCount = farFunctionCount(p) + near.count;
   const values = new Float64Array(functionCount * nodes.count);
   const exact = {
@@ -70,26 +67,16 @@ export function expandFromStations(
 }
 
 /** Columns of L⁻¹ belonging to near stations (J × n), and what follows: A_JJ, (AF)_J, weights. */
-function solveNear(
+function gatherNear(
   system: FieldSystem,
   own: FieldData,
   other: FieldData | null,
   indices: Int32Array,
-  workspace: DenseWorkspace,
 ): { inverseColumns: Float64Array; near: NearStations } {
   const n = system.stationCount;
   const p = system.trendCount;
   const count = indices.length;
-  const inverseColumns = new Float64Array(count * n);
-  for (let first = 0; first < count; first += workspace.width) {
-    const width = Math.min(workspace.width, count - first);
-    workspace.block.fill(0, 0, n * width);
-    for (let j = 0; j < width; j++) workspace.block[indices[first + j] * width + j] = 1;
-    workspace.solveLower(width);
-    for (let j = 0; j < width; j++) {
-      for (let i = 0; i < n; i++) inverseColumns[(first + j) * n + i] = workspace.block[i * width + j];
-    }
-  }
+  const inverseColumns = system.inverseColumns(indices);
   const transposed = new Float64Array(n * count);
   for (let j = 0; j < count; j++) {
     for (let i = 0; i < n; i++) transposed[i * count + j] = inverseColumns[j * n + i];

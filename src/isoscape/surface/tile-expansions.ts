@@ -1,4 +1,6 @@
+import { stationsAround } from '../../geostat/index.js';
 import { createDenseWorkspace, type DenseWorkspace } from '../../kernels/index.js';
+import type { PreparedNode } from '../field-average.js';
 import type { PreparedIsoscape } from '../predict.js';
 import { chebyshevNodes } from './chebyshev.js';
 import { expandFromParent } from './child-expansion.js';
@@ -6,7 +8,7 @@ import { type Expansion, evaluateExpansion, latticeRows, type Products } from '.
 import { type Cap, capOf, type Lattice, latticeIn, type Rect } from './lattice.js';
 import { nearStations } from './near-set.js';
 import type { PointPredictor } from './point-predictor.js';
-import { expandFromStations } from './root-expansion.js';
+import { expandFromStations, type RootExpansion } from './root-expansion.js';
 import type { Scratch } from './scratch.js';
 import type { Locate } from './surface.js';
 import type { SystemFacts } from './system-facts.js';
@@ -34,6 +36,12 @@ const MAX_ROOT_NEAR = 320;
  */
 const ROOT_SHARE = 0.15;
 const CHILD_SHARE = 0.05;
+/**
+ * Stations around a root tile of a large network, and how far they must reach in radii of its cap: beyond that the
+ * ones between screen the rest.
+ */
+const LOCAL_STATIONS = 800;
+const LOCAL_REACH = 2;
 /** Right-hand sides solved together. */
 const COLUMNS_AT_ONCE = 128;
 /** Test points: corners, edges and the inside, between the nodes of the orders used. */
@@ -47,20 +55,17 @@ export class Expander {
   readonly #locate: Locate;
   readonly #points: PointPredictor;
   readonly #scratch: Scratch;
-  readonly #stationsKm: Float64Array;
   #workspace: DenseWorkspace | null = null;
 
   constructor(
     ready: PreparedIsoscape,
     facts: readonly SystemFacts[],
-    stationsKm: Float64Array,
     locate: Locate,
     points: PointPredictor,
     scratch: Scratch,
   ) {
     this.#ready = ready;
     this.#facts = facts;
-    this.#stationsKm = stationsKm;
     this.#locate = locate;
     this.#points = points;
     this.#scratch = scratch;
@@ -70,29 +75,45 @@ export class Expander {
   fromStations(rect: Rect): TileExpansions | null {
     const cap = capOf(rect, this.#locate);
     if (cap === null || cap.radiusKm > MAX_ROOT_RADIUS_KM) return null;
+    const stations = this.#stationsFor(cap);
+    if (stations === null) return null;
     const near = this.#facts.map(({ family, rangeKm }) =>
-      nearStations(cap, this.#stationsKm, family, rangeKm),
+      nearStations(cap, stations.positionsKm, family, rangeKm),
     );
     const many = near.some(({ length }) => length > MAX_ROOT_NEAR);
     if (many && Math.max(rect.width, rect.height) > 1) return null;
     const nodes = this.#nodes(rect, ROOT_ORDER);
     const tests = latticeIn(rect, TESTS_ACROSS, TESTS_DOWN, this.#locate);
     if (!nodes.onEarth || !tests.onEarth) return null;
-    const expansions: Expansion[] = [];
-    const exact: Products[] = [];
-    let system = 0;
-    for (const field of this.#ready.fields) {
-      for (const node of field.preparedNodes()) {
-        const workspace = this.#load(node.system.factor, node.system.stationCount);
-        const facts = this.#facts[system];
-        const made = expandFromStations(node, facts, rect, ROOT_ORDER, nodes, tests, near[system], workspace);
-        expansions.push(made.expansion);
-        exact.push(made.exact);
-        system++;
-      }
+    const roots: RootExpansion[] = [];
+    for (const node of stations.nodes()) {
+      const workspace = this.#load(node.system.factor, node.system.stationCount);
+      const s = roots.length;
+      roots.push(
+        expandFromStations(node, this.#facts[s], rect, ROOT_ORDER, nodes, tests, near[s], workspace),
+      );
     }
-    const made = describe(rect, ROOT_ORDER, expansions);
-    return this.#missed(tests, made, (s) => exact[s]) <= ROOT_SHARE ? made : null;
+    const made = describe(
+      rect,
+      ROOT_ORDER,
+      roots.map(({ expansion }) => expansion),
+    );
+    return this.#missed(tests, made, (s) => roots[s].exact) <= ROOT_SHARE ? made : null;
+  }
+
+  /** All stations, or in a large network those around the cap; null where the cap is too wide for them. */
+  #stationsFor(cap: Cap): RootStations | null {
+    const { fields } = this.#ready;
+    const { geometry } = fields[0];
+    if (!fields[0].usesNearest) {
+      return { positionsKm: geometry.positionsKm, nodes: () => chain(fields.map((f) => f.preparedNodes())) };
+    }
+    const { stations, reachKm } = stationsAround(geometry, cap.centreKm, LOCAL_STATIONS);
+    if (reachKm < LOCAL_REACH * cap.radiusKm) return null;
+    return {
+      positionsKm: stations.geometry.positionsKm,
+      nodes: () => chain(fields.map((field) => field.localNodes(stations))),
+    };
   }
 
   /** From a tile around this one; null where no order of nodes meets the tolerance. */
@@ -135,10 +156,20 @@ export class Expander {
   }
 
   #load(factor: Float64Array, n: number): DenseWorkspace {
-    this.#workspace ??= createDenseWorkspace(n, COLUMNS_AT_ONCE);
+    if (this.#workspace?.n !== n) this.#workspace = createDenseWorkspace(n, COLUMNS_AT_ONCE);
     this.#workspace.matrix.set(factor);
     return this.#workspace;
   }
+}
+
+/** Stations a root tile is expanded from, and every system over them, in the order of the facts. */
+interface RootStations {
+  readonly positionsKm: Float64Array;
+  nodes(): Iterable<PreparedNode>;
+}
+
+function* chain<T>(parts: readonly Iterable<T>[]): Generator<T> {
+  for (const part of parts) yield* part;
 }
 
 function describe(rect: Rect, order: number, bySystem: readonly Expansion[]): TileExpansions {
