@@ -7,7 +7,8 @@ import { collected } from './repeated-options.js';
 const HELP = `
 Bands: d18O, d18O_se, d2H, d2H_se, dexcess, dexcess_se, cov_d18O_d2H (one isotope: its value and
 standard error) and, with --support, the reasons why a cell leans on little, as bits. Float32, nodata
--9999, a Cloud-Optimized GeoTIFF. Beside FILE.tif stands FILE.tif.run.json: what would run it again.
+-9999, a Cloud-Optimized GeoTIFF. Beside FILE.tif stand FILE.tif.run.json (what would run it again),
+FILE.tif.stac.json (a STAC item for catalogues) and FILE.BAND.sld (colours of each band).
 
 Each cell is predicted at its centre, at its own elevation. With the elevation grid that comes with
 the program the sea is predicted at 0 m, unless --land leaves it out; with --elevation FILE a cell

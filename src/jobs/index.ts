@@ -17,6 +17,14 @@ export {
   MAX_FRAME_SIDE,
   planFrame,
 } from './grid-frame.js';
+export {
+  gridStacItem,
+  gridStyles,
+  type SideFile,
+  stacPath,
+  styledBands,
+  stylePath,
+} from './grid-side-files.js';
 export type { GroundNames } from './grid-sources.js';
 export type { GroundPaths } from './grid-work.js';
 export {

@@ -10,8 +10,14 @@ import {
   type FramePlan,
   type GridRequest,
   type GridResult,
+  gridStacItem,
+  gridStyles,
   makeGrid,
   planFrame,
+  type SideFile,
+  stacPath,
+  styledBands,
+  stylePath,
 } from '../../jobs/index.js';
 import { bundledElevationPath } from '../../raster/index.js';
 import type { CliContext } from '../context.js';
@@ -49,7 +55,7 @@ export async function runGrid(
   const finished = await runInterruptible(async (signal) => {
     await checkOutputs(call);
     const result = await writeGrid(call, signal, context);
-    await writeOutput(recordPath(options), gridRecord(call, result, context.toolVersion));
+    for (const { path, text } of sideFiles(call, result, context)) await writeOutput(path, text);
     for (const line of gridReport(options, result)) context.stderr.write(`rainprint: ${line}\n`);
   });
   if (finished) return;
@@ -100,6 +106,17 @@ function edgesText({ originX, originY, width, height, cellWidth, cellHeight }: G
   return edges.map(coordinateText).join(',');
 }
 
+function sideFiles(call: GridCall, result: GridResult, context: CliContext): SideFile[] {
+  const { options, isoscape, request } = call;
+  const createdAt = new Date().toISOString();
+  const item = gridStacItem(options.outputPath, isoscape, request.frame, result, createdAt);
+  return [
+    { path: recordPath(options), text: gridRecord(call, result, context.toolVersion) },
+    { path: stacPath(options.outputPath), text: `${JSON.stringify(item, null, 2)}\n` },
+    ...gridStyles(options.outputPath, result),
+  ];
+}
+
 function recordPath({ outputPath }: GridOptions): string {
   return `${outputPath}.run.json`;
 }
@@ -118,7 +135,8 @@ async function checkOutputs({ isoscapePath, isoscape, options, request, plan }: 
   const bands = chooseBands(availableBands(isoscape), request.bands, request.support);
   const { outputPath, split } = options;
   const paths = split ? bands.map(({ name }) => bandPath(outputPath, name)) : [outputPath];
-  for (const path of [...paths, recordPath(options)]) {
+  const styles = styledBands(bands).map(({ name }) => stylePath(outputPath, name));
+  for (const path of [...paths, recordPath(options), stacPath(outputPath), ...styles]) {
     const output = await openOutput(path, inputs);
     await output.abort();
   }
