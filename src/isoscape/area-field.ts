@@ -1,10 +1,5 @@
-import {
-  correlationFunction,
-  distanceKm,
-  type FieldData,
-  type FieldSystem,
-  PLACES_PER_BLOCK,
-} from '../geostat/index.js';
+import { type FieldData, type FieldSystem, PLACES_PER_BLOCK } from '../geostat/index.js';
+import { covarianceBlock } from '../kernels/index.js';
 import type { FieldAverage } from './field-average.js';
 import type { FieldColumns } from './predict.js';
 
@@ -62,20 +57,22 @@ function averagedCovariances(
   return averaged;
 }
 
-/** Σ w_j w_k C(x_j, x_k), no nugget. */
+/** Σ w_j w_k C(x_j, x_k), no nugget: a block of columns at a time, down to its own rows; what is above counts twice. */
 function withinCovariance(system: FieldSystem, positions: Float64Array, weights: Float64Array): number {
   const { sill, rangeKm } = system.parameters;
-  const { metric } = system.geometry;
-  const rho = correlationFunction(system.family).correlation;
+  const m = weights.length;
+  const block = new Float64Array(m * PLACES_PER_BLOCK);
   let sum = 0;
-  for (let j = 0; j < weights.length; j++) {
-    let row = 0;
-    for (let k = 0; k < j; k++) {
-      row += weights[k] * rho(distanceKm(positions, j, positions, k, metric) / rangeKm);
+  for (let first = 0; first < m; first += PLACES_PER_BLOCK) {
+    const count = Math.min(PLACES_PER_BLOCK, m - first);
+    covarianceBlock(system.family, sill, rangeKm, positions, first + count, positions, first, count, block);
+    for (let j = 0; j < first + count; j++) {
+      let row = 0;
+      for (let k = 0; k < count; k++) row += weights[first + k] * block[j * count + k];
+      sum += (j < first ? 2 : 1) * weights[j] * row;
     }
-    sum += weights[j] * (2 * row + weights[j]);
   }
-  return sill * sum;
+  return sum;
 }
 
 function averagedMean(data: FieldData, c: Float64Array, trendRow: Float64Array): number {

@@ -10,7 +10,7 @@ export interface AreaPart {
   readonly areaKm2: number;
 }
 
-/** Points that stand for equal areas of their part; weights are shares of the whole area. */
+/** Points that stand for nearly equal areas; weights are the shares of the whole area they stand for, their sum 1. */
 export interface AreaLattice {
   readonly count: number;
   readonly lonDeg: Float64Array;
@@ -40,58 +40,69 @@ export function ringAreaKm2(ring: readonly (readonly number[])[]): number {
 
 /**
  * About `count` points over an area: rows at equal steps of sin(latitude), so that a length along a row stands for the
- * same area in each, and points at equal steps along all rows laid end to end. Every part has a point at least.
- * The same call gives the same points.
+ * same area in each; along a row, points at the middles of equal steps, as many as its length asks for, one at least.
+ * Every part has a point at least. The same call gives the same points.
  * @throws AREA_INVALID where a part is thinner than a degree has digits
  */
 export function areaLattice(parts: readonly AreaPart[], count: number): AreaLattice {
   const total = parts.reduce((sum, part) => sum + part.areaKm2, 0);
-  const counts = parts.map(({ areaKm2 }) => Math.max(1, Math.round((count * areaKm2) / total)));
-  const size = counts.reduce((a, b) => a + b, 0);
-  const lonDeg = new Float64Array(size);
-  const latDeg = new Float64Array(size);
-  const weights = new Float64Array(size);
-  let first = 0;
-  for (const [k, part] of parts.entries()) {
-    const end = first + counts[k];
-    layPoints(part, lonDeg.subarray(first, end), latDeg.subarray(first, end));
-    weights.fill(part.areaKm2 / total / counts[k], first, end);
-    first = end;
+  const points: LatticePoints = { lonDeg: [], latDeg: [], weights: [] };
+  for (const part of parts) {
+    const share = part.areaKm2 / total;
+    layPoints(part, Math.max(1, Math.round(count * share)), share, points);
   }
-  return { count: size, lonDeg, latDeg, weights };
+  return {
+    count: points.lonDeg.length,
+    lonDeg: Float64Array.from(points.lonDeg),
+    latDeg: Float64Array.from(points.latDeg),
+    weights: Float64Array.from(points.weights),
+  };
+}
+
+interface LatticePoints {
+  readonly lonDeg: number[];
+  readonly latDeg: number[];
+  readonly weights: number[];
 }
 
 interface Row {
   readonly latDeg: number;
   /** Sorted longitudes at which the row enters and leaves the polygon by turns. */
   readonly crossings: Float64Array;
+  readonly lengthDeg: number;
 }
 
-function layPoints(part: AreaPart, lonDeg: Float64Array, latDeg: Float64Array): void {
-  const count = lonDeg.length;
+/** Adds about `count` points of one part, whose weights sum to `share`. */
+function layPoints(part: AreaPart, count: number, share: number, points: LatticePoints): void {
   const rows = rowsOf(part, rowCount(part, count));
-  let length = 0;
-  for (const { crossings } of rows) {
-    for (let i = 0; i + 1 < crossings.length; i += 2) length += crossings[i + 1] - crossings[i];
-  }
+  const length = rows.reduce((sum, { lengthDeg }) => sum + lengthDeg, 0);
   if (!(length > 0)) {
     throw new RainprintError(
       'AREA_INVALID',
       `the polygon between latitudes ${part.southDeg} and ${part.northDeg} is too thin for a point to lie in it`,
     );
   }
-  const step = length / count;
-  let passed = 0;
-  let next = 0;
   for (const row of rows) {
-    for (let i = 0; i + 1 < row.crossings.length; i += 2) {
-      const [from, to] = [row.crossings[i], row.crossings[i + 1]];
-      for (; next < count && (next + 0.5) * step <= passed + to - from; next++) {
-        lonDeg[next] = wrapped(from + (next + 0.5) * step - passed);
-        latDeg[next] = row.latDeg;
-      }
-      passed += to - from;
+    if (row.lengthDeg === 0) continue;
+    const inRow = Math.max(1, Math.round((count * row.lengthDeg) / length));
+    layRow(row, inRow, points);
+    for (let k = 0; k < inRow; k++) points.weights.push((share * row.lengthDeg) / length / inRow);
+  }
+}
+
+/** The pieces of a row inside the polygon count as laid end to end. */
+function layRow({ latDeg, crossings, lengthDeg }: Row, inRow: number, points: LatticePoints): void {
+  const step = lengthDeg / inRow;
+  let piece = 0;
+  let passed = 0;
+  for (let k = 0; k < inRow; k++) {
+    const along = (k + 0.5) * step;
+    while (piece + 3 < crossings.length && along > passed + crossings[piece + 1] - crossings[piece]) {
+      passed += crossings[piece + 1] - crossings[piece];
+      piece += 2;
     }
+    points.lonDeg.push(wrapped(crossings[piece] + along - passed));
+    points.latDeg.push(latDeg);
   }
 }
 
@@ -112,7 +123,10 @@ function rowsOf({ edges, southDeg, northDeg }: AreaPart, rowCount: number): Row[
       // half open, so that a vertex between two edges counts once
       if (y0 <= latDeg !== y1 <= latDeg) crossings.push(x0 + ((latDeg - y0) / (y1 - y0)) * (x1 - x0));
     }
-    return { latDeg, crossings: Float64Array.from(crossings).sort() };
+    const sorted = Float64Array.from(crossings).sort();
+    let lengthDeg = 0;
+    for (let i = 0; i + 1 < sorted.length; i += 2) lengthDeg += sorted[i + 1] - sorted[i];
+    return { latDeg, crossings: sorted, lengthDeg };
   });
 }
 

@@ -50,10 +50,16 @@ function checkedPolygons(geometry: Geometry, where: string): MaskPolygon[] {
   }
 }
 
+/** Share of its bounding box, in degrees squared turned into km², below which an area is a line drawn with rounding. */
+const LEAST_BOX_SHARE = 1e-12;
+const KM_A_DEGREE = 111.2;
+
 function partOf(polygon: MaskPolygon, rings: Position[][], where: string): AreaPart {
   const [outer, ...holes] = rings.map(ringAreaKm2);
   const areaKm2 = outer - holes.reduce((sum, hole) => sum + hole, 0);
-  if (areaKm2 > 0) return { ...polygon, areaKm2 };
+  const { westDeg, southDeg, eastDeg, northDeg } = polygon;
+  const boxKm2 = (eastDeg - westDeg) * (northDeg - southDeg) * KM_A_DEGREE ** 2;
+  if (areaKm2 > LEAST_BOX_SHARE * boxKm2) return { ...polygon, areaKm2 };
   throw invalid(`${where} has a polygon without an area (${outer} km² and holes of ${outer - areaKm2} km²)`);
 }
 
