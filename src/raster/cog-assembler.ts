@@ -3,7 +3,7 @@ import { type BandStatistics, mergeStatistics, NO_STATISTICS, standardDeviation 
 import type { EncodedBlock } from './cog-block.js';
 import { cogDataBytes, placeTiles, writeCogBytes } from './cog-data.js';
 import { type CogFormat, type CogLevel, checkCogFormat, cogLevels } from './cog-format.js';
-import { type CogContent, encodeCogHead, type TilePlaces } from './cog-head.js';
+import { type CogContent, encodeCogHead, type TilePlaces, tiffKindFor } from './cog-head.js';
 import type { BandDescription } from './gdal-metadata.js';
 import type { NorthUpTransform, WritableCrs } from './geo-keys.js';
 import { OverviewPyramid } from './overview-pyramid.js';
@@ -57,9 +57,6 @@ export interface BandSummary {
   readonly mean: number;
   readonly sd: number;
 }
-
-/** Classic TIFF counts bytes in 32 bits. */
-const MAX_CLASSIC_BYTES = 2 ** 32 - 1;
 
 /**
  * Begins a Cloud-Optimized GeoTIFF (OGC 21-026). Tiles wait compressed in a nameless file beside `path`, so memory stays
@@ -170,12 +167,10 @@ class CogAssembler implements CogWriter {
       offsets: new Float64Array(sizes.length),
       byteCounts: sizes,
     }));
-    const dataBytes = cogDataBytes(this.spool);
-    const fits = encodeCogHead(content, unplaced, 'classic').length + dataBytes <= MAX_CLASSIC_BYTES;
-    const bigTiff = this.spec.bigTiff === 'always' || !fits;
-    const kind = bigTiff ? 'big' : 'classic';
+    const classicBytes = encodeCogHead(content, unplaced, 'classic').length + cogDataBytes(this.spool);
+    const kind = this.spec.bigTiff === 'always' ? 'big' : tiffKindFor(classicBytes);
     const start = encodeCogHead(content, unplaced, kind).length;
-    return { head: encodeCogHead(content, placeTiles(this.spool, start), kind), bigTiff };
+    return { head: encodeCogHead(content, placeTiles(this.spool, start), kind), bigTiff: kind === 'big' };
   }
 }
 

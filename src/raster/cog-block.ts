@@ -1,4 +1,5 @@
 import { deflateSync, type ZlibOptions } from 'node:zlib';
+import { RainprintError } from '../errors.js';
 import { type BandStatistics, bandStatistics, NO_STATISTICS } from './band-statistics.js';
 import type { CogFormat } from './cog-format.js';
 import { halveBand } from './overview-reduction.js';
@@ -26,6 +27,12 @@ export function encodeCogBlock(
   height: number,
   format: CogFormat,
 ): EncodedBlock {
+  if (bands.length !== format.reductions.length || bands.some((band) => band.length !== width * height)) {
+    throw new RainprintError(
+      'INTERNAL',
+      `a block of ${width} × ${height} cells must come as ${format.reductions.length} bands of that size`,
+    );
+  }
   const statistics = bands.map(bandStatistics);
   if (statistics.every(({ count }) => count === 0)) {
     return { tile: emptyTile(format).slice(), half: [], statistics: bands.map(() => NO_STATISTICS) };

@@ -28,6 +28,14 @@ const SAMPLE_LAYOUT = {
   float32: { bits: 32, sampleFormat: 3, predictor: 3 },
 } as const satisfies Record<SampleType, { bits: number; sampleFormat: number; predictor: number }>;
 
+/** Classic TIFF counts bytes in 32 bits. */
+const MAX_CLASSIC_BYTES = 2 ** 32 - 1;
+
+/** What a file of so many bytes, counted as a classic one, must be. */
+export function tiffKindFor(classicBytes: number): TiffKind {
+  return classicBytes <= MAX_CLASSIC_BYTES ? 'classic' : 'big';
+}
+
 /** "II", the version, and the start of the first directory. */
 const HEADER_SIZE_BYTES = { classic: 8, big: 16 } as const;
 

@@ -109,8 +109,6 @@ function fileAsset({ href, title, bands, sampleType, nodata, summary }: StacFile
     roles: ['data'],
     'file:size': summary.sizeBytes,
     'file:checksum': `1220${summary.sha256}`, // multihash: SHA-256, 32 bytes
-    data_type: sampleType,
-    nodata,
     bands: bands.map(({ name, unit, longName }, b) => ({
       name,
       description: longName,

@@ -3,7 +3,7 @@ import { existsSync, mkdirSync, readdirSync, readFileSync, writeFileSync } from 
 import type { FileHandle } from 'node:fs/promises';
 import { join } from 'node:path';
 import { afterAll, describe, expect, it } from 'vitest';
-import { openCog } from '../../src/raster/index.js';
+import { encodeCogBlock, openCog } from '../../src/raster/index.js';
 import { writeWhole } from '../../src/raster/whole-write.js';
 import { scratchFolder } from '../support/scratch.js';
 import { blocksOf, cogSpec, format, seededBands, writeCog } from './seeded-cog.js';
@@ -70,6 +70,13 @@ describe('openCog, used wrongly', () => {
     await expect(cog.add(1, 0, other)).rejects.toMatchObject(refused);
     await expect(cog.finish({})).rejects.toThrow('block 1, 0 never came');
     expect(readdirSync(place)).toEqual([]);
+  });
+
+  it('refuses to encode other bands than the format has', () => {
+    const cells = new Float32Array(6);
+    for (const some of [[cells], [cells, new Float32Array(5)], [cells, cells, cells]]) {
+      expect(() => encodeCogBlock(some, 3, 2, f)).toThrow('2 bands of that size');
+    }
   });
 
   it.each([
