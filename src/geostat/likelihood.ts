@@ -1,9 +1,11 @@
 import { RainprintError } from '../errors.js';
 import {
+  borrowWorkspace,
   choleskyInPlace,
   correlationMatrix,
   crossProduct,
   innerProduct,
+  multiplySymmetric,
   multiplyVector,
   solveLowerInPlace,
   solveLowerManyInPlace,
@@ -51,6 +53,8 @@ export class FieldLikelihood {
   readonly #qz: Float64Array;
   #parameters: FieldParameters = { rangeKm: 1, sill: 1, nugget: 0 };
   #correlationRangeKm = Number.NaN;
+  #logLikelihood = Number.NEGATIVE_INFINITY;
+  #quadratic = 0;
 
   constructor(
     geometry: FieldGeometry,
@@ -84,7 +88,8 @@ export class FieldLikelihood {
       this.#factorise(parameters);
     } catch (error) {
       if (error instanceof RainprintError && error.code === 'MATRIX_NOT_POSITIVE_DEFINITE') {
-        return Number.NEGATIVE_INFINITY;
+        this.#logLikelihood = Number.NEGATIVE_INFINITY;
+        return this.#logLikelihood;
       }
       throw error;
     }
@@ -111,10 +116,25 @@ export class FieldLikelihood {
 
     let logDetV = 0;
     for (let i = 0; i < n; i++) logDetV += 2 * Math.log(factor[i * n + i]);
-    if (this.#criterion === 'maximum') return -0.5 * (n * LN_2PI + logDetV + quadratic);
-    let logDetG = 0;
-    for (let c = 0; c < p; c++) logDetG += 2 * Math.log(g[c * p + c]);
-    return -0.5 * ((n - p) * LN_2PI - logDetFtF + logDetV + logDetG + quadratic);
+    this.#quadratic = quadratic;
+    if (this.#criterion === 'maximum') {
+      this.#logLikelihood = -0.5 * (n * LN_2PI + logDetV + quadratic);
+    } else {
+      let logDetG = 0;
+      for (let c = 0; c < p; c++) logDetG += 2 * Math.log(g[c * p + c]);
+      this.#logLikelihood = -0.5 * ((n - p) * LN_2PI - logDetFtF + logDetV + logDetG + quadratic);
+    }
+    return this.#logLikelihood;
+  }
+
+  /**
+   * Log-likelihood at the last evaluation's V times `factor`, from its determinants and quadratic form alone; what else
+   * is asked stays that of the last evaluation.
+   */
+  rescaled(factor: number): number {
+    const { n, p } = this.#geometry;
+    const degrees = this.#criterion === 'maximum' ? n : n - p;
+    return this.#logLikelihood - 0.5 * (degrees * Math.log(factor) + this.#quadratic * (1 / factor - 1));
   }
 
   /** Qz at the last evaluation: weights of the data in every prediction. */
@@ -140,9 +160,9 @@ export class FieldLikelihood {
     // dV·Qz for the three parameters, and tr(V⁻¹dV) − tr(dV·BBᵀ) with B = V⁻¹F chol(G)⁻ᵀ under REML.
     const moved = [new Float64Array(n), new Float64Array(n), new Float64Array(n)] as const;
     this.#fillSlope();
-    symmetricProduct(this.#slope, n, qz, moved[0]);
+    multiplySymmetric(this.#slope, n, qz, moved[0]);
     for (let i = 0; i < n; i++) moved[0][i] *= sill;
-    symmetricProduct(this.#correlation, n, qz, moved[1]);
+    multiplySymmetric(this.#correlation, n, qz, moved[1]);
     moved[2].set(qz);
     withInverse(this.#factor, n, (inverse) => {
       const traces = this.#traces(inverse, projection);
@@ -201,14 +221,15 @@ export class FieldLikelihood {
 
   #factorise({ sill, nugget }: FieldParameters): void {
     const { n } = this.#geometry;
-    const factor = this.#factor;
+    const { matrix, cholesky } = borrowWorkspace(null, n, 0);
     const correlation = this.#correlation;
     for (let i = 0; i < n; i++) {
       const row = i * n;
-      for (let j = 0; j < i; j++) factor[row + j] = sill * correlation[row + j];
-      factor[row + i] = sill + nugget + this.#errorVariance[i];
+      for (let j = 0; j < i; j++) matrix[row + j] = sill * correlation[row + j];
+      matrix[row + i] = sill + nugget + this.#errorVariance[i];
     }
-    choleskyInPlace(factor, n);
+    cholesky();
+    this.#factor.set(matrix);
   }
 
   /** B = V⁻¹F chol(G)⁻ᵀ (n × p), so that Q = V⁻¹ − BBᵀ. */
@@ -265,21 +286,5 @@ export class FieldLikelihood {
     const along = new Float64Array(p);
     crossProduct(b, p, x, 1, n, along);
     for (let i = 0; i < n; i++) for (let c = 0; c < p; c++) out[i] -= b[i * p + c] * along[c];
-  }
-}
-
-/** out = A·x for a symmetric A of which the lower triangle (row-major, n × n) is filled. */
-function symmetricProduct(a: Float64Array, n: number, x: Float64Array, out: Float64Array): void {
-  out.fill(0);
-  for (let i = 0; i < n; i++) {
-    const row = i * n;
-    const xi = x[i];
-    let sum = a[row + i] * xi;
-    for (let j = 0; j < i; j++) {
-      const value = a[row + j];
-      sum += value * x[j];
-      out[j] += value * xi;
-    }
-    out[i] += sum;
   }
 }

@@ -6,6 +6,8 @@ import { VecchiaLikelihood } from './vecchia-likelihood.js';
 /** What a fit asks of a likelihood of one field with the trend profiled out: `FieldLikelihood` documents each. */
 export interface ProfiledLikelihood {
   evaluate(z: Float64Array, parameters: FieldParameters): number;
+  /** Where the value for a multiple of V costs no factorisation; missing where it does. */
+  rescaled?(factor: number): number;
   readonly weights: Float64Array;
   crossWithWeights(a: Float64Array): number;
   derivatives(gradient: Float64Array, information: Float64Array): void;

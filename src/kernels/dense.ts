@@ -96,10 +96,10 @@ export function correlationMatrix(
 }
 
 /**
- * A workspace whose matrix holds the factor `l`, in memory this thread lends: it is valid until the next call of any
- * kernel on plain arrays, but for `covarianceBlock` into its block.
+ * A workspace whose matrix holds the factor `l` (unspecified numbers for null), in memory this thread lends: it is valid
+ * until the next call of any kernel on plain arrays, but for `covarianceBlock` into its block.
  */
-export function borrowWorkspace(l: Float64Array, n: number, width: number): DenseWorkspace {
+export function borrowWorkspace(l: Float64Array | null, n: number, width: number): DenseWorkspace {
   return currentKernels().borrowWorkspace(l, n, width);
 }
 

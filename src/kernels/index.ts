@@ -12,6 +12,6 @@ export {
 } from './dense.js';
 export type { DenseWorkspace } from './kernel-set.js';
 export { dot } from './reference/cholesky.js';
-export { crossProduct, innerProduct, multiplyVector } from './reference/products.js';
+export { crossProduct, innerProduct, multiplySymmetric, multiplyVector } from './reference/products.js';
 export { solveLowerInPlace, solveLowerTransposedInPlace } from './reference/triangular.js';
 export { kernelName, useKernels } from './selection.js';

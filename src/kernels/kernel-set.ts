@@ -55,6 +55,6 @@ export interface KernelSet {
     n: number,
     out: Float64Array,
   ): void;
-  borrowWorkspace(l: Float64Array, n: number, width: number): DenseWorkspace;
+  borrowWorkspace(l: Float64Array | null, n: number, width: number): DenseWorkspace;
   withInverse(l: Float64Array, n: number, use: (inverse: Float64Array) => void): void;
 }

@@ -42,6 +42,24 @@ describe.each(COVARIANCE_FAMILIES)('%s', (family) => {
       expect(likelihood.evaluate(field.z, parameters)).toBeCloseTo(expected, 8);
     });
 
+    it.each(points)('at a multiple of V equals an evaluation there, %j', (parameters) => {
+      likelihood.evaluate(field.z, parameters);
+      for (const factor of [0.2, 1, 7]) {
+        const there = new FieldLikelihood(
+          field.geometry,
+          correlationFunction(family),
+          field.errorVariance.map((e) => factor * e),
+          criterion,
+        );
+        const expected = there.evaluate(field.z, {
+          rangeKm: parameters.rangeKm,
+          sill: factor * parameters.sill,
+          nugget: factor * parameters.nugget,
+        });
+        expect(likelihood.rescaled(factor)).toBeCloseTo(expected, 8);
+      }
+    });
+
     it.each(points)('has the gradient of finite differences at %j', (parameters) => {
       const [gradient, information] = [new Float64Array(3), new Float64Array(9)];
       likelihood.evaluate(field.z, parameters);

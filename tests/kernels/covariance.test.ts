@@ -1,7 +1,12 @@
 // Covariances of a block of places against the families of the model, and the compiled exponential.
 import { describe, expect, it } from 'vitest';
-import { correlation, distanceKm } from '../../src/geostat/index.js';
-import { COVARIANCE_KINDS, covarianceBlock, createDenseWorkspace } from '../../src/kernels/index.js';
+import { correlation, correlationFunction, distanceKm } from '../../src/geostat/index.js';
+import {
+  COVARIANCE_KINDS,
+  correlationMatrix,
+  covarianceBlock,
+  createDenseWorkspace,
+} from '../../src/kernels/index.js';
 import { KernelMemory } from '../../src/kernels/simd/kernel-memory.js';
 import { seededUniform } from '../reference/seeded.js';
 import { describeKernels } from './implementations.js';
@@ -56,6 +61,32 @@ describe.each(COVARIANCE_KINDS)('%s', (kind) => {
       expect(workspace.block.subarray(0, 5).every(Number.isNaN)).toBe(true);
       expect(workspace.block.subarray(5 + n * count).every(Number.isNaN)).toBe(true);
       expect(workspace.matrix.every(Number.isNaN)).toBe(true);
+    });
+
+    it.each([1, 31, 32, 77])('correlations of %i stations and their slopes, by distance', (n) => {
+      const at = places(n, 5);
+      const rangeKm = 310;
+      const { correlation: rho, logRangeSlope } = correlationFunction(kind);
+      const distances = new Float64Array(n * n);
+      for (let i = 0; i < n; i++) {
+        for (let j = 0; j < i; j++) distances[i * n + j] = distanceKm(at, i, at, j, 'euclidean');
+      }
+      for (const [what, expected] of [
+        ['correlation', rho],
+        ['slope', logRangeSlope],
+      ] as const) {
+        const out = new Float64Array(n * n).fill(Number.NaN);
+        correlationMatrix(kind, what, rangeKm, distances, n, out);
+        for (let i = 0; i < n; i++) {
+          for (let j = 0; j < n; j++) {
+            const value = out[i * n + j];
+            if (j > i) expect(value).toBeNaN();
+            else
+              expect(Math.abs(value - expected(distances[i * n + j] / rangeKm))).toBeLessThanOrEqual(BOUND);
+          }
+          expect(out[i * n + i]).toBe(what === 'slope' ? 0 : 1);
+        }
+      }
     });
 
     it('far away it is 0', () => {

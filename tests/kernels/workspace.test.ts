@@ -1,9 +1,29 @@
 // Workspaces: what they hold, what they leave alone, how many there may be.
 import { describe, expect, it } from 'vitest';
-import { createDenseWorkspace, kernelName, useKernels } from '../../src/kernels/index.js';
+import {
+  borrowWorkspace,
+  choleskyInPlace,
+  covarianceBlock,
+  createDenseWorkspace,
+  inverseFromCholesky,
+  kernelName,
+  useKernels,
+  withInverse,
+} from '../../src/kernels/index.js';
 import { KernelMemory } from '../../src/kernels/simd/kernel-memory.js';
 import { describeKernels } from './implementations.js';
-import { BOUND, factorResidual, lowerTriangle, positiveDefinite } from './matrices.js';
+import {
+  BOUND,
+  distance,
+  factorResidual,
+  isSame,
+  lowerOf,
+  lowerTriangle,
+  norm,
+  places,
+  positiveDefinite,
+  product,
+} from './matrices.js';
 
 describeKernels('workspace', () => {
   it('factors in place, in its lower triangle only, and leaves the block alone', () => {
@@ -50,6 +70,36 @@ describeKernels('workspace', () => {
     for (let k = 0; k < 2000; k++) createDenseWorkspace(10, 2).matrix[0] = k;
     for (const [k, workspace] of held.entries()) workspace.matrix.fill(k);
     expect(held.every((workspace, k) => workspace.matrix[99] === k)).toBe(true);
+  });
+});
+
+describeKernels('lent memory', () => {
+  it.each([5, 40, 131])(
+    'size %i: a borrowed workspace solves with the factor given, and covariances go into it',
+    (n) => {
+      const l = lowerTriangle(n, 9);
+      const stations = places(n, 10);
+      const workspace = borrowWorkspace(l, n, 20);
+      const columns = Math.min(n, 20);
+      covarianceBlock('matern32', 1, 300, stations, n, stations, 0, columns, workspace.block);
+      const c = workspace.block.slice(0, n * columns);
+      workspace.solveLower(columns);
+      const x = workspace.block.slice(0, n * columns);
+      const L = lowerOf(l, n);
+      expect(distance(product(L, x, n, n, columns), c) / (norm(L) * norm(x))).toBeLessThanOrEqual(BOUND);
+    },
+  );
+
+  it.each([5, 40, 131])('size %i: the inverse is shown as it is made in place', (n) => {
+    const l = positiveDefinite(n, 11);
+    choleskyInPlace(l, n);
+    const inverse = new Float64Array(n * n);
+    inverseFromCholesky(l, n, new Float64Array(n * n), inverse);
+    let seen = 0;
+    withInverse(l, n, (shown) => {
+      if (isSame(shown, inverse)) seen += 1;
+    });
+    expect(seen).toBe(1);
   });
 });
 

@@ -83,13 +83,19 @@ export function integrateScale(
   const step = rule.scaleStepSds * guess.sd;
   const centre = Math.min(axis.high, Math.max(axis.low, guess.mean));
   const scales: { value: number; logDensity: number }[] = [];
+  // Without known errors the whole of V grows with the scale: one factorisation serves all of them.
+  const isWholeScale = axis.name === 'lnTotal' && errorVariance.every((variance) => variance === 0);
+  const rescaled = isWholeScale ? likelihood.rescaled : undefined;
   let peak = Number.NEGATIVE_INFINITY;
   const visit = (value: number): boolean => {
     if (value < axis.low || value > axis.high) return false;
     x[scaleAxis] = value;
     const parameters = parametersAt(space, x);
-    const logDensity =
-      likelihood.evaluate(z, parameters) + logScalePrior(axis.name, parameters, errorVariance);
+    const logLikelihood =
+      rescaled !== undefined && scales.length > 0
+        ? rescaled.call(likelihood, Math.exp(value - centre))
+        : likelihood.evaluate(z, parameters);
+    const logDensity = logLikelihood + logScalePrior(axis.name, parameters, errorVariance);
     if (!Number.isFinite(logDensity)) return false;
     scales.push({ value, logDensity });
     const rising = logDensity > peak;

@@ -4,7 +4,7 @@ import { correlations, covarianceBlock } from './covariance.js';
 import { inverseFromCholesky, withInverse } from './inverse.js';
 import { multiplyInto } from './multiply.js';
 import { solveLowerManyInPlace } from './triangular.js';
-import { createDenseWorkspace, workspaceOn } from './workspace.js';
+import { borrowWorkspace, createDenseWorkspace } from './workspace.js';
 
 /** The kernels in plain TypeScript: what the compiled ones are compared with, and the way without SIMD. */
 export const referenceKernels: KernelSet = {
@@ -16,6 +16,6 @@ export const referenceKernels: KernelSet = {
   multiplyInto,
   covarianceBlock,
   correlations,
-  borrowWorkspace: workspaceOn,
+  borrowWorkspace,
   withInverse,
 };

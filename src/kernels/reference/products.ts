@@ -32,3 +32,19 @@ export function crossProduct(
     }
   }
 }
+
+/** out = A·x for a symmetric A of which the lower triangle (row-major, n × n) is filled. */
+export function multiplySymmetric(a: Float64Array, n: number, x: Float64Array, out: Float64Array): void {
+  out.fill(0);
+  for (let i = 0; i < n; i++) {
+    const row = i * n;
+    const xi = x[i];
+    let sum = a[row + i] * xi;
+    for (let j = 0; j < i; j++) {
+      const value = a[row + j];
+      sum += value * x[j];
+      out[j] += value * xi;
+    }
+    out[i] += sum;
+  }
+}

@@ -4,11 +4,12 @@ import { solveLowerManyInPlace, solveLowerTransposedManyInPlace } from './triang
 
 /** See `createDenseWorkspace` of dense.ts. */
 export function createDenseWorkspace(n: number, width: number): DenseWorkspace {
-  return workspaceOn(new Float64Array(n * n), n, width);
+  return borrowWorkspace(null, n, width);
 }
 
-/** See `borrowWorkspace` of dense.ts: nothing is copied here. */
-export function workspaceOn(matrix: Float64Array, n: number, width: number): DenseWorkspace {
+/** See `borrowWorkspace` of dense.ts: a given factor is used where it stands. */
+export function borrowWorkspace(l: Float64Array | null, n: number, width: number): DenseWorkspace {
+  const matrix = l ?? new Float64Array(n * n);
   const block = new Float64Array(n * width);
   return {
     n,

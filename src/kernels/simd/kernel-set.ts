@@ -18,7 +18,7 @@ const INVERSE_ROWS = 24;
 const PRODUCT_OPERATIONS = 16_384;
 const PRODUCT_INNER = 4;
 const COVARIANCES = 64;
-const CORRELATION_ROWS = 16;
+const CORRELATION_ROWS = 32;
 /** Enough for matrices of 200 rows. */
 const FIRST_SCRATCH_BYTES = 2 ** 20;
 
@@ -171,11 +171,11 @@ function correlations(
   }
 }
 
-function borrowWorkspace(l: Float64Array, n: number, width: number): DenseWorkspace {
+function borrowWorkspace(l: Float64Array | null, n: number, width: number): DenseWorkspace {
   const { bytes } = denseLayout(n, width);
   if (!fitsKernelMemory(bytes)) return referenceKernels.borrowWorkspace(l, n, width);
   const workspace = workspaceIn(scratchMemory(bytes), n, width);
-  workspace.matrix.set(l.subarray(0, n * n));
+  if (l !== null) workspace.matrix.set(l.subarray(0, n * n));
   return workspace;
 }
 
