@@ -27,8 +27,6 @@ export interface GeoTiffSpec {
 export interface WriteOptions {
   /** zlib level 1–9; 6 where absent. */
   readonly deflateLevel?: number;
-  /** Averages at half the size and so on; none where absent. */
-  readonly overviews?: boolean;
   readonly signal?: AbortSignal;
 }
 
@@ -39,7 +37,7 @@ export type BandRows = readonly (Int16Array | Float32Array)[];
 export type RowSource = (firstRow: number, rowCount: number) => BandRows | Promise<BandRows>;
 
 /**
- * Writes a whole raster in one thread, asking for one row of tiles at a time; see `openCog` for what the file is.
+ * Writes a whole raster without overviews in one thread, asking for one row of tiles at a time; see `openCog` for what the file is.
  * The file appears under its name only when it is whole; an aborted `signal` leaves nothing behind and rejects
  * with the signal's reason. Throws OPTION_INVALID and FILE_NOT_WRITABLE.
  */
@@ -58,7 +56,7 @@ export async function writeGeoTiff(
     nodata,
     reductions: bands.map(() => 'mean'),
     deflateLevel: options.deflateLevel ?? 6,
-    overviews: options.overviews ?? false,
+    overviews: false,
   };
   const crs = { epsg: 4326, kind: 'geographic', name: 'WGS 84' } as const;
   const cog = await openCog(path, { format, crs, transform, bands, software });
