@@ -50,6 +50,18 @@ export class VecchiaTrend {
     return beta;
   }
 
+  /** G⁻¹ (p × p), the covariance of β̂. */
+  coefficientCovariance(): Float64Array {
+    const { p } = this.#geometry;
+    const out = new Float64Array(p * p);
+    for (let c = 0; c < p; c++) {
+      out[c * p + c] = 1;
+      // A symmetric inverse: its rows are its columns.
+      this.#solve(out.subarray(c * p, (c + 1) * p));
+    }
+    return out;
+  }
+
   /** UᵀF·G⁻¹ (n × p, by steps). */
   whitenedOverFactor(): Float64Array {
     const { n, p } = this.#geometry;

@@ -98,6 +98,10 @@ const common = {
   ),
   terms: z.array(z.string()),
   covariates: z.array(covariate).default([]),
+  likelihood: z
+    .strictObject({ method: z.literal('vecchia'), neighbours: z.number().int().positive() })
+    .or(z.strictObject({ method: z.literal('exact') }))
+    .default({ method: 'exact' }),
   termsChosen: z.enum(['auto', 'fixed']),
   trendCandidates: z.array(
     z.strictObject({

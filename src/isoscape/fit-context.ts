@@ -1,4 +1,4 @@
-import { createGeometry, type FieldGeometry } from '../geostat/index.js';
+import { type ConditioningSets, createGeometry, type FieldGeometry } from '../geostat/index.js';
 import type { Network } from '../stations/network.js';
 import { contentHash } from './canonical-json.js';
 import type { Covariate } from './covariate.js';
@@ -12,6 +12,7 @@ import {
   type SingleIsoscape,
   type StationColumns,
 } from './isoscape.js';
+import type { LikelihoodUsed } from './large-network.js';
 import { storedStations } from './station-columns.js';
 import { supportLimits } from './support.js';
 import { parseTerms, trendRows } from './trend.js';
@@ -26,6 +27,9 @@ export interface FitContext {
   /** In the order of their names. */
   readonly covariates: readonly Covariate[];
   readonly positionsKm: Float64Array;
+  readonly likelihood: LikelihoodUsed;
+  /** What geometries carry for it. */
+  readonly conditioning: ConditioningSets | null;
 }
 
 export interface ChosenTrend {
@@ -50,9 +54,11 @@ export function chooseTrend(
   context: FitContext,
   choose: (candidates: SupportedCandidates) => { candidates: ChosenTrend['candidates']; best: string[] },
 ): ChosenTrend {
-  const { options, stations, covariates, positionsKm } = context;
-  const geometryOf = (terms: readonly string[]) =>
-    createGeometry(positionsKm, trendRows({ terms, covariates }, stations), terms.length + 1);
+  const { options, stations, covariates, positionsKm, conditioning } = context;
+  const geometryOf = (terms: readonly string[]) => {
+    const rows = trendRows({ terms, covariates }, stations);
+    return createGeometry(positionsKm, rows, terms.length + 1, 'euclidean', conditioning);
+  };
   const asked = options.terms ?? 'auto';
   if (asked !== 'auto') {
     const terms = termsAskedFor(options, covariates);
@@ -64,7 +70,7 @@ export function chooseTrend(
 
 /** The members both kinds of isoscape have; the id hashes inputs, options and algorithm version, nothing computed. */
 export function commonPart(
-  { network, options, stations, covariates }: FitContext,
+  { network, options, stations, covariates, likelihood }: FitContext,
   trend: ChosenTrend,
   family: { family: Isoscape['family']; candidates: Isoscape['familyCandidates'] },
   samplingScale: number,
@@ -86,10 +92,12 @@ export function commonPart(
     ...(covariates.length === 0
       ? {}
       : { covariates: covariates.map(({ name }) => name), terms: asked === 'auto' ? asked : trend.terms }),
+    ...(likelihood.method === 'exact' ? {} : { likelihood }),
   };
+  const isFirstShape = covariates.length === 0 && likelihood.method === 'exact';
   return {
     id: contentHash(identity),
-    schemaVersion: covariates.length === 0 ? FIRST_SCHEMA_VERSION : ISOSCAPE_SCHEMA_VERSION,
+    schemaVersion: isFirstShape ? FIRST_SCHEMA_VERSION : ISOSCAPE_SCHEMA_VERSION,
     algorithmVersion: ALGORITHM_VERSION,
     toolVersion: options.toolVersion ?? '',
     networkName: network.name,
@@ -100,6 +108,7 @@ export function commonPart(
     oneIsotopeStationIds: network.oneIsotopeStations.map((station) => station.id),
     sampling: network.sampling,
     samplingScale,
+    likelihood,
     samplingScaleFitted: options.samplingScale === 'fit',
     family: family.family,
     familyChosen: (options.family ?? 'auto') === 'auto' ? ('auto' as const) : ('fixed' as const),

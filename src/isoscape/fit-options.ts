@@ -1,5 +1,6 @@
 import type { CovarianceFamily, FixedParameters } from '../geostat/index.js';
 import type { CovariateValues } from './covariate.js';
+import type { LikelihoodChoice } from './large-network.js';
 
 export interface FitOptions {
   /** Covariance family, or `auto`: the one with the largest restricted likelihood at the chosen trend. Default auto. */
@@ -21,6 +22,8 @@ export interface FitOptions {
     readonly d2H?: FixedParameters;
     readonly turnDeg?: number;
   };
+  /** Exact or Vecchia's likelihood; default auto: exact up to 2,000 stations. */
+  readonly likelihood?: LikelihoodChoice;
   /** Written into the isoscape; not part of its id. */
   readonly toolVersion?: string;
 }

@@ -8,6 +8,7 @@ import { fitJoint } from './fit-joint.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import { fitSingle } from './fit-single.js';
 import type { Isoscape } from './isoscape.js';
+import { conditioningFor, likelihoodFor } from './large-network.js';
 import { stationColumns } from './station-columns.js';
 
 /** Stations below which no isoscape is fitted: fewer cannot tell a covariance (common practice, no source). */
@@ -19,7 +20,7 @@ export const MIN_STATIONS = 10;
  *
  * @throws STATIONS_TOO_FEW, TREND_COLLINEAR, STATIONS_COINCIDENT, WITHIN_COVARIANCE_SINGULAR,
  *         PARAMETER_OUT_OF_RANGE, TERM_UNKNOWN, ISOTOPE_MISSING, LIKELIHOOD_NOT_CONVERGED, COVARIATE_NAME_INVALID,
- *         COVARIATE_TWICE, COVARIATE_MISSING, COVARIATE_CONSTANT, COVARIATE_COLLINEAR
+ *         COVARIATE_TWICE, COVARIATE_MISSING, COVARIATE_CONSTANT, COVARIATE_COLLINEAR, NETWORK_TOO_LARGE
  */
 export function fitIsoscape(
   network: Network,
@@ -30,13 +31,17 @@ export function fitIsoscape(
   const given = checkCovariates(network, options.covariates ?? []);
   const stations = stationColumns(network, given);
   const covariates = scaleCovariates(given, stations);
+  const positionsKm = positionsOnSphereKm(stations.lonDeg, stations.latDeg);
+  const likelihood = likelihoodFor(options.likelihood ?? 'auto', stations.id.length);
   const context: FitContext = {
     network,
     options,
     onProgress,
     stations,
     covariates,
-    positionsKm: positionsOnSphereKm(stations.lonDeg, stations.latDeg),
+    positionsKm,
+    likelihood,
+    conditioning: conditioningFor(likelihood, positionsKm),
   };
   if (covariates.length > 0) {
     const terms = termsAskedFor(options, covariates);

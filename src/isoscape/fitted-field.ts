@@ -2,7 +2,9 @@ import {
   type CovarianceFamily,
   type FieldFit,
   type FieldGeometry,
+  type FieldParameters,
   FieldSystem,
+  networkTrend,
   parameterNodes,
 } from '../geostat/index.js';
 import type { FieldName, FittedField } from './isoscape.js';
@@ -16,8 +18,7 @@ export function finishField(
   errorVariance: Float64Array,
   fit: FieldFit,
 ): FittedField {
-  const system = new FieldSystem(geometry, family, fit.parameters, errorVariance);
-  const { coefficients } = system.solveData(values);
+  const trend = fittedTrend(geometry, family, fit.parameters, values, errorVariance);
   const fixedKeys = { rangeKm: 'range_km', sill: 'sill', nugget: 'nugget' } as const;
   const { fixed } = fit.space;
   return {
@@ -29,12 +30,31 @@ export function finishField(
       .filter((key) => fixed[key] !== undefined)
       .map((key) => fixedKeys[key]),
     logLikelihood: fit.logLikelihood,
-    coefficients,
-    coefficientCovariance: system.coefficientCovariance(),
+    ...trend,
     nodes: parameterNodes(geometry, family, values, errorVariance, fit),
     boundsReached: fit.boundsReached,
     // A range the user holds does not run away.
     longRangeLimit:
       fixed.rangeKm === undefined && fit.parameters.rangeKm >= geometry.diameterKm && fit.parameters.sill > 0,
   };
+}
+
+/** Exactly, or through the Vecchia factor where the likelihood was Vecchia's. */
+function fittedTrend(
+  geometry: FieldGeometry,
+  family: CovarianceFamily,
+  parameters: FieldParameters,
+  values: Float64Array,
+  errorVariance: Float64Array,
+): Pick<FittedField, 'coefficients' | 'coefficientCovariance'> {
+  if (geometry.conditioning !== null) {
+    const trend = networkTrend(geometry, family, parameters, errorVariance);
+    return {
+      coefficients: trend.coefficientsOf(values),
+      coefficientCovariance: trend.coefficientCovariance(),
+    };
+  }
+  const system = new FieldSystem(geometry, family, parameters, errorVariance);
+  const { coefficients } = system.solveData(values);
+  return { coefficients, coefficientCovariance: system.coefficientCovariance() };
 }

@@ -1,10 +1,11 @@
 import type { CovarianceFamily, FieldParameters } from '../geostat/index.js';
 import type { IsotopeChoice, PairCovariance, SamplingKnowledge, Season } from '../stations/network.js';
 import type { Covariate } from './covariate.js';
+import type { LikelihoodUsed } from './large-network.js';
 
 /**
- * Newest version of the file's shape; a reader refuses a newer one and says so. 2 brought covariates: a file without
- * any is still written as 1, byte for byte.
+ * Newest version of the file's shape; a reader refuses a newer one and says so. 2 brought covariates and Vecchia's
+ * likelihood: a file with neither is still written as 1, byte for byte.
  */
 export const ISOSCAPE_SCHEMA_VERSION = 2;
 export const FIRST_SCHEMA_VERSION = 1;
@@ -89,6 +90,8 @@ interface IsoscapeCommon {
   readonly sampling: SamplingKnowledge;
   readonly samplingScale: number;
   readonly samplingScaleFitted: boolean;
+  /** Exact, or Vecchia's approximation for a large network, with the stations each one was conditioned on. */
+  readonly likelihood: LikelihoodUsed;
   readonly family: CovarianceFamily;
   readonly familyChosen: 'auto' | 'fixed';
   readonly familyCandidates: readonly FamilyCandidate[];

@@ -8,6 +8,9 @@ export const EXACT_PREDICTION_STATIONS = 1500;
 /** Stations beyond which no factor over all of them is made: its memory alone is n² numbers, 288 MB at this limit. */
 export const FACTOR_STATIONS_LIMIT = 6000;
 
+/** Stations up to which an exact likelihood is computed at all: both fields keep some ten n × n matrices, 1.3 GB here. */
+const EXACT_LIKELIHOOD_LIMIT = 4000;
+
 /** How an isoscape's likelihood was computed. */
 export type LikelihoodUsed =
   | { readonly method: 'exact' }
@@ -19,7 +22,7 @@ export type LikelihoodChoice = 'auto' | 'exact' | 'vecchia';
 export function likelihoodFor(choice: LikelihoodChoice, stationCount: number): LikelihoodUsed {
   const vecchia = choice === 'vecchia' || (choice === 'auto' && stationCount > EXACT_FIT_STATIONS);
   if (!vecchia) {
-    requireFactor(stationCount, 'the exact likelihood');
+    requireAtMost(EXACT_LIKELIHOOD_LIMIT, stationCount, 'the exact likelihood');
     return { method: 'exact' };
   }
   return { method: 'vecchia', neighbours: Math.min(CONDITIONING_NEIGHBOURS, stationCount - 1) };
@@ -40,11 +43,15 @@ export function usesNearest(used: StationsUsed, stationCount: number): boolean {
 
 /** @throws NETWORK_TOO_LARGE where no factor over all stations is made */
 export function requireFactor(stationCount: number, purpose: string): void {
-  if (stationCount <= FACTOR_STATIONS_LIMIT) return;
+  requireAtMost(FACTOR_STATIONS_LIMIT, stationCount, purpose);
+}
+
+function requireAtMost(allowed: number, stationCount: number, purpose: string): void {
+  if (stationCount <= allowed) return;
   throw new RainprintError(
     'NETWORK_TOO_LARGE',
-    `${purpose} needs a factor over all ${stationCount} stations, which is made up to ${FACTOR_STATIONS_LIMIT}: ` +
-      'leave the choice to the program, or use fewer stations',
-    { stations: stationCount, allowed: FACTOR_STATIONS_LIMIT },
+    `${purpose} needs exact algebra over all stations, which is done up to ${allowed} stations and not for ` +
+      `${stationCount}: leave the choice to the program where it has one, or use fewer stations`,
+    { stations: stationCount, allowed },
   );
 }

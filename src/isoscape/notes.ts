@@ -6,6 +6,7 @@ import { crowdedOutTerms } from './trend-choice.js';
 export function describeFit(isoscape: Isoscape, stationsOfUnknownRecords: number): string[] {
   const fields = isoscape.isotopes === 'both' ? [isoscape.along, isoscape.across] : [isoscape.field];
   return [
+    ...likelihoodNotes(isoscape),
     ...samplingNotes(isoscape, stationsOfUnknownRecords),
     ...(isoscape.termsChosen === 'auto'
       ? [
@@ -21,6 +22,14 @@ export function describeFit(isoscape: Isoscape, stationsOfUnknownRecords: number
       ? ['the covariance family was chosen by restricted likelihood; the intervals ignore this choice too']
       : []),
     ...fields.flatMap(fieldNotes),
+  ];
+}
+
+function likelihoodNotes({ likelihood, stations }: Isoscape): string[] {
+  if (likelihood.method === 'exact') return [];
+  return [
+    `the likelihood is Vecchia's approximation: each of the ${stations.id.length} stations is conditioned on the ` +
+      `${likelihood.neighbours} nearest of those before it in an order that spreads over the network`,
   ];
 }
 

@@ -1,13 +1,13 @@
 import {
   type CovarianceFamily,
   type Criterion,
-  correlationFunction,
+  createLikelihood,
   type FieldFit,
   type FieldGeometry,
-  FieldLikelihood,
   type FieldParameters,
   type FixedParameters,
   fitField,
+  type ProfiledLikelihood,
 } from '../geostat/index.js';
 import { normaliseTurn, turn } from './axes.js';
 
@@ -43,18 +43,17 @@ export interface PairFit {
 export class TurnProfile {
   readonly #problem: PairProblem;
   readonly #options: PairFitOptions;
-  readonly #likelihoods: readonly [FieldLikelihood, FieldLikelihood];
+  readonly #likelihoods: readonly [ProfiledLikelihood, ProfiledLikelihood];
   readonly #u1: Float64Array;
   readonly #u2: Float64Array;
 
   constructor(problem: PairProblem, options: PairFitOptions) {
     const { geometry, errorVariance } = problem;
-    const family = correlationFunction(options.family);
     this.#problem = problem;
     this.#options = options;
     this.#likelihoods = [
-      new FieldLikelihood(geometry, family, errorVariance, options.criterion),
-      new FieldLikelihood(geometry, family, errorVariance, options.criterion),
+      createLikelihood(geometry, options.family, errorVariance, options.criterion),
+      createLikelihood(geometry, options.family, errorVariance, options.criterion),
     ];
     this.#u1 = new Float64Array(geometry.n);
     this.#u2 = new Float64Array(geometry.n);

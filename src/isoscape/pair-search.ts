@@ -1,4 +1,9 @@
-import { COVARIANCE_FAMILIES, type CovarianceFamily, type FieldGeometry } from '../geostat/index.js';
+import {
+  COVARIANCE_FAMILIES,
+  type CovarianceFamily,
+  type FieldGeometry,
+  stationSubset,
+} from '../geostat/index.js';
 import type { FitOptions, OnFitProgress } from './fit-options.js';
 import type { FamilyCandidate, TrendCandidate } from './isoscape.js';
 import { type PairFit, type PairStart, refineTurn, scanTurn, startFrom, TurnProfile } from './pair-fit.js';
@@ -78,27 +83,14 @@ function thinGeometry(
 ): { geometry: FieldGeometry; input: PairInput } {
   const step = geometry.n / FULL_SEARCH_STATIONS;
   const kept = Array.from({ length: FULL_SEARCH_STATIONS }, (_, k) => Math.floor(k * step));
-  const { p, n } = geometry;
-  const pick = (values: Float64Array, width: number) =>
-    Float64Array.from(kept.flatMap((i) => Array.from(values.subarray(i * width, (i + 1) * width))));
-  const m = kept.length;
-  const distancesKm = new Float64Array(m * m);
-  kept.forEach((i, a) => {
-    for (let b = 0; b < a; b++) distancesKm[a * m + b] = geometry.distancesKm[i * n + kept[b]];
-  });
+  const pick = (values: Float64Array) => Float64Array.from(kept, (i) => values[i]);
   return {
-    geometry: {
-      ...geometry,
-      n: m,
-      positionsKm: pick(geometry.positionsKm, 3),
-      trend: pick(geometry.trend, p),
-      distancesKm,
-    },
+    geometry: stationSubset(geometry, kept),
     input: {
       ...input,
-      y1: pick(input.y1, 1),
-      y2: pick(input.y2, 1),
-      errorVariance: pick(input.errorVariance, 1),
+      y1: pick(input.y1),
+      y2: pick(input.y2),
+      errorVariance: pick(input.errorVariance),
     },
   };
 }

@@ -3,6 +3,7 @@ import { normaliseTurn, turn, whiten } from './axes.js';
 import { contentHash } from './canonical-json.js';
 import { finishField } from './fitted-field.js';
 import type { FittedField, Isoscape } from './isoscape.js';
+import { conditioningFor } from './large-network.js';
 import { turnVariance } from './pair-fit.js';
 import { searchTurn } from './pair-search.js';
 import { selectStations } from './station-columns.js';
@@ -16,10 +17,13 @@ import { trendRows } from './trend.js';
  */
 export function refitOn(isoscape: Isoscape, stationIndices: ArrayLike<number>): Isoscape {
   const stations = selectStations(isoscape.stations, stationIndices);
+  const positionsKm = positionsOnSphereKm(stations.lonDeg, stations.latDeg);
   const geometry = createGeometry(
-    positionsOnSphereKm(stations.lonDeg, stations.latDeg),
+    positionsKm,
     trendRows(isoscape, stations),
     isoscape.terms.length + 1,
+    'euclidean',
+    conditioningFor(isoscape.likelihood, positionsKm),
   );
   const pick = (values: Float64Array) => Float64Array.from(Array.from(stationIndices), (i) => values[i]);
   const id = contentHash({ from: isoscape.id, stations: stations.id });

@@ -10,12 +10,13 @@ import { storedStations } from './station-columns.js';
  * that the same isoscape is the same bytes and a damaged file is told from a whole one.
  */
 export function writeIsoscape(isoscape: Isoscape): string {
-  const { covariates, ...rest } = isoscape;
+  const { covariates, likelihood, ...rest } = isoscape;
   const body = {
     format: 'rainprint-isoscape',
     ...rest,
     stations: storedStations(isoscape.stations),
     ...(covariates.length === 0 ? {} : { covariates }),
+    ...(likelihood.method === 'exact' ? {} : { likelihood }),
   };
   const members = Object.entries({ ...body, checksum: contentHash(body) })
     .sort(([a], [b]) => (a < b ? -1 : 1))

@@ -1,4 +1,9 @@
-import { createGeometry, type FieldGeometry, scaledCondition } from '../geostat/index.js';
+import {
+  type ConditioningSets,
+  createGeometry,
+  type FieldGeometry,
+  scaledCondition,
+} from '../geostat/index.js';
 import type { Covariate } from './covariate.js';
 import type { Isoscape, TrendCandidate } from './isoscape.js';
 import { TERM_NAMES, type TermName, type TrendPlaces, trendRows } from './trend.js';
@@ -26,8 +31,10 @@ export function supportedCandidates({
   positionsKm,
   stations,
   covariates,
+  conditioning = null,
 }: {
   readonly positionsKm: Float64Array;
+  readonly conditioning?: ConditioningSets | null;
   readonly stations: TrendPlaces;
   readonly covariates: readonly Covariate[];
 }): { terms: string[]; geometry: FieldGeometry }[] {
@@ -40,7 +47,7 @@ export function supportedCandidates({
     const askedFor = builtIn.length === 0 && names.length > 0;
     if (!askedFor && n < STATIONS_PER_TERM * p) return [];
     if (!askedFor && !(scaledCondition(matrix, n, p) <= MAX_CHOICE_CONDITION)) return [];
-    return [{ terms, geometry: createGeometry(positionsKm, matrix, p) }];
+    return [{ terms, geometry: createGeometry(positionsKm, matrix, p, 'euclidean', conditioning) }];
   });
 }
 

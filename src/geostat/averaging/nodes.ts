@@ -1,13 +1,16 @@
 import { FieldSystem } from '../blup.js';
-import { type CovarianceFamily, correlationFunction } from '../covariance/families.js';
+import type { CovarianceFamily } from '../covariance/families.js';
 import type { FieldGeometry } from '../field-data.js';
 import type { FieldFit } from '../fit-field.js';
-import { FieldLikelihood, type FieldParameters } from '../likelihood.js';
+import type { FieldParameters } from '../likelihood.js';
+import { NearestStations } from '../nearest-stations.js';
+import { type LocalStations, Neighbourhoods } from '../neighbourhoods.js';
 import { createBlupWorkspace, predictField } from '../predict-field.js';
+import { createLikelihood } from '../profiled-likelihood.js';
 import { parametersAt } from '../search-space.js';
 import { compressWeights } from './compress.js';
 import { posteriorGrid } from './posterior-grid.js';
-import { createProbes } from './probes.js';
+import { createProbes, type Probes } from './probes.js';
 
 /** One node of the average over covariance parameters; a field's weights sum to 1. */
 export interface ParameterNode extends FieldParameters {
@@ -30,7 +33,7 @@ export function parameterNodes(
   fit: FieldFit,
 ): ParameterNode[] {
   if (fit.space.axes.length === 0) return [{ ...fit.parameters, weight: 1 }];
-  const likelihood = new FieldLikelihood(geometry, correlationFunction(family), errorVariance);
+  const likelihood = createLikelihood(geometry, family, errorVariance);
   const points = posteriorGrid(likelihood, z, fit, errorVariance);
   const parameters = points.map((point) => parametersAt(fit.space, point.coordinates));
   const weights = Float64Array.from(points, (point) => point.weight);
@@ -59,16 +62,67 @@ function probeFeatures(
   const features = new Float64Array(parameters.length * width);
   const mean = new Float64Array(count);
   const variance = new Float64Array(count);
-  const workspace = createBlupWorkspace(geometry.n, geometry.p);
+  const predict =
+    geometry.conditioning === null
+      ? exactProbes(geometry, family, z, errorVariance, probes)
+      : nearestProbes(geometry, family, z, errorVariance, probes);
   parameters.forEach((set, row) => {
-    const system = new FieldSystem(geometry, family, set, errorVariance);
-    const data = [system.solveData(z)];
-    predictField(system, probes.positionsKm, probes.trendRows, count, data, [mean], variance, workspace);
+    predict(set, mean, variance);
     features.set(mean, row * width);
     for (let k = 0; k < count; k++) features[row * width + count + k] = variance[k] + set.nugget;
   });
   for (let k = 0; k < count; k++) standardise(features, width, k, count + k, weights);
   return { features, width };
+}
+
+type PredictProbes = (set: FieldParameters, mean: Float64Array, variance: Float64Array) => void;
+
+function exactProbes(
+  geometry: FieldGeometry,
+  family: CovarianceFamily,
+  z: Float64Array,
+  errorVariance: Float64Array,
+  { positionsKm, trendRows, count }: Probes,
+): PredictProbes {
+  const workspace = createBlupWorkspace(geometry.n, geometry.p);
+  return (set, mean, variance) => {
+    const system = new FieldSystem(geometry, family, set, errorVariance);
+    const data = [system.solveData(z)];
+    predictField(system, positionsKm, trendRows, count, data, [mean], variance, workspace);
+  };
+}
+
+/** Each probe from the stations near it, as a large network's places are predicted. */
+function nearestProbes(
+  geometry: FieldGeometry,
+  family: CovarianceFamily,
+  z: Float64Array,
+  errorVariance: Float64Array,
+  { positionsKm, trendRows, count }: Probes,
+): PredictProbes {
+  const { p } = geometry;
+  const stationsOf: LocalStations[] = [];
+  for (const { stations, places } of new Neighbourhoods(geometry).groups(positionsKm, count)) {
+    for (const place of places) stationsOf[place] = stations;
+  }
+  const workspace = createBlupWorkspace(Math.max(...stationsOf.map(({ indices }) => indices.length)), p);
+  return (set, mean, variance) => {
+    const network = new NearestStations(geometry, family, set, errorVariance, [z]);
+    for (const [k, stations] of stationsOf.entries()) {
+      const { system, data } = network.over(stations);
+      const at = (values: Float64Array, width: number) => values.subarray(k * width, (k + 1) * width);
+      predictField(
+        system,
+        at(positionsKm, 3),
+        at(trendRows, p),
+        1,
+        data,
+        [at(mean, 1)],
+        at(variance, 1),
+        workspace,
+      );
+    }
+  };
 }
 
 /** Means (column a) and variances (column b) of one probe to units of the mixture's standard error, in place. */
