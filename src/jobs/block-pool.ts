@@ -41,7 +41,10 @@ function workerPool(work: GridWork, threads: number, filename: string): BlockPoo
     minThreads: threads,
     maxThreads: threads,
     idleTimeout: Number.POSITIVE_INFINITY,
+    // Node.js dies where a thread is ended while it loads an ES module through require(), which the pool tries first
+    execArgv: [...process.execArgv, '--no-experimental-require-module'],
   });
+  let closing: Promise<void> | undefined;
   return {
     width: threads + 1, // a worker that is done finds the next block waiting
     cellsDone: () => Atomics.load(cellsDone, 0),
@@ -50,7 +53,10 @@ function workerPool(work: GridWork, threads: number, filename: string): BlockPoo
       if ('failed' in answer) throw revivedError(answer.failed);
       return answer.made;
     },
-    close: () => pool.destroy(),
+    close: () => {
+      closing ??= pool.destroy(); // a second call would let it replace the threads the first one ended
+      return closing;
+    },
   };
 }
 
