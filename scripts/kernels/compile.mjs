@@ -24,10 +24,13 @@ const FLAGS = [
   'simd',
 ];
 
+/** Goes up when `moduleText` changes. */
+const FORMAT = 2;
+
 /** SHA-256 of the sources, the compiler's version and its flags. */
 export function sourceDigest(sources) {
   const hash = createHash('sha256');
-  hash.update(JSON.stringify([compilerVersion(), FLAGS]));
+  hash.update(JSON.stringify([compilerVersion(), FLAGS, FORMAT]));
   for (const [name, text] of [...sources].sort(([a], [b]) => (a < b ? -1 : 1))) {
     hash.update(JSON.stringify([name, text]));
   }
@@ -69,7 +72,7 @@ export function moduleText(digest, bytes) {
 export const COMPILED_DIGEST = '${digest}';
 
 /** The compiled kernels: a WebAssembly module in base64. */
-export const COMPILED_KERNELS =
+export const COMPILED_KERNELS: string =
   '${Buffer.from(bytes).toString('base64')}';
 `;
 }
