@@ -3,7 +3,7 @@ import type { Places, Predictions } from '../places.js';
 import { createPredictions } from '../places.js';
 import { chebyshevNodes, interpolateLattice, lagrangeRows } from './chebyshev.js';
 import { evaluateExpansion, latticeRows } from './expansion.js';
-import { type Lattice, latticeIn, type Rect, sharesAcross, sharesDown } from './lattice.js';
+import { capOf, type Lattice, latticeIn, type Rect, sharesAcross, sharesDown } from './lattice.js';
 import { createMoments, type Moments } from './moments.js';
 import type { PointPredictor, ProductSource } from './point-predictor.js';
 import type { RoughTrend } from './rough-trend.js';
@@ -55,7 +55,7 @@ export class LeafEvaluator {
     const shares = chebyshevNodes(DIFFERENCE_ORDER);
     const nodes = latticeIn(rect, shares, shares, this.#locate);
     const tests = latticeIn(rect, TESTS_ACROSS, TESTS_DOWN, this.#locate);
-    if (!nodes.onEarth || !tests.onEarth) return null;
+    if (!nodes.onEarth || !tests.onEarth || this.#mayHideSpikes(rect, source)) return null;
     const atNodes = this.#products(source, nodes);
     const base = this.#points.baseMoments(nodes, atNodes);
     const averaged = this.#points.averagedMoments(nodes, atNodes);
@@ -67,6 +67,16 @@ export class LeafEvaluator {
     const wanted = this.#points.averagedMoments(tests, atTests);
     const missed = this.#points.worstMomentDifference(tests.count, guessed, wanted);
     return missed <= DIFFERENCE_SHARE ? difference : null;
+  }
+
+  /**
+   * A range shorter than the tile makes spikes at stations that test points may all miss: nothing is interpolated
+   * there.
+   */
+  #mayHideSpikes(rect: Rect, source: TileExpansions): boolean {
+    if (source.nearCount === 0) return false;
+    const cap = capOf(rect, this.#locate);
+    return cap === null || this.#facts.some(({ rangeKm }) => rangeKm < cap.radiusKm);
   }
 
   /**
@@ -86,9 +96,8 @@ export class LeafEvaluator {
     for (let top = 0; top < part.height; top += rowsAtOnce) {
       const height = Math.min(rowsAtOnce, part.height - top);
       const strip = { ...part, firstRow: part.firstRow + top, height };
-      const cells = cellsOf(strip, window);
-      if (!cells.some((cell) => wanted[cell] === 1)) continue;
-      const stripPlaces = pick(places, cells);
+      if (!anyWanted(strip, window, wanted)) continue;
+      const stripPlaces = pick(places, strip, window);
       const lattice = cellLattice(strip, stripPlaces);
       const products = this.#products(source, lattice);
       let moments: Moments[];
@@ -97,10 +106,10 @@ export class LeafEvaluator {
         moments = this.#points.baseMoments(lattice, products);
         for (const [f, field] of moments.entries()) this.#addDifference(field, difference, f, lattice);
       }
-      const answers = createPredictions(cells.length);
+      const answers = createPredictions(stripPlaces.count);
       const rough = this.#trend.roughValues(stripPlaces);
-      this.#points.predict(moments, rough, stripPlaces.elevationVarM2, cells.length, answers);
-      scatter(answers, cells, wanted, out);
+      this.#points.predict(moments, rough, stripPlaces.elevationVarM2, stripPlaces.count, answers);
+      scatter(answers, strip, window, wanted, out);
     }
   }
 
@@ -143,21 +152,33 @@ function subtract(a: Moments, b: Moments, count: number): Moments {
   return out;
 }
 
-/** Indices in the window of a strip's cells, row-major. */
-function cellsOf(strip: SurfaceWindow, window: SurfaceWindow): Int32Array {
-  const cells = new Int32Array(strip.width * strip.height);
-  for (let row = 0, k = 0; row < strip.height; row++) {
-    const start =
-      (strip.firstRow + row - window.firstRow) * window.width + strip.firstColumn - window.firstColumn;
-    for (let column = 0; column < strip.width; column++) cells[k++] = start + column;
-  }
-  return cells;
+/** Calls `copy` with where each row of a strip begins in its window and in the strip, and its length. */
+function forEachRow(
+  strip: SurfaceWindow,
+  window: SurfaceWindow,
+  copy: (inWindow: number, inStrip: number) => void,
+): void {
+  const first = (strip.firstRow - window.firstRow) * window.width + strip.firstColumn - window.firstColumn;
+  for (let row = 0; row < strip.height; row++) copy(first + row * window.width, row * strip.width);
 }
 
-function pick(places: Places, cells: Int32Array): Places {
-  const column = (from: Float64Array) => Float64Array.from(cells, (cell) => from[cell]);
+function anyWanted(strip: SurfaceWindow, window: SurfaceWindow, wanted: Uint8Array): boolean {
+  let found = false;
+  forEachRow(strip, window, (start) => {
+    found ||= wanted.subarray(start, start + strip.width).includes(1);
+  });
+  return found;
+}
+
+/** The places of a strip's cells. */
+function pick(places: Places, strip: SurfaceWindow, window: SurfaceWindow): Places {
+  const column = (from: Float64Array) => {
+    const to = new Float64Array(strip.width * strip.height);
+    forEachRow(strip, window, (start, k) => to.set(from.subarray(start, start + strip.width), k));
+    return to;
+  };
   return {
-    count: cells.length,
+    count: strip.width * strip.height,
     lonDeg: column(places.lonDeg),
     latDeg: column(places.latDeg),
     elevationM: column(places.elevationM),
@@ -177,10 +198,18 @@ function cellLattice(strip: SurfaceWindow, places: Places): Lattice {
   };
 }
 
-function scatter(answers: Predictions, cells: Int32Array, wanted: Uint8Array, out: Predictions): void {
+function scatter(
+  answers: Predictions,
+  strip: SurfaceWindow,
+  window: SurfaceWindow,
+  wanted: Uint8Array,
+  out: Predictions,
+): void {
   for (const name of ['d18O', 'd2H', 'varD18O', 'varD2H', 'cov'] as const) {
     const from = answers[name];
     const to = out[name];
-    for (let k = 0; k < cells.length; k++) if (wanted[cells[k]] === 1) to[cells[k]] = from[k];
+    forEachRow(strip, window, (start, k) => {
+      for (let i = 0; i < strip.width; i++) if (wanted[start + i] === 1) to[start + i] = from[k + i];
+    });
   }
 }

@@ -41,29 +41,34 @@ export class PointPredictor {
 
   /** One moments object a field, of its heaviest node alone. */
   baseMoments(lattice: Lattice, products: ProductSource): Moments[] {
-    return this.#bases.map((system) => this.#moments(system, lattice, products));
+    const smooth = this.#smoothRows(lattice);
+    return this.#bases.map((system) => this.#moments(system, lattice.count, smooth, products));
   }
 
   /** One moments object a field, averaged over its nodes. */
   averagedMoments(lattice: Lattice, products: ProductSource): Moments[] {
+    const smooth = this.#smoothRows(lattice);
     return this.#bases.map((baseSystem, field) => {
-      const base = this.#moments(baseSystem, lattice, products);
+      const base = this.#moments(baseSystem, lattice.count, smooth, products);
       const systems = this.#facts.flatMap((facts, s) => (facts.field === field ? [s] : []));
       if (systems.length === 1) return base;
       const average = new MomentAverage(base, lattice.count);
       for (const system of systems) {
-        const node = system === baseSystem ? base : this.#moments(system, lattice, products);
+        const node = system === baseSystem ? base : this.#moments(system, lattice.count, smooth, products);
         average.add(this.#facts[system].weight, node);
       }
       return average.finish();
     });
   }
 
-  #moments(system: number, lattice: Lattice, products: ProductSource): Moments {
-    const { count, latDeg } = lattice;
-    const { columnCount, roughColumns } = this.#trend;
-    const smooth = new Float64Array(count * columnCount);
+  #smoothRows({ count, latDeg }: Lattice): Float64Array {
+    const smooth = new Float64Array(count * this.#trend.columnCount);
     this.#trend.smoothRows(latDeg, count, smooth);
+    return smooth;
+  }
+
+  #moments(system: number, count: number, smooth: Float64Array, products: ProductSource): Moments {
+    const { roughColumns } = this.#trend;
     const out = createMoments(count, roughColumns.length);
     systemMoments(this.#facts[system], products(system), smooth, roughColumns, count, out);
     return out;

@@ -1,6 +1,6 @@
 import type { Isoscape } from '../isoscape.js';
 import type { Places } from '../places.js';
-import { trendRows, writeTrendRow } from '../trend.js';
+import { type TrendColumns, type TrendPlaces, trendRows, writeTrendRow } from '../trend.js';
 
 /**
  * The trend of an isoscape split in what is smooth in place (intercept and zonal terms, functions of latitude) and
@@ -26,9 +26,8 @@ export function splitTrend(isoscape: Isoscape): RoughTrend {
   for (let c = 1; c < columnCount; c++) {
     if (terms[c - 1] === 'elevation' || c >= firstCovariate) roughColumns.push(c);
   }
-  const pickRough = (rows: Float64Array, count: number) =>
-    roughColumns.map((c) => Float64Array.from({ length: count }, (_, k) => rows[k * columnCount + c]));
-  const ofStations = pickRough(trendRows(isoscape, stations), stations.id.length);
+  const roughTerms = { terms: roughColumns.map((c) => terms[c - 1]), covariates };
+  const ofStations = roughValues(roughTerms, stations, stations.id.length);
   const corner = (choose: (a: number, b: number) => number) =>
     Float64Array.from(ofStations, (column) => column.reduce((a, b) => choose(a, b)));
   return {
@@ -40,7 +39,17 @@ export function splitTrend(isoscape: Isoscape): RoughTrend {
         for (const c of roughColumns) out[k * columnCount + c] = 0;
       }
     },
-    roughValues: (places) => pickRough(trendRows(isoscape, places, places.count), places.count),
+    roughValues: (places) => roughValues(roughTerms, places, places.count),
     roughCorners: roughColumns.length === 0 ? [new Float64Array(0)] : [corner(Math.min), corner(Math.max)],
   };
+}
+
+function roughValues(rough: TrendColumns, places: TrendPlaces, count: number): Float64Array[] {
+  const rows = trendRows(rough, places, count);
+  const width = rough.terms.length + 1;
+  return rough.terms.map((_, i) => {
+    const column = new Float64Array(count);
+    for (let k = 0; k < count; k++) column[k] = rows[k * width + i + 1];
+    return column;
+  });
 }
