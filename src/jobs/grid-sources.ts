@@ -37,7 +37,7 @@ export interface GroundNames {
  * Opens the files; none stays open where one cannot be read. Throws what `openElevation`, `openIsoscapeCovariates`,
  * `openMask` and `openTemplate` throw.
  *
- * @param known where the files were opened before, in another thread: the elevations are then not hashed again
+ * @param known where the files were opened before, in another thread: rasters are then not hashed again
  */
 export async function openGroundSources(
   paths: GroundPaths,
@@ -56,7 +56,11 @@ export async function openGroundSources(
     const template = paths.templatePath === null ? null : await openTemplate(paths.templatePath);
     if (template !== null) open.push(() => template.close());
     const mask = paths.maskPath === null ? null : await openMask(paths.maskPath);
-    const covariates = await openIsoscapeCovariates(isoscape, paths.covariates);
+    const files = paths.covariates.map((file) => {
+      const source = known?.covariates.find(({ name }) => name === file.name)?.source;
+      return source === undefined ? file : { ...file, source };
+    });
+    const covariates = await openIsoscapeCovariates(isoscape, files);
     open.push(() => closeCovariates(covariates));
     return { elevation, covariates: covariates.filter((each) => each !== null), mask, template, close };
   } catch (error) {

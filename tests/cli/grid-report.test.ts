@@ -1,0 +1,89 @@
+import { Writable } from 'node:stream';
+import { afterEach, describe, expect, it, vi } from 'vitest';
+import { createContext } from '../../src/cli/context.js';
+import { readGridOptions } from '../../src/cli/grid/grid-options.js';
+import { gridReport } from '../../src/cli/grid/grid-report.js';
+import { createProgress } from '../../src/cli/progress.js';
+import type { GridResult } from '../../src/jobs/index.js';
+
+const options = readGridOptions({
+  output: 'rain.tif',
+  covariate: [],
+  target: 'site',
+  tolerance: '0.005',
+  tile: '512',
+});
+
+const result = (change: Partial<GridResult>): GridResult => ({
+  width: 10,
+  height: 10,
+  bands: [],
+  counts: {
+    predicted: 60,
+    impossible: 0,
+    masked: 30,
+    sea: 7,
+    offEarth: 0,
+    withoutElevation: 3,
+    withoutCovariate: 0,
+    flagged: 12,
+    byFlag: [10, 0, 5, 0, 0, 0],
+  },
+  check: {
+    cells: 40,
+    largest: { d18O: 0.001, d18O_se: 0.0002, d2H: 0.02, d2H_se: 0.01, dexcess: 0.003, dexcess_se: 0 },
+  },
+  ground: { elevation: 'dem.tif sha256:0', covariates: [], mask: null, template: null, notes: ['look here'] },
+  items: {},
+  files: [],
+  ...change,
+});
+
+describe('gridReport', () => {
+  it('says what became of the cells, and the largest error found', () => {
+    const text = gridReport(options, result({})).join('\n');
+    expect(text).toContain('10 × 10 cells, 60 of them with a value');
+    expect(text).toContain(
+      'nodata: 30 not asked for (mask or template), 7 sea, 3 without elevation in dem.tif',
+    );
+    expect(text).toContain('12 cells lean on little (outside-hull 10, elevation-beyond-stations 5)');
+    expect(text).toContain('note: look here');
+    expect(text).toContain('largest error on 40 cells computed again exactly: d18O 1.0e-3');
+    expect(text).not.toContain('WARNING');
+  });
+
+  it('warns where a value missed the tolerance', () => {
+    const { check } = result({});
+    const bad = { ...check, largest: { ...check.largest, d18O_se: 0.0051, d2H: 0.0399 } };
+    const text = gridReport(options, result({ check: bad })).join('\n');
+    expect(text).toMatch(/WARNING: d18O_se missed the tolerance/);
+  });
+});
+
+describe('createProgress with a forecast', () => {
+  afterEach(() => {
+    vi.useRealTimers();
+  });
+
+  it('tells the time left once it can be told', () => {
+    vi.useFakeTimers();
+    let shown = '';
+    const stream = new Writable({
+      write(chunk: Buffer, _encoding, done) {
+        shown = chunk.toString();
+        done();
+      },
+    });
+    const context = createContext({ stdout: stream, stderr: stream, isTty: true });
+    const progress = createProgress(context, 'grid', true);
+    vi.advanceTimersByTime(1000);
+    progress.update(10, 1000);
+    expect(shown).not.toContain('left');
+    vi.advanceTimersByTime(9000);
+    progress.update(100, 1000);
+    expect(shown).toContain('grid 100/1,000 (10 %) about 2 min left');
+    vi.advanceTimersByTime(10_000);
+    progress.update(500, 1000);
+    expect(shown).toContain('about 20 s left');
+  });
+});
