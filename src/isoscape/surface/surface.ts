@@ -36,7 +36,10 @@ export interface SurfaceOptions {
   readonly exact: boolean;
 }
 
-/** An isoscape laid over a grid. Answers depend on the isoscape, the grid and the options only. */
+/**
+ * An isoscape laid over a grid. Answers depend on the isoscape, the grid and the options; on windows and wanted cells
+ * only by rounding, where a cell is predicted by itself.
+ */
 export interface Surface {
   /**
    * Predicts the cells of a window where `wanted` is 1.

