@@ -1,6 +1,7 @@
 import { createRequire } from 'node:module';
 import proj4 from 'proj4';
 import { RainprintError } from '../errors.js';
+import { withUsableShift } from './datum-shifts.js';
 
 /** A coordinate reference system as plain data: can be handed to a worker, and needs no look-up there. */
 export interface FrameCrs {
@@ -92,9 +93,10 @@ function kindOf(entry: EpsgEntry, epsg: number): 'geographic' | 'projected' {
 function usableDefinition(entry: EpsgEntry, epsg: number): string {
   if (entry.proj4 === null) throw unsupported(epsg, entry, 'the registry has no proj4 definition of it');
   // Great Britain's shift as seven parameters, good to 5 m, stands in for the grid of shifts (proj4's own table)
-  const definition = entry.proj4
-    .replace('+ellps=airy +nadgrids=OSTN15_NTv2_OSGBtoETRS.gsb', '+datum=OSGB36')
+  const definition = withUsableShift(epsg, entry.proj4)
+    ?.replace('+ellps=airy +nadgrids=OSTN15_NTv2_OSGBtoETRS.gsb', '+datum=OSGB36')
     .replace(' +type=crs', '');
+  if (definition === undefined) throw unsupported(epsg, entry, 'its shift of datum is not known well enough');
   if (/\+nadgrids=(?!@null)/.test(definition)) {
     throw unsupported(epsg, entry, 'its datum needs a file of grid shifts, which is not at hand');
   }

@@ -5,6 +5,7 @@ import { expect, it } from 'vitest';
 import { bundledElevationPath, openElevation } from '../../src/raster/index.js';
 import { describeWithTool, runTool } from '../support/outside-tool.js';
 import { scratchFolder } from '../support/scratch.js';
+import { sampleLonLat } from './elevation-rasters.js';
 import { corner, geoKeys, utm, writeHandMade } from './hand-made-tiff.js';
 
 const folder = scratchFolder();
@@ -63,7 +64,7 @@ describeWithTool('gdalwarp', 'elevations, held against GDAL', () => {
     await tiff.close();
     const grid = await openElevation(bundledElevationPath());
     const side = Math.round(6 / cellDeg);
-    const ours = await grid.sampleGrid({ westDeg: 10, northDeg: 26, cellDeg, width: side, height: side });
+    const ours = await sampleLonLat(grid, { westDeg: 10, northDeg: 26, cellDeg, width: side, height: side });
     await grid.close();
     expect(theirs).toHaveLength(side * side);
     for (const [k, elevationM] of ours.elevationM.entries()) {

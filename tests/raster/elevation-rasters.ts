@@ -1,6 +1,6 @@
 import { join } from 'node:path';
 import { afterAll } from 'vitest';
-import { type ElevationGrid, openElevation, writeGeoTiff } from '../../src/raster/index.js';
+import { type ElevationGrid, epsgCrs, openElevation, writeGeoTiff } from '../../src/raster/index.js';
 import { scratchFolder } from '../support/scratch.js';
 import { writeHandMade } from './hand-made-tiff.js';
 
@@ -62,3 +62,19 @@ export async function handMade(made: Parameters<typeof writeHandMade>[1]): Promi
 
 /** The whole Earth in cells of 10°. */
 export const WORLD = { width: 36, height: 18, westDeg: -180, northDeg: 90, cellDeg: 10 };
+
+/** Elevation of square longitude/latitude cells, all of them as one window. */
+export function sampleLonLat(grid: ElevationGrid, { width, height, westDeg, northDeg, cellDeg }: Layout) {
+  return grid.sampleFrame(
+    {
+      width,
+      height,
+      crs: epsgCrs(4326),
+      originX: westDeg,
+      originY: northDeg,
+      cellWidth: cellDeg,
+      cellHeight: cellDeg,
+    },
+    { firstColumn: 0, firstRow: 0, width, height },
+  );
+}

@@ -1,10 +1,10 @@
 import proj4 from 'proj4';
 import { describe, expect, it } from 'vitest';
 import { seededUniform } from '../reference/seeded.js';
-import { gridOf, handMade, WORLD } from './elevation-rasters.js';
+import { gridOf, handMade, sampleLonLat, WORLD } from './elevation-rasters.js';
 import { corner, utm } from './hand-made-tiff.js';
 
-describe('sampleGrid', () => {
+describe('sampleFrame', () => {
   const uniform = seededUniform(20240413);
   const rough = Array.from({ length: WORLD.width * WORLD.height }, () =>
     uniform() < 0.3 ? Number.NaN : uniform() * 3000,
@@ -13,7 +13,7 @@ describe('sampleGrid', () => {
 
   it('is the raster itself on its own cells, variances as at sites', async () => {
     const grid = await roughGrid();
-    const { elevationM, varianceM2 } = await grid.sampleGrid(WORLD);
+    const { elevationM, varianceM2 } = await sampleLonLat(grid, WORLD);
     for (let k = 0; k < rough.length; k++) {
       const place = await grid.sample(-175 + (k % 36) * 10, 85 - Math.floor(k / 36) * 10);
       if (place.kind !== 'land' || place.from !== 'cell') {
@@ -31,7 +31,7 @@ describe('sampleGrid', () => {
   it('is the mean over larger cells, nodata where less than half is land', async () => {
     const grid = await roughGrid();
     const coarse = { westDeg: -180, northDeg: 90, cellDeg: 30, width: 12, height: 6 };
-    const { elevationM, varianceM2 } = await grid.sampleGrid(coarse);
+    const { elevationM, varianceM2 } = await sampleLonLat(grid, coarse);
     for (let k = 0; k < 72; k++) {
       const cells = Array.from({ length: 9 }, (_, n) => {
         const column = (k % 12) * 3 + (n % 3);
@@ -51,7 +51,7 @@ describe('sampleGrid', () => {
   it('is bilinear on smaller cells', async () => {
     const grid = await gridOf(WORLD, (column, row) => 40 * column + 3 * row);
     const fine = { westDeg: 0, northDeg: 20, cellDeg: 2.5, width: 8, height: 8 };
-    const { elevationM } = await grid.sampleGrid(fine);
+    const { elevationM } = await sampleLonLat(grid, fine);
     for (let k = 0; k < 64; k++) {
       const lonDeg = 1.25 + (k % 8) * 2.5;
       const latDeg = 18.75 - Math.floor(k / 8) * 2.5;
@@ -61,9 +61,9 @@ describe('sampleGrid', () => {
 
   it('runs over the antimeridian without a seam, as the same cells asked for elsewhere', async () => {
     const grid = await roughGrid();
-    const across = await grid.sampleGrid({ westDeg: 160, northDeg: 40, cellDeg: 4, width: 10, height: 5 });
-    const west = await grid.sampleGrid({ westDeg: 160, northDeg: 40, cellDeg: 4, width: 5, height: 5 });
-    const east = await grid.sampleGrid({ westDeg: -180, northDeg: 40, cellDeg: 4, width: 5, height: 5 });
+    const across = await sampleLonLat(grid, { westDeg: 160, northDeg: 40, cellDeg: 4, width: 10, height: 5 });
+    const west = await sampleLonLat(grid, { westDeg: 160, northDeg: 40, cellDeg: 4, width: 5, height: 5 });
+    const east = await sampleLonLat(grid, { westDeg: -180, northDeg: 40, cellDeg: 4, width: 5, height: 5 });
     for (let row = 0; row < 5; row++) {
       const joined = [
         ...west.elevationM.slice(row * 5, row * 5 + 5),
@@ -78,7 +78,7 @@ describe('sampleGrid', () => {
 
   it('leaves cells outside the raster without elevation', async () => {
     const grid = await gridOf({ width: 4, height: 4, westDeg: 10, northDeg: 4, cellDeg: 1 }, () => 7);
-    const { elevationM } = await grid.sampleGrid({
+    const { elevationM } = await sampleLonLat(grid, {
       westDeg: 9,
       northDeg: 5,
       cellDeg: 1,
@@ -104,7 +104,7 @@ describe('sampleGrid', () => {
     const toLonLat = proj4('+proj=utm +zone=32 +datum=WGS84', 'EPSG:4326');
     const [lonDeg, latDeg] = toLonLat.forward([x0 + 20_000, y0 - 20_000]) as [number, number];
     const asked = { westDeg: lonDeg, northDeg: latDeg, cellDeg: 0.005, width: 8, height: 8 };
-    const { elevationM } = await grid.sampleGrid(asked);
+    const { elevationM } = await sampleLonLat(grid, asked);
     for (let k = 0; k < 64; k++) {
       const at = toLonLat.inverse([
         lonDeg + ((k % 8) + 0.5) * 0.005,
