@@ -34,7 +34,7 @@ def fit(request, x, z):
     ) + WhiteKernel(start["nugget"], (1e-6, 1e3))
     process = GaussianProcessRegressor(kernel, alpha=0.0, n_restarts_optimizer=0, normalize_y=False)
     begin, cpu_begin = time.perf_counter(), time.process_time()
-    process.fit(x, z)
+    process.fit(x, z[request["field"]])
     seconds, cpu_seconds = time.perf_counter() - begin, time.process_time() - cpu_begin
     fitted = process.kernel_
     return {
@@ -50,7 +50,7 @@ def fit(request, x, z):
 
 data = json.loads(sys.stdin.readline())
 x = numpy.array(data["x"]).reshape(-1, 3)
-z = numpy.array(data["z"])
+z = numpy.array(data["z"])  # one row a field
 print(json.dumps({"libraries": libraries()}), flush=True)
 for line in sys.stdin:
     print(json.dumps(fit(json.loads(line), x, z)), flush=True)

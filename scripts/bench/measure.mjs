@@ -24,10 +24,10 @@ export function median(values) {
   return sorted.length % 2 === 1 ? sorted[middle] : (sorted[middle - 1] + sorted[middle]) / 2;
 }
 
-/** `median (min to max)` in seconds. */
-export function spread(seconds) {
-  const show = (value) => value.toFixed(value < 10 ? 3 : 1);
-  return `${show(median(seconds))} s (${show(Math.min(...seconds))} to ${show(Math.max(...seconds))})`;
+/** `median (min to max)` in seconds, or in another unit of which a second has `perSecond`. */
+export function spread(seconds, perSecond = 1, unit = 's') {
+  const show = (value) => (value * perSecond).toFixed(value * perSecond < 10 ? 3 : 1);
+  return `${show(median(seconds))} ${unit} (${show(Math.min(...seconds))} to ${show(Math.max(...seconds))})`;
 }
 
 /** What measured, and how busy it was with other work: beside a busy neighbour only ratios mean something. */

@@ -1,14 +1,19 @@
-// `npm run bench [-- name …] [--tiny]`: runs the benchmarks of this folder and writes RESULTS.md, one section each.
-// A benchmark is a file `<name>.bench.mjs` that exports `title` and `async bench({ tiny })`, which checks its result,
-// warms up, times, and returns the lines of its section. `--tiny` is for tests: small sizes, nothing is written.
+// `npm run bench [-- name …] [--tiny] [--cache FOLDER]`: runs the benchmarks of this folder and writes RESULTS.md, one section each.
+// A benchmark is a file `<name>.bench.mjs` that exports `title` and `async bench({ tiny, cache })`, which checks its
+// result, warms up, times, and returns the lines of its section. `--tiny` is for tests: small sizes, nothing is written.
+// `--cache` keeps the isoscapes of the grid benchmarks, whose fits take minutes; without it they are fitted each time.
 import { existsSync, readdirSync, readFileSync, writeFileSync } from 'node:fs';
 import { fileURLToPath } from 'node:url';
+import { parseArgs } from 'node:util';
 import { machineLines } from './measure.mjs';
 
 const folder = new URL('./', import.meta.url);
 const resultsPath = fileURLToPath(new URL('RESULTS.md', folder));
-const tiny = process.argv.includes('--tiny');
-const asked = process.argv.slice(2).filter((argument) => !argument.startsWith('--'));
+const { values, positionals: asked } = parseArgs({
+  allowPositionals: true,
+  options: { tiny: { type: 'boolean', default: false }, cache: { type: 'string' } },
+});
+const { tiny, cache } = values;
 const known = readdirSync(folder)
   .filter((name) => name.endsWith('.bench.mjs'))
   .map((name) => name.replace('.bench.mjs', ''));
@@ -22,7 +27,7 @@ const sections = readSections();
 for (const name of asked.length > 0 ? asked : known) {
   const { title, bench } = await import(new URL(`${name}.bench.mjs`, folder));
   console.log(`# ${title}`);
-  const lines = await bench({ tiny });
+  const lines = await bench({ tiny, cache });
   console.log(`${lines.join('\n')}\n`);
   sections.set(name, [`## ${title}`, '', ...lines, '', ...machineLines()].join('\n'));
 }
