@@ -9,7 +9,13 @@ import type { CliContext } from './context.js';
 import { parseCovariates } from './covariate-options.js';
 import { covariateNotes } from './fit/covariate-note.js';
 import { fitJson } from './fit/fit-json.js';
-import { parseFamily, parseFixes, parseSamplingScale, parseTermsOption } from './fit/fit-options.js';
+import {
+  parseFamily,
+  parseFixes,
+  parseLikelihood,
+  parseSamplingScale,
+  parseTermsOption,
+} from './fit/fit-options.js';
 import { fitReport } from './fit/fit-report.js';
 import { SUMMARY_LEVEL, summariseFit } from './fit/fit-summary.js';
 import { readingNotes } from './fit/reading-notes.js';
@@ -31,6 +37,7 @@ interface FitFlags extends StationFlags {
   readonly covariate: readonly string[];
   readonly fix: readonly string[];
   readonly samplingScale: string;
+  readonly likelihood: string;
   readonly json?: true;
 }
 
@@ -61,6 +68,11 @@ export function registerFit(program: Command, context: CliContext): void {
     .option('--covariate <name=file>', COVARIATE_HELP, collected, [])
     .option('--fix <field.parameter=number>', 'hold a parameter at a value (may be repeated)', collected, [])
     .option('--sampling-scale <scale>', 'factor on the sampling variances: a number in (0, 1], or fit', '1')
+    .option(
+      '--likelihood <kind>',
+      'exact, vecchia (approximate), or auto: exact up to 2,000 stations',
+      'auto',
+    )
     .option('--json', 'print the closing table as JSON (without -o: a trial that keeps nothing)')
     .addHelpText('after', HELP)
     .action((stationsPath: string, flags: FitFlags) => runFit(stationsPath, flags, context));
@@ -75,6 +87,7 @@ async function runFit(stationsPath: string, flags: FitFlags, context: CliContext
     terms: parseTermsOption(flags.terms, names),
     samplingScale: parseSamplingScale(flags.samplingScale),
     fix: parseFixes(flags.fix, isotopes),
+    likelihood: parseLikelihood(flags.likelihood),
     toolVersion: context.toolVersion,
   };
   const output = await isoscapeFile(flags, [stationsPath, ...covariateFiles.map(({ path }) => path)]);

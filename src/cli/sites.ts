@@ -61,6 +61,7 @@ export function registerSites(program: Command, context: CliContext): void {
     )
     .option('--elevation <file>', 'elevation GeoTIFF in metres (default: the bundled 5-arc-minute grid)')
     .option('--covariate <name=file>', COVARIATE_HELP, collected, [])
+    .option('--exact', 'use every station for every site, however many they are (slow beyond 1,500 stations)')
     .option('--plug-in', 'take estimated parameters for known (for comparison with other programs)')
     .option('--joint <file>', 'write the covariance between all sites and isotopes as JSON')
     .option('--record <file>', 'write the record of the run here (default: <output>.run.json)')

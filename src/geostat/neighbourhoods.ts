@@ -34,6 +34,8 @@ export class Neighbourhoods {
   readonly #geometry: FieldGeometry;
   readonly #stationCount: number;
   readonly #search: NearestSearch;
+  /** One for all cells where every station is in every neighbourhood. */
+  readonly #all: Int32Array | null;
   /** Cells met: null where one must be cut further. */
   readonly #cells = new Map<string, Int32Array | null>();
 
@@ -41,6 +43,8 @@ export class Neighbourhoods {
     this.#geometry = geometry;
     this.#stationCount = Math.min(stationCount, geometry.n);
     this.#search = nearestStations(geometry.positionsKm);
+    const everywhere = this.#stationCount === geometry.n;
+    this.#all = everywhere ? Int32Array.from({ length: geometry.n }, (_, i) => i) : null;
   }
 
   /** The places, each in its group. @param placesKm  count × 3 */
@@ -59,6 +63,7 @@ export class Neighbourhoods {
   }
 
   #cellOf(placesKm: Float64Array, place: number): Int32Array {
+    if (this.#all !== null) return this.#all;
     const [x, y, z] = [placesKm[3 * place], placesKm[3 * place + 1], placesKm[3 * place + 2]];
     for (let side = LARGEST_SIDE_KM; ; side /= 2) {
       const corner = [x, y, z].map((value) => Math.floor(value / side));
@@ -77,8 +82,7 @@ export class Neighbourhoods {
     const middle = Float64Array.from(corner, (index) => (index + 0.5) * side);
     const { indices, reachKm } = this.#search(middle, this.#stationCount);
     const radiusKm = (Math.sqrt(3) / 2) * side;
-    const fits = indices.length === this.#geometry.n || radiusKm <= CELL_RADIUS_SHARE * reachKm;
-    return fits || side <= SMALLEST_SIDE_KM ? indices : null;
+    return radiusKm <= CELL_RADIUS_SHARE * reachKm || side <= SMALLEST_SIDE_KM ? indices : null;
   }
 }
 

@@ -2,6 +2,7 @@ import { FieldSystem, positionsOnSphereKm } from '../geostat/index.js';
 import { backTransform } from './axes.js';
 import { isoscapeGeometry } from './field-average.js';
 import type { FittedField, Isoscape } from './isoscape.js';
+import { requireFactor } from './large-network.js';
 import { type Places, requireCovariates } from './places.js';
 import { trendRows } from './trend.js';
 
@@ -21,9 +22,13 @@ export interface Explanation {
 
 const STATIONS_SHOWN = 10;
 
-/** Takes predictions apart, at the optimum of the parameters (plug-in), for `sites --explain`. */
+/**
+ * Takes predictions apart, at the optimum of the parameters (plug-in) and from all stations, for `sites --explain`.
+ * @throws NETWORK_TOO_LARGE
+ */
 export function explainPlaces(isoscape: Isoscape, places: Places): Explanation[] {
   requireCovariates(isoscape, places);
+  requireFactor(isoscape.stations.id.length, 'taking a prediction apart');
   const geometry = isoscapeGeometry(isoscape);
   const fields = isoscape.isotopes === 'both' ? [isoscape.along, isoscape.across] : [isoscape.field];
   const systems = fields.map((field) => {

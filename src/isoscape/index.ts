@@ -30,7 +30,16 @@ export { fitIsoscape, MIN_STATIONS } from './fit.js';
 export type { FitOptions, FitProgress, OnFitProgress } from './fit-options.js';
 export { intervalHalfWidth } from './interval.js';
 export * from './isoscape.js';
+export {
+  EXACT_FIT_STATIONS,
+  EXACT_PREDICTION_STATIONS,
+  type LikelihoodChoice,
+  type LikelihoodUsed,
+  type StationsUsed,
+  usesNearest,
+} from './large-network.js';
 export { leaveOneOut } from './leave-one-out.js';
+export { type LargestError, measureNearestError, type NearestError } from './nearest-error.js';
 export { createPlaces, createPredictions, type Places, type Predictions } from './places.js';
 export { type PredictOptions, predictPlaces, type Target } from './predict.js';
 export { type JointPrediction, MAX_JOINT_PLACES, predictJoint } from './predict-joint.js';

@@ -1,6 +1,6 @@
 import { RainprintError } from '../../errors.js';
 import { COVARIANCE_FAMILIES, type CovarianceFamily, type FieldParameters } from '../../geostat/index.js';
-import type { FitOptions } from '../../isoscape/index.js';
+import type { FitOptions, LikelihoodChoice } from '../../isoscape/index.js';
 import { parseTerms } from '../../isoscape/trend.js';
 import type { IsotopeChoice } from '../../stations/index.js';
 
@@ -22,6 +22,14 @@ export function parseFamily(text: string): CovarianceFamily | 'auto' {
   const names: readonly string[] = ['auto', ...COVARIANCE_FAMILIES];
   if (names.includes(text)) return text as CovarianceFamily | 'auto';
   throw new RainprintError('OPTION_INVALID', `--family ${text}: use ${names.join(', ')}`, { value: text });
+}
+
+export function parseLikelihood(text: string): LikelihoodChoice {
+  const found = (['auto', 'exact', 'vecchia'] as const).find((each) => each === text);
+  if (found !== undefined) return found;
+  throw new RainprintError('OPTION_INVALID', `--likelihood ${text}: use auto, exact or vecchia`, {
+    value: text,
+  });
 }
 
 /** `auto`, `none`, or trend terms joined by commas; covariates are terms too, and always among them. */

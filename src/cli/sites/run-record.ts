@@ -1,7 +1,8 @@
 import { createHash } from 'node:crypto';
 import { basename } from 'node:path';
-import type { Isoscape } from '../../isoscape/index.js';
+import type { Isoscape, NearestError } from '../../isoscape/index.js';
 import type { ColumnOverrides } from '../../stations/index.js';
+import { nearestErrorRecord } from './nearest-note.js';
 import type { SitesOptions } from './sites-options.js';
 
 /** What a run of `sites` read, did and wrote: enough to run it again and to prove that nothing was changed. */
@@ -17,6 +18,8 @@ export interface RunFacts {
   readonly elevationGrid: string | null;
   /** The rasters covariates were looked up in. */
   readonly covariateRasters: readonly { readonly name: string; readonly source: string }[];
+  /** Null where all stations entered every prediction. */
+  readonly nearestError: NearestError | null;
   readonly siteCount: number;
   readonly problemCount: number;
   readonly toolVersion: string;
@@ -49,6 +52,7 @@ export function runRecord(facts: RunFacts, options: SitesOptions): string {
     ...(isoscape.covariates.length === 0
       ? {}
       : { covariates: { table_first: true, rasters: facts.covariateRasters } }),
+    stations: nearestErrorRecord(facts.nearestError),
     input: {
       file: basename(facts.sitesPath),
       sha256: facts.sitesSha256,

@@ -9,6 +9,7 @@ import { noteMissingElevation } from './elevation-note.js';
 import { createExplainer } from './explanations.js';
 import { assertJointSize, MAX_JOINT_SITES, writeJoint } from './joint-file.js';
 import { isNearStations, MisplacedSites } from './misplaced-sites.js';
+import { nearestErrorOf, reportNearestError } from './nearest-note.js';
 import { hashed, runRecord } from './run-record.js';
 import { createSiteCovariates, type SiteCovariates } from './site-covariates.js';
 import { createSiteElevations } from './site-elevation.js';
@@ -59,10 +60,13 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
     try {
       const predict = createSitePredictor(isoscape, input.support, elevations, covariates, options);
       await streamSites({ ...input, predict, outputs, options, tally, misplaced, context });
+      const nearestError = nearestErrorOf(isoscape, options.stations);
+      reportNearestError(nearestError, isoscape.stations.id.length, context);
       const facts = {
         ...call,
         isoscape,
         isoscapeSha256: input.isoscapeSha256,
+        nearestError,
         sitesSha256: await input.source.digest(),
         elevationGrid: elevations.gridSource(),
         covariateRasters: covariates.rasters,

@@ -41,7 +41,7 @@ export function createSitePredictor(
   options: SitesOptions,
 ): (rows: readonly SiteRow[]) => Promise<PredictedBatch> {
   const z = intervalHalfWidth(options.level);
-  const { target, plugIn } = options;
+  const { target, plugIn, stations } = options;
 
   return async (rows) => {
     const found: Location[] = [];
@@ -51,7 +51,7 @@ export function createSitePredictor(
     const located = rows.flatMap(({ site }, i) => (found[i].problem === null && site !== null ? [i] : []));
     const places = placesOf(isoscape, rows, found, located);
     const out = createPredictions(located.length);
-    if (located.length > 0) predictPlaces(isoscape, places, out, { target, plugIn });
+    if (located.length > 0) predictPlaces(isoscape, places, out, { target, plugIn, stations });
     const problems = found.map(({ problem }) => problem);
     for (const [k, i] of located.entries()) {
       const reason = impossibleValue(isoscape.isotopes, out.d18O[k], out.d2H[k]);

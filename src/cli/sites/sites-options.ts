@@ -1,5 +1,6 @@
 import { resolve } from 'node:path';
 import { RainprintError } from '../../errors.js';
+import type { StationsUsed } from '../../isoscape/index.js';
 import type { CovariateFile } from '../../jobs/covariate-files.js';
 import { parseCovariates } from '../covariate-options.js';
 import type { SitesFormat } from './site-writers.js';
@@ -14,6 +15,7 @@ export interface SitesFlags {
   readonly elevation?: string;
   readonly covariate: readonly string[];
   readonly plugIn?: true;
+  readonly exact?: true;
   readonly joint?: string;
   readonly record?: string;
   readonly column: readonly string[];
@@ -26,6 +28,8 @@ export interface SitesOptions {
   readonly level: number;
   readonly format: SitesFormat;
   readonly plugIn: boolean;
+  /** Stations that enter a prediction's residual part. */
+  readonly stations: StationsUsed;
   readonly skipBad: boolean;
   readonly elevationPath: string | null;
   readonly covariateFiles: readonly CovariateFile[];
@@ -45,6 +49,7 @@ export function readSitesOptions(flags: SitesFlags): SitesOptions {
     level: parseLevel(flags.level),
     format: oneOf('--format', flags.format, ['csv', 'geojson']),
     plugIn: flags.plugIn === true,
+    stations: flags.exact === true ? 'all' : 'auto',
     skipBad: flags.skipBad === true,
     elevationPath: flags.elevation ?? null,
     covariateFiles: parseCovariates(flags.covariate),

@@ -4,7 +4,7 @@ import type { FieldGeometry } from '../field-data.js';
 import type { FieldFit } from '../fit-field.js';
 import type { FieldParameters } from '../likelihood.js';
 import { NearestStations } from '../nearest-stations.js';
-import { type LocalStations, Neighbourhoods } from '../neighbourhoods.js';
+import { Neighbourhoods } from '../neighbourhoods.js';
 import { createBlupWorkspace, predictField } from '../predict-field.js';
 import { createLikelihood } from '../profiled-likelihood.js';
 import { parametersAt } from '../search-space.js';
@@ -101,26 +101,30 @@ function nearestProbes(
   { positionsKm, trendRows, count }: Probes,
 ): PredictProbes {
   const { p } = geometry;
-  const stationsOf: LocalStations[] = [];
-  for (const { stations, places } of new Neighbourhoods(geometry).groups(positionsKm, count)) {
-    for (const place of places) stationsOf[place] = stations;
-  }
-  const workspace = createBlupWorkspace(Math.max(...stationsOf.map(({ indices }) => indices.length)), p);
+  const groups = [...new Neighbourhoods(geometry).groups(positionsKm, count)].map(({ stations, places }) => {
+    const pick = (values: Float64Array, width: number) =>
+      Float64Array.from({ length: places.length * width }, (_, k) => {
+        const row = places[Math.floor(k / width)];
+        return values[row * width + (k % width)];
+      });
+    return { stations, places, positionsKm: pick(positionsKm, 3), trendRows: pick(trendRows, p) };
+  });
+  const workspace = createBlupWorkspace(
+    Math.max(...groups.map(({ stations }) => stations.indices.length)),
+    p,
+  );
+  const groupMean = new Float64Array(count);
+  const groupVariance = new Float64Array(count);
   return (set, mean, variance) => {
     const network = new NearestStations(geometry, family, set, errorVariance, [z]);
-    for (const [k, stations] of stationsOf.entries()) {
+    for (const { stations, places, ...at } of groups) {
       const { system, data } = network.over(stations);
-      const at = (values: Float64Array, width: number) => values.subarray(k * width, (k + 1) * width);
-      predictField(
-        system,
-        at(positionsKm, 3),
-        at(trendRows, p),
-        1,
-        data,
-        [at(mean, 1)],
-        at(variance, 1),
-        workspace,
-      );
+      const size = places.length;
+      predictField(system, at.positionsKm, at.trendRows, size, data, [groupMean], groupVariance, workspace);
+      for (const [k, place] of places.entries()) {
+        mean[place] = groupMean[k];
+        variance[place] = groupVariance[k];
+      }
     }
   };
 }
