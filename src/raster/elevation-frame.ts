@@ -108,7 +108,7 @@ async function fillTurned(
     for (let row = part.row; row < part.row + part.height; row++) {
       for (let column = part.column; column < part.column + part.width; column++) {
         const k = row * window.width + column;
-        if (!isInside(prints, k, width, height)) continue;
+        if (!isInside(prints, k, width, height, seam)) continue;
         box.x = seam === null ? prints.x[k] : unwrapped(prints.x[k], range.seamFrom, seam);
         box.y = prints.y[k];
         box.width = prints.boxWidth[k];
@@ -180,7 +180,7 @@ function turnedRange(
   for (let row = part.row; row < part.row + part.height; row++) {
     for (let column = part.column; column < part.column + part.width; column++) {
       const k = row * stride + column;
-      if (!isInside(prints, k, rasterWidth, rasterHeight)) continue;
+      if (!isInside(prints, k, rasterWidth, rasterHeight, seam)) continue;
       if (Number.isNaN(seamFrom)) seamFrom = prints.x[k];
       const x = seam === null ? prints.x[k] : unwrapped(prints.x[k], seamFrom, seam);
       const y = prints.y[k];
@@ -201,8 +201,16 @@ function unwrapped(x: number, from: number, turnCells: number): number {
   return x - Math.round((x - from) / turnCells) * turnCells;
 }
 
-function isInside(prints: TurnedFootprints, k: number, width: number, height: number): boolean {
-  return prints.x[k] >= 0 && prints.x[k] < width && prints.y[k] >= 0 && prints.y[k] < height;
+/** Of a raster without a seam every column is one of its own: rounding may put a position on the seam's far side. */
+function isInside(
+  prints: TurnedFootprints,
+  k: number,
+  width: number,
+  height: number,
+  seam: number | null,
+): boolean {
+  const inColumns = seam === null ? prints.x[k] >= 0 && prints.x[k] < width : !Number.isNaN(prints.x[k]);
+  return inColumns && prints.y[k] >= 0 && prints.y[k] < height;
 }
 
 /** Cut across the side that is longer on the raster. */

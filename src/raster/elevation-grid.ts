@@ -1,4 +1,5 @@
 import { RainprintError } from '../errors.js';
+import { cellIndex } from './axis-footprints.js';
 import { boxMean, type CellRange, cellAt, landSpread } from './elevation-cells.js';
 import { frameSampler } from './elevation-frame.js';
 import { readElevationWindow } from './elevation-window.js';
@@ -6,7 +7,7 @@ import type { FrameElevation } from './frame-elevation.js';
 import type { CellWindow, GridFrame } from './grid-frame.js';
 import { RasterBlocks } from './raster-blocks.js';
 import { openRaster, type RasterFile } from './raster-file.js';
-import { type CellBoxes, type LonLatGrid, placeRaster, type RasterPlacement } from './raster-placement.js';
+import { placeRaster, type RasterPlacement } from './raster-placement.js';
 
 /** The height of a place, or why there is none. */
 export type ElevationSample =
@@ -21,12 +22,6 @@ export type ElevationSample =
   | { readonly kind: 'sea' }
   | { readonly kind: 'outside' };
 
-/** Row-major over the grid asked for; NaN over sea and outside the raster. */
-export interface ElevationCells {
-  readonly elevationM: Float32Array;
-  readonly varianceM2: Float32Array;
-}
-
 export interface ElevationGrid {
   /** File name and the first digits of the SHA-256 of its bytes: what elevations are traced back to. */
   readonly source: string;
@@ -36,25 +31,14 @@ export interface ElevationGrid {
    */
   sample(lonDeg: number, latDeg: number): Promise<ElevationSample>;
   /**
-   * Mean elevation of each cell's land (bilinear where the cell is smaller than the raster's). A cell is land where at
-   * least half of it is. `varianceM2` is the sample variance of the land cells inside the cell, or in the 3 × 3
-   * neighbourhood of its centre where that is wider.
-   */
-  sampleGrid(grid: LonLatGrid): Promise<ElevationCells>;
-  /**
-   * The same for the cells of a window of a frame in any CRS, with what stands there: land, sea, or nothing known.
-   * A footprint that is turned against the raster is taken as the box of the same area and spread.
+   * Mean elevation of the land in each cell of a window (bilinear where the cell is smaller than the raster's), in a
+   * frame of any CRS, and what stands there: land where at least half of the cell is, sea, or nothing known.
+   * `varianceM2` is the sample variance of the land cells inside the cell, or in the 3 × 3 neighbourhood of its centre
+   * where that is wider. A cell that is turned against the raster is taken as the box of the same area and spread.
    */
   sampleFrame(frame: GridFrame, window: CellWindow): Promise<FrameElevation>;
   close(): Promise<void>;
 }
-
-/** In cells: far below any size that matters, far above the rounding of degrees divided by cell sizes. */
-const ROUNDING = 1e-9;
-/** A window beyond this is read in parts. */
-const MAX_WINDOW_CELLS = 2 ** 22;
-/** One output cell over more elevation cells than this is refused. */
-const MAX_CELLS_IN_CELL = 2 ** 25;
 
 /**
  * Opens an elevation raster in metres: one band, north-up, longitude/latitude or a CRS of `rasterCrs`. Throws what
@@ -75,7 +59,6 @@ export async function openElevation(
     return {
       source: file.source,
       sample: (lonDeg, latDeg) => sampleAt(blocks, placement, lonDeg, latDeg),
-      sampleGrid: (grid) => sampleGrid(blocks, placement, grid),
       sampleFrame: frameSampler(blocks, placement),
       close: () => file.close(),
     };
@@ -108,116 +91,12 @@ async function sampleAt(
   return { kind: 'land', elevationM, varianceM2, from: 'cell' };
 }
 
-async function sampleGrid(
-  blocks: RasterBlocks,
-  placement: RasterPlacement,
-  grid: LonLatGrid,
-): Promise<ElevationCells> {
-  const count = grid.width * grid.height;
-  const out: ElevationCells = {
-    elevationM: new Float32Array(count).fill(Number.NaN),
-    varianceM2: new Float32Array(count).fill(Number.NaN),
-  };
-  const boxes = placement.gridPositions(grid);
-  const { width, height } = blocks.file;
-  const inside = (k: number) =>
-    boxes.x[k]! >= 0 && boxes.x[k]! < width && boxes.y[k]! >= 0 && boxes.y[k]! < height;
-  const fill = async (cells: number[]): Promise<void> => {
-    if (cells.length === 0) return;
-    const range = rangeOf(boxes, cells);
-    if (cellCount(range) > MAX_WINDOW_CELLS && cells.length > 1) {
-      const [left, right] = halves(boxes, cells, range);
-      await fill(left);
-      return fill(right);
-    }
-    checkCellsInCell(range, blocks.file.path);
-    const window = await readElevationWindow(blocks, range, placement.goesRound);
-    for (const k of cells) writeCell(window, boxes, k, out);
-  };
-  await fill(Array.from({ length: count }, (_, k) => k).filter(inside));
-  return out;
-}
-
-function writeCell(
-  window: Parameters<typeof boxMean>[0],
-  boxes: CellBoxes,
-  k: number,
-  out: ElevationCells,
-): void {
-  const [x, y, boxWidth, boxHeight] = [boxes.x[k]!, boxes.y[k]!, boxes.boxWidth[k]!, boxes.boxHeight[k]!];
-  if (boxMean(window, boxAround(x, y, boxWidth, boxHeight)).landShare < 0.5 - ROUNDING) return;
-  const mean = boxMean(window, boxAround(x, y, Math.max(1, boxWidth), Math.max(1, boxHeight)));
-  out.elevationM[k] = mean.elevationM;
-  out.varianceM2[k] = landSpread(window, spreadRange(boxes, k)).varianceM2;
-}
-
-/** The cells whose centres lie in the box, and the 3 × 3 neighbourhood of its centre. */
-function spreadRange(boxes: CellBoxes, k: number): CellRange {
-  const near = around(cellIndex(boxes.x[k]!), cellIndex(boxes.y[k]!));
-  const halfWidth = boxes.boxWidth[k]! / 2;
-  const halfHeight = boxes.boxHeight[k]! / 2;
-  return {
-    firstColumn: Math.min(near.firstColumn, Math.ceil(boxes.x[k]! - halfWidth - 0.5)),
-    lastColumn: Math.max(near.lastColumn, Math.ceil(boxes.x[k]! + halfWidth - 0.5) - 1),
-    firstRow: Math.min(near.firstRow, Math.ceil(boxes.y[k]! - halfHeight - 0.5)),
-    lastRow: Math.max(near.lastRow, Math.ceil(boxes.y[k]! + halfHeight - 0.5) - 1),
-  };
-}
-
-/** All raster cells the given grid cells look at, with one to spare on each side for boxes that cut cells. */
-function rangeOf(boxes: CellBoxes, cells: readonly number[]): CellRange {
-  const range = {
-    firstColumn: Number.POSITIVE_INFINITY,
-    lastColumn: Number.NEGATIVE_INFINITY,
-    firstRow: Number.POSITIVE_INFINITY,
-    lastRow: Number.NEGATIVE_INFINITY,
-  };
-  for (const k of cells) {
-    const one = spreadRange(boxes, k);
-    range.firstColumn = Math.min(range.firstColumn, one.firstColumn - 1);
-    range.lastColumn = Math.max(range.lastColumn, one.lastColumn + 1);
-    range.firstRow = Math.min(range.firstRow, one.firstRow - 1);
-    range.lastRow = Math.max(range.lastRow, one.lastRow + 1);
-  }
-  return range;
-}
-
-/** Splits along the longer side of the range, so that a grid across the raster's seam falls into two small ones. */
-function halves(boxes: CellBoxes, cells: readonly number[], range: CellRange): [number[], number[]] {
-  const wide = range.lastColumn - range.firstColumn >= range.lastRow - range.firstRow;
-  const at = wide ? boxes.x : boxes.y;
-  const middle = wide ? (range.firstColumn + range.lastColumn) / 2 : (range.firstRow + range.lastRow) / 2;
-  const low = cells.filter((k) => at[k]! < middle);
-  if (low.length === 0 || low.length === cells.length) {
-    return [cells.slice(0, cells.length >> 1), cells.slice(cells.length >> 1)];
-  }
-  return [low, cells.filter((k) => at[k]! >= middle)];
-}
-
-/** A position on a border belongs to the cell to its right or below, however it was rounded. */
-function cellIndex(position: number): number {
-  return Math.floor(position + ROUNDING);
-}
-
 function around(column: number, row: number): CellRange {
   return { firstColumn: column - 1, lastColumn: column + 1, firstRow: row - 1, lastRow: row + 1 };
 }
 
 function boxAround(x: number, y: number, width: number, height: number) {
   return { left: x - width / 2, right: x + width / 2, top: y - height / 2, bottom: y + height / 2 };
-}
-
-function cellCount(range: CellRange): number {
-  return (range.lastColumn - range.firstColumn + 1) * (range.lastRow - range.firstRow + 1);
-}
-
-function checkCellsInCell(range: CellRange, path: string): void {
-  if (cellCount(range) <= MAX_CELLS_IN_CELL) return;
-  throw new RainprintError(
-    'ELEVATION_TOO_FINE',
-    `one cell of the grid covers ${cellCount(range)} cells of ${path}, at most ${MAX_CELLS_IN_CELL} are averaged; coarsen it first: gdalwarp -tr SIZE SIZE -r average in.tif out.tif`,
-    { path, maxCells: MAX_CELLS_IN_CELL },
-  );
 }
 
 function checkUnit(file: RasterFile): void {

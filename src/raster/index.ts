@@ -7,7 +7,6 @@ export type { RampKind } from './colour-ramp.js';
 export { type CovariateGrid, type CovariateSample, openCovariate } from './covariate-grid.js';
 export { type CrsForward, forwardOf } from './crs-forward.js';
 export {
-  type ElevationCells,
   type ElevationGrid,
   type ElevationSample,
   openElevation,
@@ -27,7 +26,6 @@ export {
 } from './geotiff-writer.js';
 export { type CellWindow, cellCentres, type GridFrame } from './grid-frame.js';
 export { roundToPowerOfTwo } from './power-of-two-rounding.js';
-export type { LonLatGrid } from './raster-placement.js';
 export { openRasterValues, type RasterValues } from './raster-values.js';
 export { type StacFile, type StacItem, type StacItemInput, type StacStyle, stacItem } from './stac-item.js';
 export { type BandStyle, bandStyle, colourMapText, sldText } from './style.js';

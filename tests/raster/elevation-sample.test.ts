@@ -21,6 +21,7 @@ describe('sample', () => {
     const grid = await gridOf(WORLD, (column) => (column === 0 ? 100 : column === 35 ? 300 : 0));
     expect(await heightAt(grid, 180, 5)).toBeCloseTo(200, 6);
     expect(await heightAt(grid, -180, 5)).toBeCloseTo(200, 6);
+    expect(await heightAt(grid, -180.00000000000003, 5)).toBeCloseTo(200, 6);
     expect(await heightAt(grid, 178, 5)).toBeCloseTo(240, 6);
     expect(await heightAt(grid, -178, 5)).toBeCloseTo(160, 6);
     // columns 34, 35, 0: 0, 300, 100, three rows each
