@@ -9,7 +9,7 @@ import { describeWithTool, runTool } from '../support/outside-tool.js';
 import { scratchFolder } from '../support/scratch.js';
 import { gridOf, handMade, WORLD } from './elevation-rasters.js';
 import { FRAMES, frameOf, whole } from './frames.js';
-import { corner, nodata, utm } from './hand-made-tiff.js';
+import { corner, LON_LAT, nodata, utm } from './hand-made-tiff.js';
 
 const folder = scratchFolder();
 const uniform = seededUniform(20240505);
@@ -143,6 +143,17 @@ describe('sampleFrame, cell by cell', () => {
       expect(elevationM[0]).toBeGreaterThan(750);
       expect(elevationM[0]).toBeLessThan(790);
     }
+  });
+
+  it('reads a raster of one cell, and one that is all sea floor', async () => {
+    const at = (heightM: number) =>
+      handMade({ width: 1, height: 1, values: [heightM], tags: [LON_LAT, ...corner(10, 50, 1, 1)] });
+    const frame = frameOf(4326, 9.5, 50, 0.5, 4, 2);
+    const one = await (await at(321)).sampleFrame(frame, whole(frame));
+    expect(Array.from(one.ground)).toEqual([2, 0, 0, 2, 2, 0, 0, 2]);
+    expect(Array.from(one.elevationM)).toEqual([NaN, 321, 321, NaN, NaN, 321, 321, NaN]);
+    const sea = await (await at(-3000)).sampleFrame(frame, whole(frame));
+    expect(Array.from(sea.ground)).toEqual([2, 1, 1, 2, 2, 1, 1, 2]);
   });
 
   it('needs no second hash of a file that is known', async () => {
