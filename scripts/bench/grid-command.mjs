@@ -48,10 +48,10 @@ export function runGrid(isoscapePath, outputPath, extra, threads = 2) {
   });
 }
 
-/** Runs it some times; with no repetition the run already made stands alone. */
-export async function repeatGrid(isoscapePath, outputPath, extra, repetitions, first) {
-  const runs = repetitions === 0 ? [first] : [];
-  for (let k = 0; k < repetitions; k++) runs.push(await runGrid(isoscapePath, outputPath, extra));
+/** The run already made, whose file was checked, and some more. */
+export async function repeatGrid(isoscapePath, outputPath, extra, more, first) {
+  const runs = [first];
+  for (let k = 0; k < more; k++) runs.push(await runGrid(isoscapePath, outputPath, extra));
   return {
     seconds: runs.map((run) => run.seconds),
     peakMb: Math.max(...runs.map((run) => run.peakMb ?? Number.NaN)),
