@@ -8,9 +8,11 @@ import { VecchiaFactor } from './vecchia-factor.js';
 import { VecchiaTrend } from './vecchia-trend.js';
 
 /**
- * Stations each station is conditioned on, in the likelihood and in the trend of a large network. Measured at 1,000
- * stations, four families, even and clustered, with and without nugget and errors: at 40 the optimum stands within
- * 0.22 standard errors of the exact one in every parameter, at 30 within 0.35, at 20 within 0.31, at 10 within 0.43.
+ * Stations each station is conditioned on, in the likelihood and in the trend of a large network. Measured on one
+ * network of 1,000 stations each, even and clustered, with and without nugget and errors, exponential and Matérn: at 40
+ * every parameter stands within 0.22 standard errors of the exact optimum, at 30 within 0.35, at 10 within 0.43. The
+ * spherical covariance has a kink at its range, which few neighbours tell badly: range within 1.5 standard errors (7 %)
+ * at 40 and 1.0 at 60, where the exact log-likelihood is 0.63 and 0.37 below its maximum.
  */
 export const CONDITIONING_NEIGHBOURS = 40;
 

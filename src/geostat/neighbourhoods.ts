@@ -17,7 +17,10 @@ export interface PlaceGroup {
 
 /**
  * Stations a neighbourhood holds, and the largest radius of its cell as a share of their reach: a place at the corner
- * of its cell still has every station within 1 − 0.35 of the reach. Chosen by measured error: see `NearestStations`.
+ * of its cell still has every station within 1 − 0.35 of the reach. Measured at 1,000 stations and 200 places, four
+ * families, even and clustered: means within 0.02 standard errors of those from all stations where the range is a small
+ * part of the network (0.11 spherical), 0.16 for the smoothest family at a range as wide as the network; standard
+ * errors within 0.3 %. With 100 stations the worst were 0.26 and 1.8 %.
  */
 export const NEIGHBOURHOOD_STATIONS = 256;
 const CELL_RADIUS_SHARE = 0.35;

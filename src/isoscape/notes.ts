@@ -25,11 +25,16 @@ export function describeFit(isoscape: Isoscape, stationsOfUnknownRecords: number
   ];
 }
 
-function likelihoodNotes({ likelihood, stations }: Isoscape): string[] {
+function likelihoodNotes({ likelihood, stations, family }: Isoscape): string[] {
   if (likelihood.method === 'exact') return [];
   return [
     `the likelihood is Vecchia's approximation: each of the ${stations.id.length} stations is conditioned on the ` +
       `${likelihood.neighbours} nearest of those before it in an order that spreads over the network`,
+    ...(family === 'spherical'
+      ? [
+          'this approximation tells the range of a spherical covariance to about one of its standard errors only',
+        ]
+      : []),
   ];
 }
 
