@@ -5,6 +5,7 @@ import { promisify } from 'node:util';
 import { describe, expect, it } from 'vitest';
 
 const TITLES = {
+  'big-network': 'big network: approximate fit, predictions from nearby stations',
   cog: 'cog: writing the file, seven bands',
   exact: 'exact: mean and variance of every cell, one field, one thread',
   'fine-grid': 'fine-grid: worldwide at 5′, a piece of land at 30″',
