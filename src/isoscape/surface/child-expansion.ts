@@ -1,3 +1,4 @@
+import { multiplyInto } from '../../kernels/index.js';
 import {
   type Expansion,
   farFunctionCount,
@@ -41,44 +42,43 @@ export function expandFromParent(
     const from = (head + kept[q]) * count;
     values.set(far.subarray(from, from + count), (head + q) * count);
   }
-  const precisionTimesC = scratch.array('precision times c', count);
+  const precisionTimesC = scratch.array('precision times c', parent.near.count * count);
+  multiplyLeaving(parent.near, leaving, c, count, scratch, precisionTimesC);
   for (const j of leaving) {
     addLeaving(parent.near, p, j, c, count, values);
-    multiplyRow(parent.near, j, leaving, c, count, precisionTimesC);
     const t = (head + j) * count;
-    for (let k = 0; k < count; k++) values[k] += c[j * count + k] * (2 * far[t + k] + precisionTimesC[k]);
+    const row = j * count;
+    for (let k = 0; k < count; k++) values[k] += c[row + k] * (2 * far[t + k] + precisionTimesC[row + k]);
   }
   for (let q = 0; q < kept.length; q++) {
-    multiplyRow(parent.near, kept[q], leaving, c, count, precisionTimesC);
     const t = (head + q) * count;
-    for (let k = 0; k < count; k++) values[t + k] += precisionTimesC[k];
+    const row = kept[q] * count;
+    for (let k = 0; k < count; k++) values[t + k] += precisionTimesC[row + k];
   }
   return { rect, order, near: pickNear(parent.near, kept, p), values };
 }
 
-/** out = Σ_l A_jl·c_l over the leaving stations. */
-function multiplyRow(
+/** out = Σ_l A_jl·c_l over the leaving stations, for every near station j: J × count. */
+function multiplyLeaving(
   near: NearStations,
-  j: number,
   leaving: Int32Array,
   c: Float64Array,
   count: number,
+  scratch: Scratch,
   out: Float64Array,
 ): void {
-  out.fill(0, 0, count);
-  let i = 0;
-  for (; i + 1 < leaving.length; i += 2) {
-    const a = near.precision[j * near.count + leaving[i]];
-    const b = near.precision[j * near.count + leaving[i + 1]];
-    const rowA = leaving[i] * count;
-    const rowB = leaving[i + 1] * count;
-    for (let k = 0; k < count; k++) out[k] += a * c[rowA + k] + b * c[rowB + k];
+  const width = leaving.length;
+  if (width === 0) {
+    out.fill(0, 0, near.count * count);
+    return;
   }
-  if (i < leaving.length) {
-    const a = near.precision[j * near.count + leaving[i]];
-    const row = leaving[i] * count;
-    for (let k = 0; k < count; k++) out[k] += a * c[row + k];
+  const columns = scratch.array('leaving columns', near.count * width);
+  const covariances = scratch.array('leaving covariances', width * count);
+  for (let l = 0; l < width; l++) {
+    for (let j = 0; j < near.count; j++) columns[j * width + l] = near.precision[j * near.count + leaving[l]];
+    covariances.set(c.subarray(leaving[l] * count, (leaving[l] + 1) * count), l * count);
   }
+  multiplyInto(columns, near.count, width, covariances, count, out);
 }
 
 /** The share of a leaving station in m, o and g. */

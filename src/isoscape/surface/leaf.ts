@@ -13,11 +13,13 @@ import type { SystemFacts } from './system-facts.js';
 import type { TileExpansions } from './tile-expansions.js';
 
 /** Nodes along a side for the difference between averaged and heaviest-node answers. */
-const DIFFERENCE_ORDER = 8;
+const DIFFERENCE_ORDER = 6;
 /** Share of the tolerance the interpolated difference may miss at the test points. */
 const DIFFERENCE_SHARE = 0.1;
 const TESTS_ACROSS = Float64Array.of(0, 0.265, 0.61, 0.98);
 const TESTS_DOWN = Float64Array.of(0.02, 0.39, 0.735, 1);
+/** Test points stand within a third of the radius of any station: spikes this wide show at one of them. */
+const SPIKE_SHARE = 0.6;
 /** Cells of a leaf evaluated together: their rows stay in the second-level cache. */
 const CELLS_AT_ONCE = 4096;
 
@@ -70,13 +72,13 @@ export class LeafEvaluator {
   }
 
   /**
-   * A range shorter than the tile makes spikes at stations that test points may all miss: nothing is interpolated
+   * A range much shorter than the tile makes spikes at stations that test points may all miss: nothing is interpolated
    * there.
    */
   #mayHideSpikes(rect: Rect, source: TileExpansions): boolean {
     if (source.nearCount === 0) return false;
     const cap = capOf(rect, this.#locate);
-    return cap === null || this.#facts.some(({ rangeKm }) => rangeKm < cap.radiusKm);
+    return cap === null || this.#facts.some(({ rangeKm }) => rangeKm < SPIKE_SHARE * cap.radiusKm);
   }
 
   /**

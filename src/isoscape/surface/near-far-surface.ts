@@ -13,14 +13,17 @@ import { TileCache } from './tile-cache.js';
 import { Expander, type TileExpansions } from './tile-expansions.js';
 
 /** Widest leaf whose cells may all be evaluated for every node; wider ones need an interpolated difference. */
-const PLAIN_LEAF_SIZE = 64;
+const PLAIN_LEAF_SIZE = 16;
 const MAX_LEAF_SIZE = 256;
 /** A cell costs the square of its near stations: with more than this a tile is quartered if it can be. */
 const MAX_LEAF_NEAR = 24;
 /** Tiles no wider than this are not quartered for their near stations' sake. */
 const MIN_LEAF_SIZE = 8;
-/** A tile with so few near stations serves its quarters as well as expansions of their own. */
-const FEW_NEAR = 10;
+/**
+ * Operations that expanding one system on a tile from its parent costs (measured). It pays where cells × near stations²,
+ * which is what a cell costs for each field, is more.
+ */
+const EXPANSION_OPERATIONS = 75_000;
 /** Tiles wider than a window are met again by the windows beside it. */
 const CACHE_BYTES = 48 * 2 ** 20;
 
@@ -40,7 +43,7 @@ export class NearFarSurface implements Surface {
   readonly #expander: Expander;
   readonly #leaves: LeafEvaluator;
   readonly #exact: Surface;
-  readonly #isAverage: boolean;
+  readonly #nodesPerField: number;
   readonly #tiles = new TileCache<KnownTile>(CACHE_BYTES);
 
   constructor(isoscape: Isoscape, grid: SurfaceGrid, options: SurfaceOptions) {
@@ -54,7 +57,7 @@ export class NearFarSurface implements Surface {
     this.#expander = new Expander(ready, facts, grid.locate, points, scratch);
     this.#leaves = new LeafEvaluator(facts, trend, points, grid.locate, scratch);
     this.#exact = createExactSurface(isoscape, options, 'auto');
-    this.#isAverage = facts.length > ready.fields.length;
+    this.#nodesPerField = facts.length / ready.fields.length;
   }
 
   predictWindow(window: SurfaceWindow, places: Places, wanted: Uint8Array, out: Predictions): void {
@@ -74,7 +77,7 @@ export class NearFarSurface implements Surface {
   }
 
   #bestExpansions(tile: Tile, source: TileExpansions | null): TileExpansions | null {
-    if (source !== null && (source.nearCount <= FEW_NEAR || tile.size < MIN_LEAF_SIZE)) return source;
+    if (source !== null && !this.#isWorthExpanding(tile, source)) return source;
     const key = tileKey(tile);
     const known = this.#tiles.get(key);
     if (known !== undefined) return known.expansions;
@@ -85,11 +88,16 @@ export class NearFarSurface implements Surface {
     return expansions;
   }
 
+  #isWorthExpanding({ size }: Tile, { nearCount }: TileExpansions): boolean {
+    if (size < MIN_LEAF_SIZE) return false;
+    return nearCount > MAX_LEAF_NEAR || (size * nearCount) ** 2 > EXPANSION_OPERATIONS * this.#nodesPerField;
+  }
+
   /** How the tile is evaluated as a leaf; null where it is better quartered. */
   #asLeaf(tile: Tile, best: TileExpansions): { readonly difference: Difference | null } | null {
     if (tile.size > MAX_LEAF_SIZE) return null;
     if (tile.size > MIN_LEAF_SIZE && best.nearCount > MAX_LEAF_NEAR) return null;
-    if (!this.#isAverage || tile.size <= MIN_LEAF_SIZE) return { difference: null };
+    if (this.#nodesPerField === 1 || tile.size <= MIN_LEAF_SIZE) return { difference: null };
     const difference = this.#leaves.difference(tileRect(tile, this.#grid), best);
     return difference === null && tile.size > PLAIN_LEAF_SIZE ? null : { difference };
   }

@@ -101,6 +101,15 @@ export class PointPredictor {
     );
   }
 
+  /** As `worstDifference`, of the heaviest nodes alone. */
+  worstBaseDifference(lattice: Lattice, a: ProductSource, b: ProductSource): number {
+    return this.worstMomentDifference(
+      lattice.count,
+      this.baseMoments(lattice, a),
+      this.baseMoments(lattice, b),
+    );
+  }
+
   worstMomentDifference(count: number, a: readonly Moments[], b: readonly Moments[]): number {
     const none = new Float64Array(count);
     const predict = (moments: readonly Moments[], rough: readonly Float64Array[]) => {

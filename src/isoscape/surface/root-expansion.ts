@@ -16,54 +16,68 @@ export interface RootExpansion {
 
 /**
  * Expands one system on a tile from its stations: the only place where triangular systems are solved, one right-hand
- * side a Chebyshev node or test point.
+ * side a Chebyshev node or test point, all at once.
  *
- * @param workspace  holds the system's factor in `matrix`
+ * @param points  nodes, then test points; @param nodeCount how many are nodes
+ * @param workspace  holds the system's factor in `matrix`, and room for the points in `block`
  */
 export function expandFromStations(
   { system, own, other }: RootSystem,
   facts: SystemFacts,
   rect: Rect,
   order: number,
-  nodes: Lattice,
-  tests: Lattice,
+  points: PointColumns,
+  nodeCount: number,
   nearIndices: Int32Array,
   workspace: DenseWorkspace,
 ): RootExpansion {
   const n = system.stationCount;
   const p = system.trendCount;
+  const { count } = points;
+  const { block } = workspace;
   const { inverseColumns, near } = gatherNear(system, own, other, nearIndices);
-  const functionCount = farFunctionCount(p) + near.count;
-  const values = new Float64Array(functionCount * nodes.count);
-  const exact = {
-    q: new Float64Array(tests.count),
-    m: new Float64Array(tests.count),
-    o: new Float64Array(tests.count),
-    g: new Float64Array(p * tests.count),
-  };
-  const solve = (lattice: Lattice, hidden: Int32Array, out: Products, t: Float64Array | null) => {
-    for (let first = 0; first < lattice.count; first += workspace.width) {
-      const count = Math.min(workspace.width, lattice.count - first);
-      fillCovariances(system, facts, lattice, first, count, hidden, workspace.block);
-      weigh(workspace.block, n, count, own.weights, out.m, first);
-      if (other !== null) weigh(workspace.block, n, count, other.weights, out.o, first);
-      workspace.solveLower(count);
-      sumSquares(workspace.block, n, count, out.q, first);
-      projectTrend(workspace.block, n, count, system.whitenedTrend, p, out.g, first, lattice.count);
-      if (t !== null && near.count > 0) {
-        const part = new Float64Array(near.count * count);
-        multiplyInto(inverseColumns, near.count, n, workspace.block, count, part);
-        for (let j = 0; j < near.count; j++) {
-          t.set(part.subarray(j * count, (j + 1) * count), j * lattice.count + first);
-        }
-      }
-    }
-  };
-  const column = (f: number, width = 1) => values.subarray(f * nodes.count, (f + width) * nodes.count);
-  const far = { q: column(0), m: column(1), o: column(2), g: column(3, p) };
-  solve(nodes, nearIndices, far, column(farFunctionCount(p), near.count));
-  solve(tests, new Int32Array(0), exact, null);
+  const at = productColumns(count, p);
+  fillCovariances(system, facts, points, nodeCount, nearIndices, block);
+  weigh(block, n, count, own.weights, at.m);
+  if (other !== null) weigh(block, n, count, other.weights, at.o);
+  workspace.solveLower(count);
+  sumSquares(block, n, count, at.q);
+  projectTrend(block, n, count, system.whitenedTrend, p, at.g);
+  const t = new Float64Array(near.count * count);
+  if (near.count > 0) multiplyInto(inverseColumns, near.count, n, block, count, t);
+  const values = new Float64Array((farFunctionCount(p) + near.count) * nodeCount);
+  const exact = productColumns(count - nodeCount, p);
+  splitRows([at.q, at.m, at.o], 1, count, nodeCount, values, 0, [exact.q, exact.m, exact.o]);
+  splitRows([at.g], p, count, nodeCount, values, 3, [exact.g]);
+  splitRows([t], near.count, count, nodeCount, values, farFunctionCount(p), [null]);
   return { expansion: { rect, order, near, values }, exact };
+}
+
+/** Points as the kernels take them. */
+export type PointColumns = Pick<Lattice, 'count' | 'positionsKm'>;
+
+function productColumns(count: number, p: number): Products {
+  const column = (width = 1) => new Float64Array(width * count);
+  return { q: column(), m: column(), o: column(), g: column(p) };
+}
+
+/** Rows of `count` points: their nodes go to `values` from function `first` on, the rest to `rests`. */
+function splitRows(
+  rows: readonly Float64Array[],
+  rowCount: number,
+  count: number,
+  nodeCount: number,
+  values: Float64Array,
+  first: number,
+  rests: readonly (Float64Array | null)[],
+): void {
+  for (const [index, from] of rows.entries()) {
+    for (let a = 0; a < rowCount; a++) {
+      const start = a * count;
+      values.set(from.subarray(start, start + nodeCount), (first + index * rowCount + a) * nodeCount);
+      rests[index]?.set(from.subarray(start + nodeCount, start + count), a * (count - nodeCount));
+    }
+  }
 }
 
 /** Columns of L⁻¹ belonging to near stations (J × n), and what follows: A_JJ, (AF)_J, weights. */
@@ -101,19 +115,18 @@ function gatherNear(
   return { inverseColumns, near };
 }
 
-/** Covariances of points with all stations but the hidden ones, whose rows are 0. */
+/** Covariances of points with the stations, 0 between a node and a near station. */
 function fillCovariances(
   system: FieldSystem,
   { family, sill, rangeKm }: SystemFacts,
-  lattice: Lattice,
-  first: number,
-  count: number,
-  hidden: Int32Array,
+  points: PointColumns,
+  nodeCount: number,
+  near: Int32Array,
   block: Float64Array,
 ): void {
   const { positionsKm, n } = system.geometry;
-  covarianceBlock(family, sill, rangeKm, positionsKm, n, lattice.positionsKm, first, count, block);
-  for (const i of hidden) block.fill(0, i * count, (i + 1) * count);
+  covarianceBlock(family, sill, rangeKm, positionsKm, n, points.positionsKm, 0, points.count, block);
+  for (const i of near) block.fill(0, i * points.count, i * points.count + nodeCount);
 }
 
 function weigh(
@@ -122,23 +135,20 @@ function weigh(
   count: number,
   weights: Float64Array,
   out: Float64Array,
-  offset: number,
 ): void {
-  out.fill(0, offset, offset + count);
   for (let i = 0; i < n; i++) {
     const w = weights[i];
-    for (let k = 0; k < count; k++) out[offset + k] += w * block[i * count + k];
+    for (let k = 0; k < count; k++) out[k] += w * block[i * count + k];
   }
 }
 
-function sumSquares(block: Float64Array, n: number, count: number, out: Float64Array, offset: number): void {
-  out.fill(0, offset, offset + count);
+function sumSquares(block: Float64Array, n: number, count: number, out: Float64Array): void {
   for (let i = 0; i < n; i++) {
-    for (let k = 0; k < count; k++) out[offset + k] += block[i * count + k] ** 2;
+    for (let k = 0; k < count; k++) out[k] += block[i * count + k] ** 2;
   }
 }
 
-/** g = (L⁻¹F)ᵀ·y: p rows, `stride` apart. */
+/** g = (L⁻¹F)ᵀ·y: p × count. */
 function projectTrend(
   block: Float64Array,
   n: number,
@@ -146,14 +156,11 @@ function projectTrend(
   whitenedTrend: Float64Array,
   p: number,
   out: Float64Array,
-  offset: number,
-  stride: number,
 ): void {
-  for (let a = 0; a < p; a++) out.fill(0, a * stride + offset, a * stride + offset + count);
   for (let i = 0; i < n; i++) {
     for (let a = 0; a < p; a++) {
       const f = whitenedTrend[i * p + a];
-      const row = a * stride + offset;
+      const row = a * count;
       for (let k = 0; k < count; k++) out[row + k] += f * block[i * count + k];
     }
   }

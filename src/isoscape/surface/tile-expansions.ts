@@ -24,7 +24,7 @@ export interface TileExpansions {
 }
 
 /** Nodes along a side: on tiles expanded from stations, and from their parents (smaller, hence smoother). */
-const ROOT_ORDER = 9;
+const ROOT_ORDER = 8;
 const CHILD_ORDERS = [6, 9] as const;
 /** Expanding wider caps costs more nodes than it saves. */
 const MAX_ROOT_RADIUS_KM = 3400;
@@ -42,11 +42,9 @@ const CHILD_SHARE = 0.05;
  */
 const LOCAL_STATIONS = 800;
 const LOCAL_REACH = 2;
-/** Right-hand sides solved together. */
-const COLUMNS_AT_ONCE = 128;
 /** Test points: corners, edges and the inside, between the nodes of the orders used. */
-const TESTS_ACROSS = Float64Array.of(0, 0.265, 0.61, 0.98);
-const TESTS_DOWN = Float64Array.of(0.02, 0.39, 0.735, 1);
+const TESTS_ACROSS = Float64Array.of(0, 0.39, 0.98);
+const TESTS_DOWN = Float64Array.of(0.02, 0.61, 1);
 
 /** Makes the expansions of tiles, and decides whether they are good enough. */
 export class Expander {
@@ -85,13 +83,13 @@ export class Expander {
     const nodes = this.#nodes(rect, ROOT_ORDER);
     const tests = latticeIn(rect, TESTS_ACROSS, TESTS_DOWN, this.#locate);
     if (!nodes.onEarth || !tests.onEarth) return null;
+    const points = { count: nodes.count + tests.count, positionsKm: joined(nodes, tests) };
     const roots: RootExpansion[] = [];
     for (const node of stations.nodes()) {
-      const workspace = this.#load(node.system.factor, node.system.stationCount);
+      const workspace = this.#load(node.system.factor, node.system.stationCount, points.count);
       const s = roots.length;
-      roots.push(
-        expandFromStations(node, this.#facts[s], rect, ROOT_ORDER, nodes, tests, near[s], workspace),
-      );
+      const facts = this.#facts[s];
+      roots.push(expandFromStations(node, facts, rect, ROOT_ORDER, points, nodes.count, near[s], workspace));
     }
     const made = describe(
       rect,
@@ -124,8 +122,12 @@ export class Expander {
     const rows = latticeRows(parent.rect, parent.order, tests);
     for (const order of CHILD_ORDERS) {
       const made = this.#expandChild(rect, order, cap, parent);
-      const missed = this.#missed(tests, made, (s) =>
-        evaluateExpansion(this.#facts[s], parent.bySystem[s], tests, rows, this.#scratch),
+      const rowsHere = latticeRows(made.rect, made.order, tests);
+      // The heaviest nodes stand for all: their neighbours' covariances are as smooth, and this is asked of every tile.
+      const missed = this.#points.worstBaseDifference(
+        tests,
+        (s) => evaluateExpansion(this.#facts[s], made.bySystem[s], tests, rowsHere, this.#scratch),
+        (s) => evaluateExpansion(this.#facts[s], parent.bySystem[s], tests, rows, this.#scratch),
       );
       if (missed <= CHILD_SHARE) return made;
     }
@@ -155,8 +157,8 @@ export class Expander {
     return latticeIn(rect, shares, shares, this.#locate);
   }
 
-  #load(factor: Float64Array, n: number): DenseWorkspace {
-    if (this.#workspace?.n !== n) this.#workspace = createDenseWorkspace(n, COLUMNS_AT_ONCE);
+  #load(factor: Float64Array, n: number, width: number): DenseWorkspace {
+    if (this.#workspace?.n !== n) this.#workspace = createDenseWorkspace(n, width);
     this.#workspace.matrix.set(factor);
     return this.#workspace;
   }
@@ -166,6 +168,13 @@ export class Expander {
 interface RootStations {
   readonly positionsKm: Float64Array;
   nodes(): Iterable<PreparedNode>;
+}
+
+function joined(a: Lattice, b: Lattice): Float64Array {
+  const out = new Float64Array(3 * (a.count + b.count));
+  out.set(a.positionsKm);
+  out.set(b.positionsKm, 3 * a.count);
+  return out;
 }
 
 function* chain<T>(parts: readonly Iterable<T>[]): Generator<T> {
