@@ -1,4 +1,6 @@
-import { booleanPointInPolygon, convex, featureCollection, point } from '@turf/turf';
+import { booleanPointInPolygon } from '@turf/boolean-point-in-polygon';
+import { convex } from '@turf/convex';
+import { featureCollection, point } from '@turf/helpers';
 import type { StationColumns } from './isoscape.js';
 
 const RAD = Math.PI / 180;
