@@ -9,6 +9,7 @@ import { readIsoscape } from 'rainprint/isoscape';
 import { baselineSquares, scoreSites } from './compare.mjs';
 import { comparisonRows, comparisonTable } from './comparison-table.mjs';
 import { INVENTED, writeElevation } from './elevation-file.mjs';
+import { areaCollection, writeLayer } from './gis-files.mjs';
 import { BOUNDS } from './land.mjs';
 import { LAND_NAME } from './names.mjs';
 import { outReadme } from './out-readme.mjs';
@@ -55,7 +56,9 @@ async function writeInputs(world, folder) {
   write('invented-records.csv', recordTable(world.rows));
   write('invented-sites.csv', siteTable(world.sites));
   write('invented-truth.csv', truthTable(world.sites, world.siteTruths));
+  write('invented-areas.geojson', `${JSON.stringify(areaCollection(), null, 1)}\n`);
   await writeElevation(join(folder, 'invented-elevation.tif'), world.land);
+  await writeLayer(join(folder, 'invented-layer.tif'), world.land);
   say(
     `${LAND_NAME}: ${world.stations.length} stations, ${world.rows.length} monthly records, ` +
       `${world.sites.length} field sites, three planted mistakes. Written to ${typed(folder)}/.`,
@@ -75,7 +78,7 @@ async function checkPlanted(world, folder, file) {
   if (mistakes.some(({ found }) => found === null)) throw new Error('check missed a planted mistake');
 }
 
-/** The three verbs that read an isoscape, two at a time for two cores. */
+/** The verbs that read an isoscape, some at a time for two cores. */
 async function useIsoscape(folder, file) {
   const isoscape = file('isoscape.json');
   const elevation = ['--elevation', file('invented-elevation.tif')];
@@ -99,6 +102,8 @@ async function useIsoscape(folder, file) {
   await shown(sites);
   say(readFileSync(join(folder, 'sites.csv'), 'utf8').split('\n').slice(0, 4).join('\n'));
   await shown(grid);
+  const areas = file('invented-areas.geojson');
+  await shown(startVerb(['area', isoscape, areas, ...elevation, '-o', file('areas.csv')]));
 }
 
 /** What only an invented land allows: the predictions as written, against the truth. */

@@ -3,7 +3,9 @@ import { type CogWriter, openCog } from './cog-assembler.js';
 import { encodeCogBlock } from './cog-block.js';
 import { type CogFormat, cogLevels, type SampleType, tileExtent } from './cog-format.js';
 import type { BandDescription } from './gdal-metadata.js';
-import type { NorthUpTransform } from './geo-keys.js';
+import type { NorthUpTransform, WritableCrs } from './geo-keys.js';
+
+const WGS84: WritableCrs = { epsg: 4326, kind: 'geographic', name: 'WGS 84' };
 
 /** Everything a raster file says about itself; nothing is guessed. */
 export interface GeoTiffSpec {
@@ -12,7 +14,8 @@ export interface GeoTiffSpec {
   readonly sampleType: SampleType;
   /** Side of the square tiles, a multiple of 16 (TIFF 6.0, section 15). */
   readonly tileSizePx: number;
-  readonly crs: 'EPSG:4326';
+  /** `EPSG:4326`, or another as `epsgCrs` gives it. */
+  readonly crs: 'EPSG:4326' | WritableCrs;
   readonly transform: NorthUpTransform;
   /** Cells are areas; there is no other kind in our files, and the caller says that it knows. */
   readonly pixelIs: 'area';
@@ -58,7 +61,7 @@ export async function writeGeoTiff(
     deflateLevel: options.deflateLevel ?? 6,
     overviews: false,
   };
-  const crs = { epsg: 4326, kind: 'geographic', name: 'WGS 84' } as const;
+  const crs = spec.crs === 'EPSG:4326' ? WGS84 : spec.crs;
   const cog = await openCog(path, { format, crs, transform, bands, software });
   try {
     await addRows(cog, format, readRows, options.signal);

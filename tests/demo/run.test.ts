@@ -19,10 +19,14 @@ async function runDemo(...args: string[]) {
 
 const OUTPUTS = [
   'README.md',
+  'areas.csv',
   'check.json',
   'comparison.json',
   'grid.tif',
+  'grid.tif.stac.json',
+  'invented-areas.geojson',
   'invented-elevation.tif',
+  'invented-layer.tif',
   'invented-records.csv',
   'invented-sites.csv',
   'invented-truth.csv',
@@ -47,7 +51,7 @@ describe('npm run demo', () => {
     const run = await runDemo('--out', folder);
     expect(run.stderr).toBe('');
     expect(run.status).toBe(0);
-    for (const verb of ['check', 'fit', 'validate', 'sites', 'grid']) {
+    for (const verb of ['check', 'fit', 'validate', 'sites', 'grid', 'area']) {
       expect(run.stdout).toContain(`$ npx rainprint ${verb} `);
     }
     expect(run.stdout).toContain('Invented:');
