@@ -3,7 +3,6 @@ import {
   choleskyInPlace,
   correlationMatrix,
   covarianceBlock,
-  crossProduct,
   type DenseWorkspace,
   inverseFromCholesky,
   solveLowerInPlace,
@@ -14,9 +13,11 @@ import { type CovarianceFamily, correlationFunction } from './covariance/familie
 import type { FieldGeometry } from './field-data.js';
 import type { FieldParameters } from './likelihood.js';
 import { distanceKm } from './positions.js';
+import { WhitenedTrend } from './whitened-trend.js';
 
 /** Places handled together: 64 columns of 1,000 stations (512 kB) stay in the second-level cache. */
 export const PLACES_PER_BLOCK = 64;
+
 /**
  * One field at one set of parameters, factorised once for any number of places: the best linear unbiased
  * predictor with the trend's own uncertainty (Goldberger 1962, J. Am. Stat. Assoc. 57:369–375).
@@ -29,8 +30,7 @@ export class FieldSystem {
   readonly #geometry: FieldGeometry;
   readonly #family: CovarianceFamily;
   readonly #factor: Float64Array;
-  readonly #whitenedTrend: Float64Array;
-  readonly #trendFactor: Float64Array;
+  readonly #trend: WhitenedTrend;
   #isInverted = false;
 
   /**
@@ -53,13 +53,7 @@ export class FieldSystem {
       factor[i * n + i] = parameters.sill + parameters.nugget + errorVariance[i];
     }
     choleskyInPlace(factor, n);
-    this.#whitenedTrend = Float64Array.from(trend);
-    solveLowerManyInPlace(factor, n, this.#whitenedTrend, p);
-    this.#trendFactor = trendFactor ?? new Float64Array(p * p);
-    if (trendFactor === null) {
-      crossProduct(this.#whitenedTrend, p, this.#whitenedTrend, p, n, this.#trendFactor);
-      choleskyInPlace(this.#trendFactor, p);
-    }
+    this.#trend = new WhitenedTrend(factor, n, trend, p, trendFactor);
     this.parameters = parameters;
     this.#geometry = geometry;
     this.#family = family;
@@ -71,34 +65,18 @@ export class FieldSystem {
    * @param given  the coefficients, where they come from a larger network
    */
   solveData(z: Float64Array, given: Float64Array | null = null): FieldData {
-    const { n, p } = this.#geometry;
+    const { n } = this.#geometry;
     const weights = Float64Array.from(z);
     solveLowerInPlace(this.#factor, n, weights);
-    const coefficients = given ?? new Float64Array(p);
-    if (given === null) {
-      crossProduct(this.#whitenedTrend, p, weights, 1, n, coefficients);
-      solveLowerInPlace(this.#trendFactor, p, coefficients);
-      solveLowerTransposedInPlace(this.#trendFactor, p, coefficients);
-    }
-    for (let i = 0; i < n; i++) {
-      for (let c = 0; c < p; c++) weights[i] -= this.#whitenedTrend[i * p + c] * coefficients[c];
-    }
+    const coefficients = given ?? this.#trend.coefficientsOf(weights);
+    this.#trend.addTo(weights, coefficients, -1);
     solveLowerTransposedInPlace(this.#factor, n, weights);
     return { coefficients, weights };
   }
 
   /** Covariance (FᵀV⁻¹F)⁻¹ of β̂, p × p row-major. */
   coefficientCovariance(): Float64Array {
-    const { p } = this.#geometry;
-    const out = new Float64Array(p * p);
-    for (let c = 0; c < p; c++) {
-      const unit = new Float64Array(p);
-      unit[c] = 1;
-      solveLowerInPlace(this.#trendFactor, p, unit);
-      solveLowerTransposedInPlace(this.#trendFactor, p, unit);
-      for (let r = 0; r < p; r++) out[r * p + c] = unit[r];
-    }
-    return out;
+    return this.#trend.coefficientCovariance();
   }
 
   /**
@@ -126,7 +104,7 @@ export class FieldSystem {
    */
   reduce(c: Float64Array, count: number, trendRows: Float64Array, firstRow: number, out: Float64Array): void {
     solveLowerManyInPlace(this.#factor, this.#geometry.n, c, count);
-    this.#reduceTrend(c, count, trendRows, firstRow, out);
+    this.#trend.reduce(c, count, trendRows, firstRow, out);
   }
 
   /** As `reduce` in a workspace lent by `borrowFactor`, whose block holds the covariances. */
@@ -138,41 +116,13 @@ export class FieldSystem {
     out: Float64Array,
   ): void {
     workspace.solveLower(count);
-    this.#reduceTrend(workspace.block, count, trendRows, firstRow, out);
+    this.#trend.reduce(workspace.block, count, trendRows, firstRow, out);
   }
 
   /** The factor in memory in which many blocks of places are solved without copying it again; lent until the next
    * kernel call on plain matrices. */
   borrowFactor(): DenseWorkspace {
     return borrowWorkspace(this.#factor, this.#geometry.n, PLACES_PER_BLOCK);
-  }
-
-  #reduceTrend(
-    c: Float64Array,
-    count: number,
-    trendRows: Float64Array,
-    firstRow: number,
-    out: Float64Array,
-  ): void {
-    const { n, p } = this.#geometry;
-    const w = this.#whitenedTrend;
-    const g = this.#trendFactor;
-    for (let j = 0; j < count; j++) {
-      for (let a = 0; a < p; a++) out[j * p + a] = trendRows[(firstRow + j) * p + a];
-    }
-    for (let i = 0; i < n; i++) {
-      for (let j = 0; j < count; j++) {
-        const value = c[i * count + j];
-        for (let a = 0; a < p; a++) out[j * p + a] -= w[i * p + a] * value;
-      }
-    }
-    for (let j = 0; j < count; j++) {
-      for (let a = 0; a < p; a++) {
-        let value = out[j * p + a];
-        for (let b = 0; b < a; b++) value -= g[a * p + b] * out[j * p + b];
-        out[j * p + a] = value / g[a * p + a];
-      }
-    }
   }
 
   get stationCount(): number {
@@ -221,12 +171,12 @@ export class FieldSystem {
 
   /** L⁻¹F: n × p, row-major; not to be written. */
   get whitenedTrend(): Float64Array {
-    return this.#whitenedTrend;
+    return this.#trend.whitened;
   }
 
   /** Cholesky factor of FᵀV⁻¹F: p × p, row-major, lower triangle; not to be written. */
   get trendFactor(): Float64Array {
-    return this.#trendFactor;
+    return this.#trend.factor;
   }
 
   /** Kriging weights λ (n) of one place: û = λᵀz (for explanations). */
@@ -237,10 +187,8 @@ export class FieldSystem {
     this.covariances(place, 0, 1, c);
     this.reduce(c, 1, trendRow, 0, r);
     // λ = V⁻¹c + V⁻¹F(FᵀV⁻¹F)⁻¹r: solve the trend part back, add, then through Lᵀ.
-    solveLowerTransposedInPlace(this.#trendFactor, p, r);
-    for (let i = 0; i < n; i++) {
-      for (let a = 0; a < p; a++) c[i] += this.#whitenedTrend[i * p + a] * r[a];
-    }
+    solveLowerTransposedInPlace(this.#trend.factor, p, r);
+    this.#trend.addTo(c, r, 1);
     solveLowerTransposedInPlace(this.#factor, n, c);
     return c;
   }

@@ -1,19 +1,17 @@
 import { RainprintError } from '../errors.js';
 import {
   borrowWorkspace,
-  choleskyInPlace,
   correlationMatrix,
-  crossProduct,
   innerProduct,
   multiplySymmetric,
-  multiplyVector,
   solveLowerInPlace,
-  solveLowerManyInPlace,
   solveLowerTransposedInPlace,
   withInverse,
 } from '../kernels/index.js';
 import type { CorrelationFunction } from './covariance/family.js';
 import type { FieldGeometry } from './field-data.js';
+import { Projection } from './projection.js';
+import { WhitenedTrend } from './whitened-trend.js';
 
 /** Covariance parameters of one field: η has covariance sill·ρ(h/rangeKm), ε has variance nugget. */
 export interface FieldParameters {
@@ -47,10 +45,9 @@ export class FieldLikelihood {
   readonly #factor: Float64Array;
   readonly #slope: Float64Array;
   readonly #correlation: Float64Array;
-  readonly #whitenedTrend: Float64Array;
-  readonly #trendFactor: Float64Array;
   readonly #whitenedData: Float64Array;
   readonly #qz: Float64Array;
+  #trend: WhitenedTrend | null = null;
   #parameters: FieldParameters = { rangeKm: 1, sill: 1, nugget: 0 };
   #correlationRangeKm = Number.NaN;
   #logLikelihood = Number.NEGATIVE_INFINITY;
@@ -62,7 +59,7 @@ export class FieldLikelihood {
     errorVariance: Float64Array,
     criterion: Criterion = 'restricted',
   ) {
-    const { n, p } = geometry;
+    const { n } = geometry;
     this.#geometry = geometry;
     this.#family = family;
     this.#errorVariance = errorVariance;
@@ -70,8 +67,6 @@ export class FieldLikelihood {
     this.#factor = new Float64Array(n * n);
     this.#slope = new Float64Array(n * n);
     this.#correlation = new Float64Array(n * n);
-    this.#whitenedTrend = new Float64Array(n * p);
-    this.#trendFactor = new Float64Array(p * p);
     this.#whitenedData = new Float64Array(n);
     this.#qz = new Float64Array(n);
   }
@@ -97,19 +92,10 @@ export class FieldLikelihood {
     const y = this.#whitenedData;
     y.set(z);
     solveLowerInPlace(factor, n, y);
-    const w = this.#whitenedTrend;
-    w.set(trend);
-    solveLowerManyInPlace(factor, n, w, p);
-    const g = this.#trendFactor;
-    crossProduct(w, p, w, p, n, g);
-    choleskyInPlace(g, p);
-
-    // β̂ = G⁻¹Wᵀy; the whitened residual y − Wβ̂ gives zᵀQz and, solved back, Qz.
-    const beta = new Float64Array(p);
-    crossProduct(w, p, y, 1, n, beta);
-    solveLowerInPlace(g, p, beta);
-    solveLowerTransposedInPlace(g, p, beta);
-    for (let i = 0; i < n; i++) for (let c = 0; c < p; c++) y[i] -= w[i * p + c] * beta[c];
+    // The whitened residual y − Wβ̂ gives zᵀQz and, solved back, Qz.
+    const whitened = new WhitenedTrend(factor, n, trend, p);
+    this.#trend = whitened;
+    whitened.addTo(y, whitened.coefficientsOf(y), -1);
     const quadratic = innerProduct(y, y);
     this.#qz.set(y);
     solveLowerTransposedInPlace(factor, n, this.#qz);
@@ -120,8 +106,7 @@ export class FieldLikelihood {
     if (this.#criterion === 'maximum') {
       this.#logLikelihood = -0.5 * (n * LN_2PI + logDetV + quadratic);
     } else {
-      let logDetG = 0;
-      for (let c = 0; c < p; c++) logDetG += 2 * Math.log(g[c * p + c]);
+      const logDetG = whitened.logDeterminant;
       this.#logLikelihood = -0.5 * ((n - p) * LN_2PI - logDetFtF + logDetV + logDetG + quadratic);
     }
     return this.#logLikelihood;
@@ -153,7 +138,6 @@ export class FieldLikelihood {
    */
   derivatives(gradient: Float64Array, information: Float64Array): void {
     const { n } = this.#geometry;
-    const projection = this.#projectionColumns();
     const qz = this.#qz;
     const sill = this.#parameters.sill;
 
@@ -164,12 +148,12 @@ export class FieldLikelihood {
     for (let i = 0; i < n; i++) moved[0][i] *= sill;
     multiplySymmetric(this.#correlation, n, qz, moved[1]);
     moved[2].set(qz);
-    withInverse(this.#factor, n, (inverse) => {
-      const traces = this.#traces(inverse, projection);
+    this.#withQ((q) => {
+      const traces = this.#traces(q);
       for (let k = 0; k < 3; k++) gradient[k] = -0.5 * (traces[k] - innerProduct(qz, moved[k]));
       const projected = new Float64Array(n);
       for (let k = 0; k < 3; k++) {
-        this.#applyQ(inverse, projection, moved[k], projected);
+        q.applyTo(moved[k], projected);
         for (let m = 0; m <= k; m++) {
           const value = 0.5 * innerProduct(moved[m], projected);
           information[k * 3 + m] = value;
@@ -181,29 +165,16 @@ export class FieldLikelihood {
 
   /** Diagonal of Q (n) at the last evaluation, for closed-form leave-one-out. */
   diagonalOfQ(out: Float64Array): void {
-    const { n, p } = this.#geometry;
-    const b = this.#projectionColumns();
-    withInverse(this.#factor, n, (inverse) => {
-      for (let i = 0; i < n; i++) {
-        let value = inverse[i * n + i];
-        for (let c = 0; c < p; c++) value -= b[i * p + c] ** 2;
-        out[i] = value;
-      }
-    });
+    this.#withQ((q) => q.diagonal(out));
   }
 
   /** Q as a full n × n matrix at the last evaluation (group-wise leave-out). */
   fullQ(): Float64Array {
-    const { n, p } = this.#geometry;
-    const q = new Float64Array(n * n);
-    withInverse(this.#factor, n, (inverse) => q.set(inverse));
-    const b = this.#projectionColumns();
-    for (let i = 0; i < n; i++) {
-      for (let j = 0; j < n; j++) {
-        for (let c = 0; c < p; c++) q[i * n + j] -= b[i * p + c] * b[j * p + c];
-      }
-    }
-    return q;
+    let matrix: Float64Array = new Float64Array(0);
+    this.#withQ((q) => {
+      matrix = q.matrix();
+    });
+    return matrix;
   }
 
   #fillCorrelation(rangeKm: number): void {
@@ -232,59 +203,17 @@ export class FieldLikelihood {
     this.#factor.set(matrix);
   }
 
-  /** B = V⁻¹F chol(G)⁻ᵀ (n × p), so that Q = V⁻¹ − BBᵀ. */
-  #projectionColumns(): Float64Array {
+  /** Q at the last evaluation, lent: under ML too, where it still stands in the quadratic form. */
+  #withQ(use: (q: Projection) => void): void {
     const { n, p } = this.#geometry;
-    const b = new Float64Array(n * p);
-    const column = new Float64Array(n);
-    const g = this.#trendFactor;
-    const w = this.#whitenedTrend;
-    for (let c = 0; c < p; c++) {
-      // Column c of W·chol(G)⁻ᵀ by forward substitution over the columns, then back through Lᵀ.
-      for (let i = 0; i < n; i++) {
-        let value = w[i * p + c];
-        for (let m = 0; m < c; m++) value -= g[c * p + m] * b[i * p + m];
-        b[i * p + c] = value / g[c * p + c];
-      }
-    }
-    for (let c = 0; c < p; c++) {
-      for (let i = 0; i < n; i++) column[i] = b[i * p + c];
-      solveLowerTransposedInPlace(this.#factor, n, column);
-      for (let i = 0; i < n; i++) b[i * p + c] = column[i];
-    }
-    return b;
+    const b = this.#trend!.projectionColumns(this.#factor);
+    withInverse(this.#factor, n, (inverse) => use(new Projection(inverse, n, b, p)));
   }
 
   /** tr(M·dV_k) for the three parameters, M = Q under REML and V⁻¹ under ML. */
-  #traces(inverse: Float64Array, b: Float64Array): [number, number, number] {
-    const { n, p } = this.#geometry;
-    const columns = this.#criterion === 'restricted' ? p : 0;
-    const slope = this.#slope;
-    const correlation = this.#correlation;
-    let slopeTrace = 0;
-    let correlationTrace = 0;
-    let identityTrace = 0;
-    for (let i = 0; i < n; i++) {
-      const row = i * n;
-      for (let j = 0; j <= i; j++) {
-        let m = inverse[row + j];
-        for (let c = 0; c < columns; c++) m -= b[i * p + c] * b[j * p + c];
-        if (j === i) identityTrace += m;
-        else {
-          slopeTrace += m * slope[row + j];
-          correlationTrace += m * correlation[row + j];
-        }
-      }
-    }
-    return [2 * this.#parameters.sill * slopeTrace, 2 * correlationTrace + identityTrace, identityTrace];
-  }
-
-  /** out = Qx with Q = V⁻¹ − BBᵀ (also under ML: there Q still stands in the quadratic form). */
-  #applyQ(inverse: Float64Array, b: Float64Array, x: Float64Array, out: Float64Array): void {
-    const { n, p } = this.#geometry;
-    multiplyVector(inverse, n, x, out);
-    const along = new Float64Array(p);
-    crossProduct(b, p, x, 1, n, along);
-    for (let i = 0; i < n; i++) for (let c = 0; c < p; c++) out[i] -= b[i * p + c] * along[c];
+  #traces(q: Projection): [number, number, number] {
+    const sums = q.lowerTraces(this.#slope, this.#correlation, this.#criterion === 'restricted');
+    const { sill } = this.#parameters;
+    return [2 * sill * sums.slope, 2 * sums.correlation + sums.identity, sums.identity];
   }
 }
