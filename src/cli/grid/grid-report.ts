@@ -5,11 +5,10 @@ import type { GridOptions } from './grid-options.js';
 /** What a person is told once a grid is written, one line each. */
 export function gridReport(options: GridOptions, result: GridResult): string[] {
   const { width, height, counts, files } = result;
-  const sizeMb = files.reduce((sum, { summary }) => sum + summary.sizeBytes, 0) / 1e6;
+  const sizeBytes = files.reduce((sum, { summary }) => sum + summary.sizeBytes, 0);
+  const size = sizeBytes < 1e6 ? `${Math.ceil(sizeBytes / 1e3)} kB` : `${(sizeBytes / 1e6).toFixed(1)} MB`;
   const name = files.length === 1 ? files[0]!.path : `${files.length} files beside ${options.outputPath}`;
-  const lines = [
-    `${name}: ${width} × ${height} cells, ${counts.predicted} of them with a value (${sizeMb.toFixed(1)} MB)`,
-  ];
+  const lines = [`${name}: ${width} × ${height} cells, ${counts.predicted} of them with a value (${size})`];
   lines.push(...nodataLines(result), ...result.ground.notes.map((note) => `note: ${note}`));
   if (counts.impossible > 0) {
     lines.push(
