@@ -11,6 +11,7 @@ import {
   predictField,
 } from '../geostat/index.js';
 import type { FieldNode, FittedField, Isoscape } from './isoscape.js';
+import { mayKeepFactors } from './kept-factors.js';
 import { conditioningFor, requireFactor } from './large-network.js';
 import { trendRows } from './trend.js';
 
@@ -50,9 +51,6 @@ export interface FieldAnswer {
   readonly variance: Float64Array;
   readonly otherMean: Float64Array | null;
 }
-
-/** Memory (bytes) up to which all factorised nodes of a field are kept; beyond it each is rebuilt when needed. */
-const KEPT_NODES_BYTES = 256 * 2 ** 20;
 
 /** One field of an isoscape, ready to predict. */
 export class FieldAverage {
@@ -119,6 +117,11 @@ export class FieldAverage {
     return this.#neighbourhoods !== null;
   }
 
+  /** Whether factors made for one call of `predict` are still there for the next. */
+  get keepsFactors(): boolean {
+    return !this.usesNearest && mayKeepFactors(this.#nodes.length, this.#geometry.n);
+  }
+
   /** Every node over the whole network, without a factor: trend from all stations, residuals from those nearby. */
   networks(): readonly NearestStations[] {
     this.#networks ??= this.#nodes.map((node) => {
@@ -146,12 +149,11 @@ export class FieldAverage {
    */
   *preparedNodes(): Generator<PreparedNode> {
     requireFactor(this.#geometry.n, 'an answer from all stations');
-    const bytes = this.#nodes.length * this.#geometry.n ** 2 * 8;
     if (this.#kept !== null) {
       yield* this.#kept;
       return;
     }
-    const kept: PreparedNode[] | null = bytes <= KEPT_NODES_BYTES ? [] : null;
+    const kept: PreparedNode[] | null = mayKeepFactors(this.#nodes.length, this.#geometry.n) ? [] : null;
     const coefficients: Float64Array[] = [];
     for (const node of this.#nodes) {
       const prepared = this.#prepare(node);
@@ -174,9 +176,7 @@ export class FieldAverage {
     };
   }
 
-  /**
-   * @param places    count × 3, km; @param trendRows count × p
-   */
+  /** @param places  count × 3, km; @param trendRows  count × p */
   predict(places: Float64Array, trendRows: Float64Array, count: number): FieldAnswer {
     const { n, p } = this.#geometry;
     if (this.#neighbourhoods === null) {

@@ -41,7 +41,7 @@ export {
 export { leaveOneOut } from './leave-one-out.js';
 export { type LargestError, measureNearestError, type NearestError } from './nearest-error.js';
 export { createPlaces, createPredictions, type Places, type Predictions } from './places.js';
-export { type PredictOptions, predictPlaces, type Target } from './predict.js';
+export { keepsFactors, type PredictOptions, predictPlaces, type Target } from './predict.js';
 export { type JointPrediction, MAX_JOINT_PLACES, predictJoint } from './predict-joint.js';
 export { refitOn } from './refit.js';
 export { roundPair } from './rounding.js';

@@ -72,6 +72,14 @@ export function prepareAfresh(
 }
 
 /**
+ * Whether `predictPlaces` factorises once for all its calls; where not, it does so in every call, and few calls with
+ * many places each are quicker.
+ */
+export function keepsFactors(isoscape: Isoscape, { plugIn = false, stations }: PredictOptions): boolean {
+  return prepareIsoscape(isoscape, plugIn, stations).fields.every((field) => field.keepsFactors);
+}
+
+/**
  * Predicts rain at places: means, variances and the covariance of the isotopes in ‰ and ‰².
  *
  * Parameters are averaged over the isoscape's nodes and the turn's uncertainty is added, unless `plugIn`. An error

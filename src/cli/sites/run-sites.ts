@@ -1,5 +1,5 @@
 import { createHash } from 'node:crypto';
-import { createSupport, type Isoscape, readIsoscape } from '../../isoscape/index.js';
+import { createSupport, type Isoscape, keepsFactors, readIsoscape } from '../../isoscape/index.js';
 import { bundledElevationPath } from '../../raster/index.js';
 import { type ColumnOverrides, openTable, type Table } from '../../stations/index.js';
 import type { CliContext } from '../context.js';
@@ -31,6 +31,8 @@ import { SitesTally } from './sites-tally.js';
 const MAX_ISOSCAPE_BYTES = 256 << 20;
 /** Enough to keep the numeric core busy, few enough to keep memory flat. */
 const BATCH_ROWS = 1024;
+/** Where every batch factorises anew: with so many rows that is a small part of its work, and they take some 100 MB. */
+const LARGE_BATCH_ROWS = 65_536;
 
 export interface SitesCall {
   readonly isoscapePath: string;
@@ -39,7 +41,7 @@ export interface SitesCall {
   readonly options: SitesOptions;
 }
 
-/** Reads sites, predicts them batch by batch, writes them as they come. */
+/** Reads sites, predicts them batch by batch, writes each batch once it is predicted. */
 export async function runSites(call: SitesCall, context: CliContext): Promise<void> {
   const { options } = call;
   const input = await openSites(call);
@@ -130,8 +132,7 @@ async function streamSites(stream: Stream): Promise<void> {
   const progress = createProgress(stream.context, 'sites');
   const writer = createSitesWriter(options.format, stream.table, isoscape);
   const explainer = outputs.explain === null ? null : createExplainer(isoscape, outputs.explain);
-  // The joint covariance needs all sites at once, and its limit must speak before anything is written.
-  const batchRows = outputs.joint === null ? BATCH_ROWS : MAX_JOINT_SITES + 1;
+  const batchRows = batchRowsOf(isoscape, outputs, options);
   let started = false;
   for await (const rows of batches(stream.table.rows, stream.readRow, batchRows)) {
     if (outputs.joint !== null) assertJointSize(rows.length);
@@ -148,6 +149,12 @@ async function streamSites(stream: Stream): Promise<void> {
   await outputs.main.write(writer.end());
   await explainer?.end();
   progress.end();
+}
+
+function batchRowsOf(isoscape: Isoscape, { joint }: SitesOutputs, options: SitesOptions): number {
+  // The joint covariance needs all sites at once, and its limit must speak before anything is written.
+  if (joint !== null) return MAX_JOINT_SITES + 1;
+  return keepsFactors(isoscape, options) ? BATCH_ROWS : LARGE_BATCH_ROWS;
 }
 
 async function* batches(
