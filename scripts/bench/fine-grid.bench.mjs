@@ -18,7 +18,7 @@ const MODES = [
   ['default', []],
 ];
 
-export async function bench({ tiny, cache }) {
+export async function bench({ tiny, cache, runs }) {
   const folder = mkdtempSync(join(tmpdir(), 'rainprint-bench-'));
   const size = tiny
     ? {
@@ -37,7 +37,7 @@ export async function bench({ tiny, cache }) {
         piece: [65, 30, 85, 50],
         half: [65, 40, 85, 50],
         fine: '1/120',
-        more: 2,
+        more: runs - 1,
       };
   try {
     const world = await fittedWorld(FAMILY, size.n, cache ?? folder);
@@ -93,6 +93,7 @@ async function landPiece({ world, folder, path, piece, half, fine, more }, modes
     );
     rows.push(gridRow(`20° × 20° at 30″, ${mode}`, whole), gridRow(`its northern half, ${mode}`, part));
     const seconds = median(whole.seconds);
+    console.log(rows.slice(-2).join('\n'));
     notes.push(
       `- ${mode}: ${(land / 1e6).toFixed(2)} M cells on land, ${((1e6 * seconds) / land).toFixed(2)} µs each; **${((seconds / land) * LAND_CELLS).toFixed(0)} s for ${LAND_CELLS / 1e6} M cells on land** (aim 360 s); ` +
         `memory of the whole piece ${(whole.peakMb / part.peakMb).toFixed(2)} × that of half of it`,

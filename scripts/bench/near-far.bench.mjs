@@ -27,7 +27,7 @@ const MODES = [
   ['default', []],
 ];
 
-export async function bench({ tiny, cache }) {
+export async function bench({ tiny, cache, runs }) {
   const folder = mkdtempSync(join(tmpdir(), 'rainprint-bench-'));
   const size = tiny
     ? {
@@ -45,7 +45,7 @@ export async function bench({ tiny, cache }) {
         cell: '1/6',
         cells: 2160 * 1080,
         sample: 1500,
-        more: 2,
+        more: runs - 1,
         families: FAMILIES,
       };
   try {
@@ -70,11 +70,12 @@ async function measure({ n, modes, cell, cells, sample, more, families, folder, 
       for (const window of windows(cell).slice(0, modes.length)) {
         await checkAgainstExact(world.path, path, folder, BOUNDS, window, flags);
       }
-      const runs = await repeatGrid(world.path, path, extra, more, first);
-      rows.push(gridRow(`${family}, ${mode}`, runs));
+      const made = await repeatGrid(world.path, path, extra, more, first);
+      rows.push(gridRow(`${family}, ${mode}`, made));
+      console.log(rows.at(-1));
       if (peer === null) continue;
       const theirs = peer.secondsPerCell * cells;
-      const faster = theirs / median(runs.seconds);
+      const faster = theirs / median(made.seconds);
       ratios.push(
         `- ${family}, ${mode}: gstat ${(1e6 * peer.secondsPerCell).toFixed(0)} µs a cell for the three variables, ${(theirs / 60).toFixed(0)} min for the grid; **ours is ${faster.toFixed(0)} × faster**`,
       );
