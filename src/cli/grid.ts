@@ -49,7 +49,7 @@ export function registerGrid(program: Command, context: CliContext): void {
     .option('--target <target>', 'site (a place, its micro-scale variation included) or field', 'site')
     .option('--plug-in', 'take the fitted parameters for known, for comparison with other programs')
     .option('--tolerance <permil>', 'error allowed in d18O and its standard error; 8 times in d2H', '0.005')
-    .option('--exact', 'compute every cell by itself, which is slow')
+    .option('--exact', 'compute every cell by itself and from every station, which is slow')
     .option('--bands <names>', 'only these bands, separated by commas')
     .option('--support', 'add the band support')
     .option('--split', 'one file a band: out.d18O.tif, out.d18O_se.tif, ...')

@@ -39,7 +39,12 @@ export {
   usesNearest,
 } from './large-network.js';
 export { leaveOneOut } from './leave-one-out.js';
-export { type LargestError, measureNearestError, type NearestError } from './nearest-error.js';
+export {
+  type LargestError,
+  measureNearestError,
+  type NearestError,
+  nearestErrorOf,
+} from './nearest-error.js';
 export { createPlaces, createPredictions, type Places, type Predictions } from './places.js';
 export { keepsFactors, type PredictOptions, predictPlaces, type Target } from './predict.js';
 export { type JointPrediction, MAX_JOINT_PLACES, predictJoint } from './predict-joint.js';

@@ -1,7 +1,7 @@
 import { NEIGHBOURHOOD_STATIONS } from '../geostat/index.js';
 import { dExcess, dExcessVariance } from '../isotope/index.js';
 import type { Isoscape } from './isoscape.js';
-import { FACTOR_STATIONS_LIMIT } from './large-network.js';
+import { FACTOR_STATIONS_LIMIT, type StationsUsed, usesNearest } from './large-network.js';
 import { createPlaces, createPredictions, type Places, type Predictions } from './places.js';
 import { predictPrepared, prepareAfresh } from './predict.js';
 
@@ -29,6 +29,11 @@ const DISTANCE_STEP = Math.sqrt(5) % 1;
 /** Farthest that a place compared stands from its station, in degrees of arc. */
 const FARTHEST_DEG = 3;
 const RAD = Math.PI / 180;
+
+/** The error of predicting from nearby stations, measured where that is done; null where all stations are used. */
+export function nearestErrorOf(isoscape: Isoscape, stations: StationsUsed): NearestError | null {
+  return usesNearest(stations, isoscape.stations.id.length) ? measureNearestError(isoscape) : null;
+}
 
 /**
  * Predicts 64 places, found without chance near stations all over the network, from nearby stations and from all, at

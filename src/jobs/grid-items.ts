@@ -1,4 +1,4 @@
-import type { Isoscape } from '../isoscape/index.js';
+import type { Isoscape, NearestError } from '../isoscape/index.js';
 import { type GridBand, SUPPORT_BITS } from './grid-bands.js';
 import { CHECKED, checkTolerance, type GridCheck } from './grid-check.js';
 import { type GridRounding, roundingText } from './grid-rounding.js';
@@ -8,6 +8,8 @@ import type { GridRequest } from './make-grid.js';
 /** What is known of a grid once its blocks are made. */
 export interface GridFacts {
   readonly check: GridCheck;
+  /** Null where all stations enter every cell. */
+  readonly nearestError: NearestError | null;
   readonly ground: GroundNames;
   readonly rounding: GridRounding | null;
   readonly bands: readonly GridBand[];
@@ -25,6 +27,7 @@ export function gridItems(
     isoscape_id: isoscape.id,
     network: isoscape.networkName,
     stations: String(isoscape.stations.id.length),
+    ...stationItems(facts.nearestError),
     season: isoscape.season.label,
     target,
     parameters: plugIn ? 'plug-in' : 'averaged',
@@ -42,16 +45,33 @@ export function gridItems(
   };
 }
 
+/** Which stations enter a cell; where not all, what that was found to cost at places near stations. */
+function stationItems(error: NearestError | null): Record<string, string> {
+  if (error === null) return { stations_used: 'all' };
+  const { stationCount, reference, placeCount } = error;
+  const largest = Object.entries(error.largest).flatMap(([name, { meanPerMil, sePerMil }]) => [
+    [`nearest_largest_error_${name}`, meanPerMil.toPrecision(3)],
+    [`nearest_largest_error_${name}_se`, sePerMil.toPrecision(3)],
+  ]);
+  return {
+    stations_used: `${stationCount} or more around each cell for its residual, all for the trend`,
+    nearest_compared: `the ${stationCount} nearest with ${reference}, at ${placeCount} places near stations`,
+    ...Object.fromEntries(largest),
+  };
+}
+
 /** How far interpolated cells may be, and were found to be, from cells computed exactly. */
 function accuracyItems(
   isoscape: Isoscape,
   { exact, tolerance }: GridRequest,
-  { check }: GridFacts,
+  { check, nearestError }: GridFacts,
 ): Record<string, string> {
   if (exact) return { tolerance: '0 (every cell computed exactly)' };
   const { isotopes } = isoscape;
   const checked = CHECKED.filter((name) => isotopes === 'both' || name.split('_')[0] === isotopes);
-  const largest = checked.map((name) => [`largest_error_${name}`, check.largest[name].toPrecision(3)]);
+  // A site's nearest stations are others than those around a tile: what they answer differs by more than interpolation
+  const compared = nearestError === null ? 'largest_error' : 'largest_difference_from_sites';
+  const largest = checked.map((name) => [`${compared}_${name}`, check.largest[name].toPrecision(3)]);
   return {
     tolerance: `${tolerance} permil in d18O and its error, ${checkTolerance('d2H', tolerance)} permil in d2H, d-excess and theirs`,
     checked_cells: String(check.cells),

@@ -1,5 +1,11 @@
 import { RainprintError } from '../errors.js';
-import { type Isoscape, readIsoscape, type Target } from '../isoscape/index.js';
+import {
+  type Isoscape,
+  type NearestError,
+  nearestErrorOf,
+  readIsoscape,
+  type Target,
+} from '../isoscape/index.js';
 import { type BlockPosition, blockOrder, type GridFrame } from '../raster/index.js';
 import { type BlockPool, defaultThreads, openBlockPool } from './block-pool.js';
 import { chooseBands, type GridBand, gridBands } from './grid-bands.js';
@@ -46,7 +52,10 @@ export interface GridResult {
   readonly height: number;
   readonly bands: readonly GridBand[];
   readonly counts: GridCounts;
+  /** In a large network, where cells are predicted from stations around them, what `sites` answers is compared with. */
   readonly check: GridCheck;
+  /** What predicting from nearby stations costs; null where all stations enter every cell. */
+  readonly nearestError: NearestError | null;
   readonly ground: GroundNames;
   /** The metadata items of the file. */
   readonly items: Readonly<Record<string, string>>;
@@ -74,13 +83,21 @@ export async function makeGrid(path: string, request: GridRequest, run: GridRun 
   const ground = await checkGround(request.ground, isoscape, request.frame);
   const files = await GridFiles.open(planned, request.frame, `rainprint ${request.toolVersion}`);
   try {
+    const nearestError = request.exact ? null : nearestErrorOf(isoscape, 'auto');
+    signal?.throwIfAborted();
     const work = workOf(request, planned, ground);
     const tally = await makeBlocks(work, files, run);
     if (tally.counts.predicted === 0) throw gridEmpty(tally.counts, ground);
-    const items = gridItems(isoscape, request, { ...tally, ground, rounding: work.rounding, bands });
+    const items = gridItems(isoscape, request, {
+      ...tally,
+      nearestError,
+      ground,
+      rounding: work.rounding,
+      bands,
+    });
     const written = await files.finish(items, signal);
     const { width, height } = request.frame;
-    return { width, height, bands, ...tally, ground, items, files: written };
+    return { width, height, bands, ...tally, nearestError, ground, items, files: written };
   } catch (error) {
     await files.abort();
     throw error;

@@ -33,6 +33,7 @@ const result = (change: Partial<GridResult>): GridResult => ({
     cells: 40,
     largest: { d18O: 0.001, d18O_se: 0.0002, d2H: 0.02, d2H_se: 0.01, dexcess: 0.003, dexcess_se: 0 },
   },
+  nearestError: null,
   ground: { elevation: 'dem.tif sha256:0', covariates: [], mask: null, template: null, notes: ['look here'] },
   items: {},
   files: [],
@@ -41,7 +42,7 @@ const result = (change: Partial<GridResult>): GridResult => ({
 
 describe('gridReport', () => {
   it('says what became of the cells, and the largest error found', () => {
-    const text = gridReport(options, result({})).join('\n');
+    const text = gridReport(options, result({}), 40).join('\n');
     expect(text).toContain('10 × 10 cells, 60 of them with a value');
     expect(text).toContain(
       'nodata: 30 not asked for (mask or template), 7 sea, 3 without elevation in dem.tif',
@@ -55,8 +56,31 @@ describe('gridReport', () => {
   it('warns where a value missed the tolerance', () => {
     const { check } = result({});
     const bad = { ...check, largest: { ...check.largest, d18O_se: 0.0051, d2H: 0.0399 } };
-    const text = gridReport(options, result({ check: bad })).join('\n');
+    const text = gridReport(options, result({ check: bad }), 40).join('\n');
     expect(text).toMatch(/WARNING: d18O_se missed the tolerance/);
+  });
+
+  it('tells of a large network what its nearby stations cost, and takes a difference from sites for no fault', () => {
+    const nearestError = {
+      placeCount: 64,
+      reference: 'all stations' as const,
+      stationCount: 256,
+      largest: { d18O: { meanPerMil: 0.0123, sePerMil: 0.00042 } },
+    };
+    const { check } = result({});
+    const far = { ...check, largest: { ...check.largest, d18O: 0.0123, d2H: 0.09 } };
+    const lines = gridReport(options, result({ nearestError, check: far }), 5000);
+    expect(lines).toContain(
+      'note: of 5000 stations 256 or more around each cell give its residual, all of them the trend; against all ' +
+        'stations, at 64 places near stations, values from the 256 nearest differ at most by d18O 0.012 per mil (its ' +
+        'standard error 0.00042); --exact uses all stations everywhere',
+    );
+    const text = lines.join('\n');
+    expect(text).toContain(
+      'largest difference from what sites answers, on 40 cells: d18O 1.2e-2, d18O_se 2.0e-4',
+    );
+    expect(text).not.toContain('largest error on');
+    expect(text).not.toContain('WARNING');
   });
 });
 

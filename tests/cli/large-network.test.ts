@@ -1,9 +1,8 @@
 /** What the command line says of networks too large for exact algebra. The measured error itself: tests/isoscape. */
 import { expect, test } from 'vitest';
-import type { CliContext } from '../../src/cli/context.js';
 import { parseLikelihood } from '../../src/cli/fit/fit-options.js';
-import { nearestErrorOf, nearestErrorRecord, reportNearestError } from '../../src/cli/sites/nearest-note.js';
-import { fitIsoscape, type NearestError } from '../../src/isoscape/index.js';
+import { nearestErrorRecord, nearestNote } from '../../src/cli/nearest-note.js';
+import { fitIsoscape, type NearestError, nearestErrorOf } from '../../src/isoscape/index.js';
 import { inventedNetwork } from '../isoscape/invented-isoscape.js';
 
 const error: NearestError = {
@@ -17,13 +16,10 @@ const error: NearestError = {
 };
 
 test('the error of nearby stations is said, with the way to all stations', () => {
-  const texts: string[] = [];
-  const stderr = { write: (text: string) => texts.push(text) > 0 };
-  reportNearestError(error, 5000, { stderr } as unknown as CliContext);
-  expect(texts.join('')).toBe(
-    'rainprint: note: of 5000 stations the 256 nearest give each residual, all of them the trend; against all ' +
+  expect(nearestNote(error, 5000, 'sites')).toBe(
+    'note: of 5000 stations the 256 nearest give each residual, all of them the trend; against all ' +
       'stations, at 64 places near stations, values differ at most by d18O 0.0038 per mil (its standard error ' +
-      '0.000042), d2H 0.026 per mil (its standard error 0.00024); --exact uses all stations everywhere\n',
+      '0.000042), d2H 0.026 per mil (its standard error 0.00024); --exact uses all stations everywhere',
   );
 });
 

@@ -1,5 +1,6 @@
 import { basename } from 'node:path';
 import type { GridResult } from '../../jobs/index.js';
+import { nearestErrorRecord } from '../nearest-note.js';
 import type { GridCall } from './run-grid.js';
 
 /** What would make the grid again, and prove that nothing was changed. No clock in it: the same run, the same bytes. */
@@ -31,6 +32,7 @@ export function gridRecord(call: GridCall, result: GridResult, toolVersion: stri
       full_precision: options.fullPrecision,
       tile: options.tileSizePx,
     },
+    stations: nearestErrorRecord(result.nearestError),
     input: {
       elevation: ground.elevation,
       elevation_bundled: request.ground.seaAtZero,

@@ -1,9 +1,10 @@
 import { SUPPORT_FLAGS } from '../../isoscape/index.js';
 import { CHECKED, checkTolerance, type GridCheck, type GridResult } from '../../jobs/index.js';
+import { nearestNote } from '../nearest-note.js';
 import type { GridOptions } from './grid-options.js';
 
 /** What a person is told once a grid is written, one line each. */
-export function gridReport(options: GridOptions, result: GridResult): string[] {
+export function gridReport(options: GridOptions, result: GridResult, stationTotal: number): string[] {
   const { width, height, counts, files } = result;
   const sizeBytes = files.reduce((sum, { summary }) => sum + summary.sizeBytes, 0);
   const size = sizeBytes < 1e6 ? `${Math.ceil(sizeBytes / 1e3)} kB` : `${(sizeBytes / 1e6).toFixed(1)} MB`;
@@ -21,7 +22,12 @@ export function gridReport(options: GridOptions, result: GridResult): string[] {
     );
     lines.push(`${counts.flagged} cells lean on little (${reasons.join(', ')}): read them with care`);
   }
-  if (!options.exact) lines.push(...checkLines(options.tolerance, result.check));
+  const { nearestError, check } = result;
+  if (nearestError !== null) {
+    lines.push(nearestNote(nearestError, stationTotal, 'cells'), ...differenceLines(check));
+  } else if (!options.exact) {
+    lines.push(...checkLines(options.tolerance, check));
+  }
   return lines;
 }
 
@@ -43,12 +49,8 @@ function nodataLines({ counts, ground }: GridResult): string[] {
 /** What the interpolation cost, as found on a sample; more than allowed is a fault of ours and must be said. */
 function checkLines(tolerance: number, { cells, largest }: GridCheck): string[] {
   if (cells === 0) return [];
-  const measured = CHECKED.filter((name) => largest[name] > 0).map(
-    (name) => `${name} ${largest[name].toExponential(1)}`,
-  );
-  const found = measured.length === 0 ? 'none' : measured.join(', ');
   const lines = [
-    `largest error on ${cells} cells computed again exactly: ${found} (per mil; allowed ${tolerance} in d18O, ${checkTolerance('d2H', tolerance)} in d2H and d-excess)`,
+    `largest error on ${cells} cells computed again exactly: ${largestText(largest)} (per mil; allowed ${tolerance} in d18O, ${checkTolerance('d2H', tolerance)} in d2H and d-excess)`,
   ];
   const beyond = CHECKED.filter((name) => largest[name] > checkTolerance(name, tolerance));
   if (beyond.length > 0) {
@@ -57,4 +59,22 @@ function checkLines(tolerance: number, { cells, largest }: GridCheck): string[] 
     );
   }
   return lines;
+}
+
+/**
+ * In a large network a cell and a site at the same place leave out different stations: the tolerance, which is about
+ * interpolation, does not bound how far they are apart.
+ */
+function differenceLines({ cells, largest }: GridCheck): string[] {
+  if (cells === 0) return [];
+  return [
+    `largest difference from what sites answers, on ${cells} cells: ${largestText(largest)} (per mil; other stations far away are left out there)`,
+  ];
+}
+
+function largestText(largest: GridCheck['largest']): string {
+  const measured = CHECKED.filter((name) => largest[name] > 0).map(
+    (name) => `${name} ${largest[name].toExponential(1)}`,
+  );
+  return measured.length === 0 ? 'none' : measured.join(', ');
 }

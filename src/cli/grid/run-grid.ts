@@ -56,7 +56,8 @@ export async function runGrid(
     await checkOutputs(call);
     const result = await writeGrid(call, signal, context);
     for (const { path, text } of sideFiles(call, result, context)) await writeOutput(path, text);
-    for (const line of gridReport(options, result)) context.stderr.write(`rainprint: ${line}\n`);
+    const lines = gridReport(options, result, call.isoscape.stations.id.length);
+    for (const line of lines) context.stderr.write(`rainprint: ${line}\n`);
   });
   if (finished) return;
   context.stderr.write(`rainprint: stopped; ${options.outputPath} was not written\n`);

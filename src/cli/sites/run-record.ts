@@ -2,7 +2,7 @@ import { createHash } from 'node:crypto';
 import { basename } from 'node:path';
 import type { Isoscape, NearestError } from '../../isoscape/index.js';
 import type { ColumnOverrides } from '../../stations/index.js';
-import { nearestErrorRecord } from './nearest-note.js';
+import { nearestErrorRecord } from '../nearest-note.js';
 import type { SitesOptions } from './sites-options.js';
 
 /** What a run of `sites` read, did and wrote: enough to run it again and to prove that nothing was changed. */

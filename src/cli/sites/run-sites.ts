@@ -1,15 +1,21 @@
 import { createHash } from 'node:crypto';
-import { createSupport, type Isoscape, keepsFactors, readIsoscape } from '../../isoscape/index.js';
+import {
+  createSupport,
+  type Isoscape,
+  keepsFactors,
+  nearestErrorOf,
+  readIsoscape,
+} from '../../isoscape/index.js';
 import { bundledElevationPath } from '../../raster/index.js';
 import { type ColumnOverrides, openTable, type Table } from '../../stations/index.js';
 import type { CliContext } from '../context.js';
 import { openInput, readInputText } from '../input-file.js';
+import { nearestNote } from '../nearest-note.js';
 import { createProgress } from '../progress.js';
 import { noteMissingElevation } from './elevation-note.js';
 import { createExplainer } from './explanations.js';
 import { assertJointSize, MAX_JOINT_SITES, writeJoint } from './joint-file.js';
 import { isNearStations, MisplacedSites } from './misplaced-sites.js';
-import { nearestErrorOf, reportNearestError } from './nearest-note.js';
 import { hashed, runRecord } from './run-record.js';
 import { createSiteCovariates, type SiteCovariates } from './site-covariates.js';
 import { createSiteElevations } from './site-elevation.js';
@@ -63,7 +69,10 @@ export async function runSites(call: SitesCall, context: CliContext): Promise<vo
       const predict = createSitePredictor(isoscape, input.support, elevations, covariates, options);
       await streamSites({ ...input, predict, outputs, options, tally, misplaced, context });
       const nearestError = nearestErrorOf(isoscape, options.stations);
-      reportNearestError(nearestError, isoscape.stations.id.length, context);
+      if (nearestError !== null) {
+        const note = nearestNote(nearestError, isoscape.stations.id.length, 'sites');
+        context.stderr.write(`rainprint: ${note}\n`);
+      }
       const facts = {
         ...call,
         isoscape,
