@@ -18,6 +18,9 @@ import { WhitenedTrend } from './whitened-trend.js';
 /** Places handled together: 64 columns of 1,000 stations (512 kB) stay in the second-level cache. */
 export const PLACES_PER_BLOCK = 64;
 
+/** n × n: L in the lower triangle, L⁻ᵀ above the diagonal; not to be written. */
+export type SharedFactor = Float64Array<SharedArrayBuffer>;
+
 /**
  * One field at one set of parameters, factorised once for any number of places: the best linear unbiased
  * predictor with the trend's own uncertainty (Goldberger 1962, J. Am. Stat. Assoc. 57:369–375).
@@ -29,13 +32,14 @@ export class FieldSystem {
   readonly parameters: FieldParameters;
   readonly #geometry: FieldGeometry;
   readonly #family: CovarianceFamily;
-  readonly #factor: Float64Array;
+  #factor: Float64Array;
   readonly #trend: WhitenedTrend;
-  #isInverted = false;
+  #isInverted: boolean;
 
   /**
    * @param trendFactor  Cholesky factor of FᵀV⁻¹F of a whole network of which `geometry` holds some stations only: the
    *                     trend is then the network's, and `solveData` must be given its coefficients
+   * @param shared  what `shareFactor` of an equal system gave, perhaps in another thread: nothing is factorised then
    * @throws MATRIX_NOT_POSITIVE_DEFINITE
    */
   constructor(
@@ -44,15 +48,11 @@ export class FieldSystem {
     parameters: FieldParameters,
     errorVariance: Float64Array,
     trendFactor: Float64Array | null = null,
+    shared: SharedFactor | null = null,
   ) {
-    const { n, p, distancesKm, trend } = geometry;
-    const factor = new Float64Array(n * n);
-    correlationMatrix(family, 'correlation', parameters.rangeKm, distancesKm, n, factor);
-    for (let i = 0; i < n; i++) {
-      for (let j = 0; j < i; j++) factor[i * n + j] *= parameters.sill;
-      factor[i * n + i] = parameters.sill + parameters.nugget + errorVariance[i];
-    }
-    choleskyInPlace(factor, n);
+    const { n, p, trend } = geometry;
+    const factor = shared ?? factorise(geometry, family, parameters, errorVariance);
+    this.#isInverted = shared !== null;
     this.#trend = new WhitenedTrend(factor, n, trend, p, trendFactor);
     this.parameters = parameters;
     this.#geometry = geometry;
@@ -147,14 +147,7 @@ export class FieldSystem {
    */
   inverseColumns(indices: Int32Array): Float64Array {
     const { n } = this.#geometry;
-    if (!this.#isInverted) {
-      const transposed = new Float64Array(n * n);
-      inverseFromCholesky(this.#factor, n, transposed, new Float64Array(n * n));
-      for (let i = 0; i < n; i++) {
-        this.#factor.set(transposed.subarray(i * n + i + 1, (i + 1) * n), i * n + i + 1);
-      }
-      this.#isInverted = true;
-    }
+    this.#invert();
     const rows = new Float64Array(indices.length * n);
     for (let k = 0; k < indices.length; k++) {
       const j = indices[k];
@@ -162,6 +155,27 @@ export class FieldSystem {
       rows.set(this.#factor.subarray(j * n + j + 1, (j + 1) * n), k * n + j + 1);
     }
     return rows;
+  }
+
+  #invert(): void {
+    if (this.#isInverted) return;
+    const { n } = this.#geometry;
+    const [transposed, inverse] = inverseScratch(n);
+    inverseFromCholesky(this.#factor, n, transposed, inverse);
+    for (let i = 0; i < n; i++) {
+      this.#factor.set(transposed.subarray(i * n + i + 1, (i + 1) * n), i * n + i + 1);
+    }
+    this.#isInverted = true;
+  }
+
+  /** Moves the factor, with its inverse, to memory that threads share. */
+  shareFactor(): SharedFactor {
+    this.#invert();
+    if (this.#factor.buffer instanceof SharedArrayBuffer) return this.#factor as SharedFactor;
+    const shared = new Float64Array(new SharedArrayBuffer(this.#factor.byteLength));
+    shared.set(this.#factor);
+    this.#factor = shared;
+    return shared;
   }
 
   /** L of V = LLᵀ: n × n, row-major, lower triangle; not to be written. */
@@ -192,6 +206,31 @@ export class FieldSystem {
     solveLowerTransposedInPlace(this.#factor, n, c);
     return c;
   }
+}
+
+/** L of V = LLᵀ. */
+function factorise(
+  { n, distancesKm }: FieldGeometry,
+  family: CovarianceFamily,
+  { sill, rangeKm, nugget }: FieldParameters,
+  errorVariance: Float64Array,
+): Float64Array {
+  const factor = new Float64Array(n * n);
+  correlationMatrix(family, 'correlation', rangeKm, distancesKm, n, factor);
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j < i; j++) factor[i * n + j] *= sill;
+    factor[i * n + i] = sill + nugget + errorVariance[i];
+  }
+  choleskyInPlace(factor, n);
+  return factor;
+}
+
+let scratch: readonly [Float64Array, Float64Array] = [new Float64Array(0), new Float64Array(0)];
+
+/** Two n × n matrices of this thread, used again: eighteen systems would leave hundreds of megabytes to collect. */
+function inverseScratch(n: number): readonly [Float64Array, Float64Array] {
+  if (scratch[0].length !== n * n) scratch = [new Float64Array(n * n), new Float64Array(n * n)];
+  return scratch;
 }
 
 export interface FieldData {

@@ -1,7 +1,7 @@
 export { MAX_NODES, type ParameterNode, parameterNodes } from './averaging/nodes.js';
 export { type Baseline, meanBaseline, nearestBaseline, regressionBaseline } from './baselines.js';
 export { spatialBlocks } from './blocks.js';
-export { type FieldData, FieldSystem, PLACES_PER_BLOCK } from './blup.js';
+export { type FieldData, FieldSystem, PLACES_PER_BLOCK, type SharedFactor } from './blup.js';
 export { type ConditioningSets, conditioningSets } from './conditioning-sets.js';
 export {
   COVARIANCE_FAMILIES,

@@ -9,10 +9,12 @@ import {
   type Neighbourhoods,
   positionsOnSphereKm,
   predictField,
+  type SharedFactor,
 } from '../geostat/index.js';
 import type { FieldNode, FittedField, Isoscape } from './isoscape.js';
 import { mayKeepFactors } from './kept-factors.js';
 import { conditioningFor, requireFactor } from './large-network.js';
+import { pickRows } from './pick-rows.js';
 import { trendRows } from './trend.js';
 
 /** Geometry of an isoscape's stations and trend. */
@@ -63,6 +65,7 @@ export class FieldAverage {
   #kept: PreparedNode[] | null = null;
   #networks: NearestStations[] | null = null;
   #coefficients: Float64Array | null = null;
+  #shared: readonly SharedFactor[] | null = null;
 
   /** @param neighbourhoods  where predictions use the stations near a place; null where they use all */
   constructor(
@@ -155,8 +158,8 @@ export class FieldAverage {
     }
     const kept: PreparedNode[] | null = mayKeepFactors(this.#nodes.length, this.#geometry.n) ? [] : null;
     const coefficients: Float64Array[] = [];
-    for (const node of this.#nodes) {
-      const prepared = this.#prepare(node);
+    for (const [k, node] of this.#nodes.entries()) {
+      const prepared = this.#prepare(node, this.#shared?.[k] ?? null);
       kept?.push(prepared);
       coefficients.push(prepared.own.coefficients);
       yield prepared;
@@ -165,8 +168,15 @@ export class FieldAverage {
     this.#coefficients ??= this.#average(coefficients);
   }
 
-  #prepare(node: FieldNode): PreparedNode {
-    const system = new FieldSystem(this.#geometry, this.#isoscape.family, node, this.#field.samplingVariance);
+  /** Uses what `shareFactor` of the same nodes gave in another thread. Before anything is predicted. */
+  adoptFactors(shared: readonly SharedFactor[]): void {
+    this.#shared = shared;
+  }
+
+  #prepare(node: FieldNode, shared: SharedFactor | null): PreparedNode {
+    const { family } = this.#isoscape;
+    const { samplingVariance } = this.#field;
+    const system = new FieldSystem(this.#geometry, family, node, samplingVariance, null, shared);
     return {
       weight: node.weight,
       nugget: node.nugget,
@@ -238,12 +248,4 @@ export class FieldAverage {
     }
     return answer;
   }
-}
-
-function pickRows(values: Float64Array, width: number, rows: readonly number[]): Float64Array {
-  const out = new Float64Array(rows.length * width);
-  rows.forEach((row, k) => {
-    out.set(values.subarray(row * width, (row + 1) * width), k * width);
-  });
-  return out;
 }

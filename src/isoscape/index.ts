@@ -51,6 +51,7 @@ export { type JointPrediction, MAX_JOINT_PLACES, predictJoint } from './predict-
 export { refitOn } from './refit.js';
 export { roundPair } from './rounding.js';
 export { readIsoscape, writeIsoscape } from './serialise.js';
+export { adoptFactors, type SharedFactors, shareFactors } from './shared-factors.js';
 export { createSupport, SUPPORT_FLAGS, type Support, type SupportFlag } from './support.js';
 export { createSupportRaster, type SupportCells, type SupportRaster } from './support-raster.js';
 export * from './surface/index.js';

@@ -1,4 +1,5 @@
 import {
+  adoptFactors,
   createPredictions,
   createSupportRaster,
   createSurface,
@@ -6,6 +7,7 @@ import {
   type Places,
   type Predictions,
   readIsoscape,
+  type SharedFactors,
   type Surface,
 } from '../isoscape/index.js';
 import { impossibleValue } from '../isoscape/possible-value.js';
@@ -35,8 +37,9 @@ export interface BlockMaker {
 const EXACT_ROWS = 16;
 
 /** Throws what reading the isoscape and opening the files throws. */
-export async function createBlockMaker(work: GridWork): Promise<BlockMaker> {
+export async function createBlockMaker(work: GridWork, factors: SharedFactors | null): Promise<BlockMaker> {
   const isoscape = readIsoscape(work.isoscapeText);
+  if (factors !== null) adoptFactors(isoscape, work.plugIn, factors);
   const ground = await openGround(isoscape, work.frame, work.ground, work.groundNames);
   let model: BlockModel | undefined; // a worker that only meets empty blocks needs none
   return {

@@ -3,6 +3,7 @@ import { availableParallelism } from 'node:os';
 import { setImmediate as nextTurn } from 'node:timers/promises';
 import { fileURLToPath } from 'node:url';
 import { Piscina } from 'piscina';
+import type { SharedFactors } from '../isoscape/index.js';
 import { type BlockMaker, createBlockMaker, type MadeBlock } from './block-maker.js';
 import { revivedError } from './carried-error.js';
 import type { GridBlock, GridWork } from './grid-work.js';
@@ -25,16 +26,19 @@ export function defaultThreads(): number {
   return Math.min(MAX_THREADS, availableParallelism());
 }
 
-/** @param threads worker threads; 0 works in this thread, which hears nothing else meanwhile */
-export function openBlockPool(work: GridWork, threads: number): BlockPool {
+/**
+ * @param threads worker threads; 0 works in this thread, which hears nothing else meanwhile
+ * @param factors what the workers share; null where each makes its own
+ */
+export function openBlockPool(work: GridWork, threads: number, factors: SharedFactors | null): BlockPool {
   const file = fileURLToPath(new URL('./grid-worker.js', import.meta.url));
   // Worker threads run built JavaScript: from TypeScript sources, in tests, this thread does the work
-  return threads === 0 || !existsSync(file) ? poolOfOne(work) : workerPool(work, threads, file);
+  return threads === 0 || !existsSync(file) ? poolOfOne(work) : workerPool({ work, factors }, threads, file);
 }
 
-function workerPool(work: GridWork, threads: number, filename: string): BlockPool {
+function workerPool(shared: Omit<GridWorkerData, 'cellsDone'>, threads: number, filename: string): BlockPool {
   const cellsDone = new Uint32Array(new SharedArrayBuffer(4));
-  const workerData: GridWorkerData = { work, cellsDone };
+  const workerData: GridWorkerData = { ...shared, cellsDone };
   const pool = new Piscina<GridBlock, GridWorkerAnswer>({
     filename,
     workerData,
@@ -68,7 +72,7 @@ function poolOfOne(work: GridWork): BlockPool {
     cellsDone: () => done,
     async run(block) {
       await nextTurn(); // lets signals and the terminal in
-      maker ??= createBlockMaker(work);
+      maker ??= createBlockMaker(work, null);
       return (await maker).make(block, (cells) => {
         done += cells;
       });

@@ -11,6 +11,7 @@ import { type BlockPool, defaultThreads, openBlockPool } from './block-pool.js';
 import { chooseBands, type GridBand, gridBands } from './grid-bands.js';
 import { addCheck, createCheck, type GridCheck } from './grid-check.js';
 import { addCounts, createCounts, type GridCounts } from './grid-counts.js';
+import { sharedGridFactors } from './grid-factors.js';
 import { type GridFile, GridFiles, planFiles, type WrittenFile } from './grid-files.js';
 import { gridItems } from './grid-items.js';
 import { gridRounding } from './grid-rounding.js';
@@ -144,7 +145,9 @@ interface GridTally {
 
 async function makeBlocks(work: GridWork, files: GridFiles, run: GridRun): Promise<GridTally> {
   const { signal } = run;
-  const pool = openBlockPool(work, run.threads ?? defaultThreads());
+  const threads = run.threads ?? defaultThreads();
+  const factors = threads > 1 ? await sharedGridFactors(work, signal) : null;
+  const pool = openBlockPool(work, threads, factors);
   const cellCount = work.frame.width * work.frame.height;
   const tell = () => run.onProgress?.(pool.cellsDone(), cellCount);
   const ticker = setInterval(tell, PROGRESS_INTERVAL_MS);

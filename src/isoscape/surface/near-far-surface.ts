@@ -25,7 +25,7 @@ const MIN_LEAF_SIZE = 8;
  */
 const EXPANSION_OPERATIONS = 75_000;
 /** Tiles wider than a window are met again by the windows beside it. */
-const CACHE_BYTES = 48 * 2 ** 20;
+const CACHE_BYTES = 24 * 2 ** 20;
 
 /** What is known of a tile: its expansions, or that it has none good enough. */
 interface KnownTile {
