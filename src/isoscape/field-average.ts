@@ -90,7 +90,7 @@ export class FieldAverage {
   }
 
   /** Weights of the nodes; they sum to 1. */
-  get weights(): readonly number[] {
+  get weights(): number[] {
     return this.#nodes.map(({ weight }) => weight);
   }
 

@@ -80,6 +80,6 @@ function accuracyItems(
 }
 
 function seaText({ ground }: GridRequest): string {
-  if (ground.landOnly) return 'nodata';
+  if (ground.landOnly && ground.seaAtZero) return 'nodata';
   return ground.seaAtZero ? 'predicted at 0 m' : 'nodata where the elevations have no value';
 }

@@ -19,6 +19,8 @@ export interface GeoKeys {
 const MODEL_PROJECTED = 1;
 const MODEL_GEOGRAPHIC = 2;
 const UNIT_DEGREE = 9102;
+/** GeoTIFF 1.1 section 7.4.3: parameters of its own instead of a code. */
+const USER_DEFINED = 32767;
 
 const HOW_TO_WARP = 'bring it to longitude and latitude first: gdalwarp -t_srs EPSG:4326 in.tif out.tif';
 
@@ -54,7 +56,9 @@ function projected(epsg: number | undefined, path: string): RasterCrs {
 }
 
 function known(epsg: number | undefined, what: string, path: string): RasterCrs {
-  if (epsg === undefined) throw unsupported(what, 'it has no EPSG code', path);
+  if (epsg === undefined || epsg === USER_DEFINED) {
+    throw unsupported('a system of its own (32767)', 'only systems with an EPSG code are', path);
+  }
   try {
     const crs = epsgCrs(epsg);
     return { ...crs, forward: forwardOf(crs) };

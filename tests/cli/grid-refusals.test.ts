@@ -87,6 +87,7 @@ describe('rainprint grid refuses', () => {
       [landPath, 'OUTPUT_IS_INPUT'],
       [folder, 'OUTPUT_PATH_INVALID'],
       [join(folder, 'none', 'x.tif'), 'OUTPUT_PATH_INVALID'],
+      ['-', 'OUTPUT_PATH_INVALID'],
     ] as const) {
       const run = await grid(path, '--bounds', BOUNDS, '--cell', '1');
       expect(run).toMatchObject({ exitCode: 2, stderr: expect.stringContaining(code) });

@@ -53,6 +53,15 @@ describe('gridReport', () => {
     expect(text).not.toContain('WARNING');
   });
 
+  it("doubts what is hardly meant: no cell among the stations, the sea of elevations of one's own", () => {
+    const { counts } = result({});
+    const outside = result({ counts: { ...counts, byFlag: [60, 0, 5, 0, 0, 0] } });
+    expect(gridReport(options, outside, 40).join('\n')).toContain('are the bounds in the order W,S,E,N?');
+    expect(gridReport(options, result({}), 40).join('\n')).not.toContain('W,S,E,N');
+    const own = { ...options, land: true, elevationPath: 'dem.tif' };
+    expect(gridReport(own, result({}), 40).join('\n')).toContain('--land knows the sea of the bundled');
+  });
+
   it('warns where a value missed the tolerance', () => {
     const { check } = result({});
     const bad = { ...check, largest: { ...check.largest, d18O_se: 0.0051, d2H: 0.0399 } };

@@ -11,6 +11,7 @@ export function gridReport(options: GridOptions, result: GridResult, stationTota
   const name = files.length === 1 ? files[0]!.path : `${files.length} files beside ${options.outputPath}`;
   const lines = [`${name}: ${width} × ${height} cells, ${counts.predicted} of them with a value (${size})`];
   lines.push(...nodataLines(result), ...result.ground.notes.map((note) => `note: ${note}`));
+  lines.push(...doubtLines(options, counts));
   if (counts.impossible > 0) {
     lines.push(
       `${counts.impossible} cells are nodata: their values are beyond what precipitation has, the trend is extrapolated far beyond the stations`,
@@ -27,6 +28,20 @@ export function gridReport(options: GridOptions, result: GridResult, stationTota
     lines.push(nearestNote(nearestError, stationTotal, 'cells'), ...differenceLines(check));
   } else if (!options.exact) {
     lines.push(...checkLines(options.tolerance, check));
+  }
+  return lines;
+}
+
+/** Answers to what was asked that are hardly what was meant. */
+function doubtLines(options: GridOptions, { predicted, byFlag }: GridResult['counts']): string[] {
+  const lines: string[] = [];
+  if (options.land && options.elevationPath !== null) {
+    lines.push(
+      `note: --land knows the sea of the bundled elevation grid only; with --elevation land is where that file has a value`,
+    );
+  }
+  if (byFlag[SUPPORT_FLAGS.indexOf('outside-hull')] === predicted) {
+    lines.push('note: no cell lies among the stations; are the bounds in the order W,S,E,N?');
   }
   return lines;
 }

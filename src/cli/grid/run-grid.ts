@@ -142,6 +142,15 @@ async function checkOutputs({ isoscapePath, isoscape, options, request, plan }: 
     await output.abort();
   }
   const extension = extname(outputPath);
+  if (outputPath === '-') {
+    throw new RainprintError(
+      'OUTPUT_PATH_INVALID',
+      '-o -: a grid is several files and needs a name, like rain.tif',
+      {
+        path: outputPath,
+      },
+    );
+  }
   // A name without extension is the user's to choose, unless bands are to be put before it
   if (/^\.tiff?$/i.test(extension) || (extension === '' && !split)) return;
   throw new RainprintError(
