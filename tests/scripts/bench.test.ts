@@ -49,6 +49,8 @@ describe('benchmarks', () => {
   );
 
   it('refuse a name that is none of theirs', async () => {
-    await expect(tiny('fastest')).rejects.toThrow(/no benchmark is named fastest; there are big-network, cog, exact/);
+    await expect(tiny('fastest')).rejects.toThrow(
+      /no benchmark is named fastest; there are big-network, cog, exact/,
+    );
   });
 });
