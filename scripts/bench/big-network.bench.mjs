@@ -15,6 +15,7 @@ import {
   readIsoscape,
   writeIsoscape,
 } from 'rainprint/isoscape';
+import { asNetwork } from '../simulation/network.mjs';
 import { seededGaussian, seededUniform } from './measure.mjs';
 
 export const title = 'big network: approximate fit, predictions from nearby stations';
@@ -141,25 +142,12 @@ function invent(count) {
       line: i + 2,
     };
   });
-  const months = Array.from({ length: 12 }, (_, k) => k + 1);
-  return {
-    name: 'invented big network',
-    isotopes: 'both',
-    season: { months, label: '1-12' },
-    years: null,
-    stations,
-    oneIsotopeStations: [],
-    sampling: {
-      kind: 'records',
-      within: WITHIN,
-      withinTotal: WITHIN.map((value) => 2 * value),
-      pooledRecords: 57 * count,
-      amountWeighted: true,
-    },
-    fromRecords: true,
-    rowCount: 57 * count,
-    stationsLeftOut: 0,
-  };
+  const withinTotal = WITHIN.map((value) => 2 * value);
+  return asNetwork('invented big network', stations, {
+    within: WITHIN,
+    withinTotal,
+    recordCount: 57 * count,
+  });
 }
 
 /**

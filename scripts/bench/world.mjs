@@ -7,7 +7,7 @@ import { CholeskyDecomposition, Matrix } from 'ml-matrix';
 import { correlation, distanceKm, positionsOnSphereKm } from 'rainprint/geostat';
 import { backTransform, fitIsoscape, readIsoscape, writeIsoscape } from 'rainprint/isoscape';
 import { bundledElevationPath, openElevation } from 'rainprint/raster';
-import { WHOLE_YEAR } from 'rainprint/stations';
+import { asNetwork } from '../simulation/network.mjs';
 import { seededGaussian, seededUniform } from './measure.mjs';
 
 export const SEED = 20261203;
@@ -138,22 +138,5 @@ export function drawField(family, { rangeKm, sill, nugget }, positionsKm, gaussi
 
 function networkOf(name, stations) {
   const recordCount = stations.reduce((sum, { recordCount }) => sum + recordCount, 0);
-  return {
-    name,
-    isotopes: 'both',
-    season: WHOLE_YEAR,
-    years: null,
-    stations,
-    oneIsotopeStations: [],
-    sampling: {
-      kind: 'records',
-      within: WITHIN,
-      withinTotal: WITHIN,
-      pooledRecords: recordCount,
-      amountWeighted: true,
-    },
-    fromRecords: true,
-    rowCount: recordCount,
-    stationsLeftOut: 0,
-  };
+  return asNetwork(name, stations, { within: WITHIN, withinTotal: WITHIN, recordCount });
 }

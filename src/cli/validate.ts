@@ -1,4 +1,4 @@
-import { basename, resolve } from 'node:path';
+import { basename } from 'node:path';
 import { type Command, Option } from 'commander';
 import { RainprintError } from '../errors.js';
 import { type Isoscape, readIsoscape } from '../isoscape/index.js';
@@ -8,6 +8,7 @@ import type { CliContext } from './context.js';
 import { readInputText } from './input-file.js';
 import { type OutputFile, openOutput } from './output-file.js';
 import { createProgress } from './progress.js';
+import { requireDistinct } from './run-outputs.js';
 import { parseLevel } from './sites/sites-options.js';
 import { writeText } from './stream-write.js';
 import { rerunCommand } from './validate/rerun-command.js';
@@ -98,16 +99,7 @@ function validateWithProgress(
 }
 
 function readOptions(flags: ValidateFlags): ValidateOptions {
-  const [output, report] = [flags.output, flags.report];
-  if (output !== undefined && report !== undefined && resolve(output) === resolve(report)) {
-    throw new RainprintError(
-      'OPTION_INVALID',
-      `${output} is named for two outputs; each needs its own file`,
-      {
-        path: output,
-      },
-    );
-  }
+  requireDistinct([flags.report, flags.output]);
   return {
     level: parseLevel(flags.level),
     plugIn: flags.plugIn === true,

@@ -45,7 +45,7 @@ export {
   type NearestError,
   nearestErrorOf,
 } from './nearest-error.js';
-export { createPlaces, createPredictions, type Places, type Predictions } from './places.js';
+export { createPlaces, createPredictions, type Places, type Predictions, pickPlaces } from './places.js';
 export { keepsFactors, type PredictOptions, predictPlaces, type Target } from './predict.js';
 export { type JointPrediction, MAX_JOINT_PLACES, predictJoint } from './predict-joint.js';
 export { refitOn } from './refit.js';

@@ -65,3 +65,15 @@ export function requireCovariates(
     );
   });
 }
+
+/** Some of the places, in the order given. */
+export function pickPlaces(places: Places, indices: readonly number[]): Places {
+  const part = createPlaces(indices.length, places.covariates.length);
+  const pick = (from: Float64Array, to: Float64Array) => {
+    for (let j = 0; j < indices.length; j++) to[j] = from[indices[j]];
+  };
+  for (const name of ['lonDeg', 'latDeg', 'elevationM', 'elevationVarM2'] as const)
+    pick(places[name], part[name]);
+  for (const [c, column] of part.covariates.entries()) pick(places.covariates[c], column);
+  return part;
+}

@@ -1,14 +1,14 @@
 import {
-  createPlaces,
   createPredictions,
   HYDROGEN_TOLERANCE_FACTOR,
   type Isoscape,
   type Places,
   type Predictions,
   type PredictOptions,
+  pickPlaces,
   predictPlaces,
 } from '../isoscape/index.js';
-import { dExcessVariance } from '../isotope/index.js';
+import { dExcess, dExcessVariance } from '../isotope/index.js';
 import type { CellWindow } from '../raster/index.js';
 
 /** Largest differences between what was interpolated and what was computed exactly, over a sample of cells, ‰. */
@@ -79,7 +79,7 @@ export function checkWindow(
   const check = createCheck();
   if (found.length === 0) return check;
   const exact = createPredictions(found.length);
-  predictPlaces(isoscape, placesAt(cells.places, found), exact, options);
+  predictPlaces(isoscape, pickPlaces(cells.places, found), exact, options);
   check.cells = found.length;
   found.forEach((k, i) => {
     const [a, b] = [checkedValues(cells.predictions, k), checkedValues(exact, i)];
@@ -92,20 +92,6 @@ export function checkWindow(
   return check;
 }
 
-function placesAt(all: Places, found: readonly number[]): Places {
-  const places = createPlaces(found.length, all.covariates.length);
-  found.forEach((k, i) => {
-    places.lonDeg[i] = all.lonDeg[k]!;
-    places.latDeg[i] = all.latDeg[k]!;
-    places.elevationM[i] = all.elevationM[k]!;
-    places.elevationVarM2[i] = all.elevationVarM2[k]!;
-    all.covariates.forEach((column, c) => {
-      places.covariates[c]![i] = column[k]!;
-    });
-  });
-  return places;
-}
-
 function checkedValues(from: Predictions, k: number): { [name in CheckedName]: number } {
   const se = (variance: number) => Math.sqrt(Math.max(0, variance));
   const [d18O, d2H, varO, varH] = [from.d18O[k]!, from.d2H[k]!, from.varD18O[k]!, from.varD2H[k]!];
@@ -114,7 +100,7 @@ function checkedValues(from: Predictions, k: number): { [name in CheckedName]: n
     d18O_se: se(varO),
     d2H,
     d2H_se: se(varH),
-    dexcess: d2H - 8 * d18O,
+    dexcess: dExcess(d18O, d2H),
     dexcess_se: se(dExcessVariance(varO, from.cov[k]!, varH)),
   };
 }

@@ -87,7 +87,7 @@ export async function makeGrid(path: string, request: GridRequest, run: GridRun 
     const nearestError = request.exact ? null : nearestErrorOf(isoscape, 'auto');
     signal?.throwIfAborted();
     const work = workOf(request, planned, ground);
-    const tally = await makeBlocks(work, files, run);
+    const tally = await makeBlocks(isoscape, work, files, run);
     if (tally.counts.predicted === 0) throw gridEmpty(tally.counts, ground);
     const items = gridItems(isoscape, request, {
       ...tally,
@@ -143,10 +143,15 @@ interface GridTally {
   readonly check: GridCheck;
 }
 
-async function makeBlocks(work: GridWork, files: GridFiles, run: GridRun): Promise<GridTally> {
+async function makeBlocks(
+  isoscape: Isoscape,
+  work: GridWork,
+  files: GridFiles,
+  run: GridRun,
+): Promise<GridTally> {
   const { signal } = run;
   const threads = run.threads ?? defaultThreads();
-  const factors = threads > 1 ? await sharedGridFactors(work, signal) : null;
+  const factors = threads > 1 ? await sharedGridFactors(isoscape, work, signal) : null;
   const pool = openBlockPool(work, threads, factors);
   const cellCount = work.frame.width * work.frame.height;
   const tell = () => run.onProgress?.(pool.cellsDone(), cellCount);

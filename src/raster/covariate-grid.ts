@@ -4,6 +4,7 @@ import { boxMean, cellAt } from './elevation-cells.js';
 import { frameSampler } from './elevation-frame.js';
 import { readRasterWindow } from './elevation-window.js';
 import type { CellWindow, GridFrame } from './grid-frame.js';
+import { hasValue } from './has-value.js';
 import { RasterBlocks } from './raster-blocks.js';
 import { openRaster } from './raster-file.js';
 import { placeRaster, type RasterPlacement } from './raster-placement.js';
@@ -80,15 +81,9 @@ async function sampleAt(
   return { kind: 'value', value: elevationM };
 }
 
-/** Stops at the first block with a value, from the middle of the raster on: margins are where nodata stands. */
 async function checkHasValue(blocks: RasterBlocks): Promise<void> {
-  const { blocksAcross, blocksDown, file } = blocks;
-  const count = blocksAcross * blocksDown;
-  for (let n = 0; n < count; n++) {
-    const k = (n + (count >> 1)) % count;
-    const block = await blocks.readBlock(k % blocksAcross, Math.floor(k / blocksAcross));
-    if (block.some((value) => !Number.isNaN(value))) return;
-  }
+  if (await hasValue(blocks)) return;
+  const { file } = blocks;
   throw new RainprintError(
     'COVARIATE_EMPTY',
     `${file.path} has no value: each of its cells is nodata (${file.nodata}); check the declared nodata value with gdalinfo`,

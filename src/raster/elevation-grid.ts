@@ -5,6 +5,7 @@ import { frameSampler } from './elevation-frame.js';
 import { readElevationWindow } from './elevation-window.js';
 import type { FrameElevation } from './frame-elevation.js';
 import type { CellWindow, GridFrame } from './grid-frame.js';
+import { hasValue } from './has-value.js';
 import { RasterBlocks } from './raster-blocks.js';
 import { openRaster, type RasterFile } from './raster-file.js';
 import { placeRaster, type RasterPlacement } from './raster-placement.js';
@@ -108,25 +109,11 @@ function checkUnit(file: RasterFile): void {
   );
 }
 
-/** Stops at the first block with a value, looking in an order that jumps over the whole raster. */
 async function checkHasLand(blocks: RasterBlocks): Promise<void> {
-  const count = blocks.blocksAcross * blocks.blocksDown;
-  const step = coprimeStep(count);
-  for (let n = 0, k = count >> 1; n < count; n++, k = (k + step) % count) {
-    const block = await blocks.readBlock(k % blocks.blocksAcross, Math.floor(k / blocks.blocksAcross));
-    if (block.some((value) => !Number.isNaN(value))) return;
-  }
+  if (await hasValue(blocks)) return;
   throw new RainprintError(
     'ELEVATION_EMPTY',
     `${blocks.file.path} has no value: each of its cells is nodata (${blocks.file.nodata}); check the declared nodata value with gdalinfo`,
     { path: blocks.file.path, nodata: blocks.file.nodata },
   );
-}
-
-/** Near the golden section of `count` and without a common divisor, so that every block comes up once. */
-function coprimeStep(count: number): number {
-  const gcd = (a: number, b: number): number => (b === 0 ? a : gcd(b, a % b));
-  let step = Math.max(1, Math.round(count * 0.618));
-  while (gcd(step, count) !== 1) step++;
-  return step;
 }

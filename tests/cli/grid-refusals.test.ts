@@ -3,8 +3,7 @@ import { join } from 'node:path';
 import { beforeAll, describe, expect, it } from 'vitest';
 import { readIsoscape } from '../../src/isoscape/index.js';
 import { runCaptured } from '../support/captured-run.js';
-import { writeInventedLand } from '../support/invented-land.js';
-import { inventNetwork } from '../support/invented-network.js';
+import { writeFittedLand } from '../support/fitted-land.js';
 import { scratchFolder } from '../support/scratch.js';
 
 const folder = scratchFolder();
@@ -17,13 +16,7 @@ const newPath = () => join(folder, `grid-${fileCount++}.tif`);
 const grid = (path: string, ...words: string[]) =>
   runCaptured(['grid', isoscapePath, '-o', path, '--elevation', landPath, ...words]);
 
-beforeAll(async () => {
-  await writeInventedLand(landPath);
-  const table = join(folder, 'stations.csv');
-  writeFileSync(table, inventNetwork({ stationCount: 40, seed: 7 }).csv);
-  const fit = ['fit', table, '--family', 'exponential', '--terms', 'elevation', '-o', isoscapePath];
-  expect(await runCaptured(fit)).toMatchObject({ exitCode: 0 });
-});
+beforeAll(() => writeFittedLand(folder, landPath, isoscapePath));
 
 describe('rainprint grid refuses', () => {
   const notTiff = join(folder, 'text.tif');

@@ -3,8 +3,7 @@ import { existsSync, mkdirSync, readdirSync, readFileSync, writeFileSync } from 
 import { join } from 'node:path';
 import { beforeAll, describe, expect, it } from 'vitest';
 import { runCaptured } from '../support/captured-run.js';
-import { writeInventedLand } from '../support/invented-land.js';
-import { inventNetwork } from '../support/invented-network.js';
+import { writeFittedLand } from '../support/fitted-land.js';
 import { describeWithTool, runTool } from '../support/outside-tool.js';
 import { scratchFolder } from '../support/scratch.js';
 
@@ -25,13 +24,7 @@ function newFolder(): string {
   return path;
 }
 
-beforeAll(async () => {
-  await writeInventedLand(landPath);
-  const table = join(folder, 'stations.csv');
-  writeFileSync(table, inventNetwork({ stationCount: 40, seed: 7 }).csv);
-  const fit = ['fit', table, '--family', 'exponential', '--terms', 'elevation', '-o', isoscapePath];
-  expect(await runCaptured(fit)).toMatchObject({ exitCode: 0 });
-});
+beforeAll(() => writeFittedLand(folder, landPath, isoscapePath));
 
 describe('beside a grid', () => {
   it('stand its record, its STAC item and a style a band', async () => {

@@ -4,8 +4,8 @@ import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { startBuilt } from '../support/built-command.js';
 import { runCaptured } from '../support/captured-run.js';
+import { writeFittedLand } from '../support/fitted-land.js';
 import { writeInventedLand } from '../support/invented-land.js';
-import { inventNetwork } from '../support/invented-network.js';
 import { scratchFolder } from '../support/scratch.js';
 
 const folder = scratchFolder();
@@ -24,13 +24,7 @@ const words = (path: string, ...more: string[]) => [
 const LONG = ['--cell', '0.004', '--exact', '--threads', '2'];
 const unfinished = (place = folder) => readdirSync(place).filter((name) => name.endsWith('.tmp'));
 
-beforeAll(async () => {
-  await writeInventedLand(landPath);
-  const table = join(folder, 'stations.csv');
-  writeFileSync(table, inventNetwork({ stationCount: 40, seed: 7 }).csv);
-  const fit = ['fit', table, '--family', 'exponential', '--terms', 'elevation', '-o', isoscapePath];
-  expect(await runCaptured(fit)).toMatchObject({ exitCode: 0 });
-});
+beforeAll(() => writeFittedLand(folder, landPath, isoscapePath));
 
 describe('rainprint grid on worker threads', () => {
   it('writes the same bytes on 1, 2 and 4 of them, and on none', async () => {

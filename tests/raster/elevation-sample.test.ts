@@ -1,7 +1,8 @@
 import proj4 from 'proj4';
 import { describe, expect, it } from 'vitest';
 import type { ElevationGrid } from '../../src/raster/index.js';
-import { gridOf, handMade, type Layout, WORLD } from './elevation-rasters.js';
+import type { DegreeLayout } from '../support/degree-raster.js';
+import { gridOf, handMade, WORLD } from './elevation-rasters.js';
 import { corner, geoKeys, LON_LAT, nodata, utm } from './hand-made-tiff.js';
 
 const heightAt = async (grid: ElevationGrid, lonDeg: number, latDeg: number) => {
@@ -35,7 +36,7 @@ describe('sample', () => {
 
   it('reads a raster from 0 to 360 as it reads one from -180 to 180', async () => {
     const height = (lonDeg: number, latDeg: number) => 1000 + 2 * ((lonDeg + 360) % 360) + latDeg;
-    const at = (layout: Layout) =>
+    const at = (layout: DegreeLayout) =>
       gridOf(layout, (column, row) =>
         height(layout.westDeg + column * 10 + 5, layout.northDeg - row * 10 - 5),
       );

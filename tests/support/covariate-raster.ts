@@ -1,6 +1,7 @@
-import { openCovariate, writeGeoTiff } from '../../src/raster/index.js';
+import { openCovariate } from '../../src/raster/index.js';
 import { seededUniform } from '../reference/seeded.js';
 import { parseCsv } from './csv.js';
+import { writeDegreeRaster } from './degree-raster.js';
 import { inventNetwork } from './invented-network.js';
 
 /** Effect of the invented covariate, ‰ per unit. */
@@ -17,30 +18,14 @@ export async function writeCovariate(
 ): Promise<void> {
   const { seed = 5, empty = () => false, constant } = options;
   const random = seededUniform(seed);
-  const [width, height, cellDeg, westDeg, northDeg] = [40, 40, 0.25, -35, -41];
-  const cells = Float32Array.from({ length: width * height }, (_, k) => {
-    const lonDeg = westDeg + ((k % width) + 0.5) * cellDeg;
-    const latDeg = northDeg - (Math.floor(k / width) + 0.5) * cellDeg;
+  const layout = { width: 40, height: 40, cellDeg: 0.25, westDeg: -35, northDeg: -41 };
+  const band = { name: 'humidity', unit: '%', longName: 'invented humidity' };
+  await writeDegreeRaster(path, layout, band, (column, row) => {
+    const lonDeg = layout.westDeg + (column + 0.5) * layout.cellDeg;
+    const latDeg = layout.northDeg - (row + 0.5) * layout.cellDeg;
     const value = constant ?? 20 + 70 * random();
     return empty(lonDeg, latDeg) ? Number.NaN : value;
   });
-  await writeGeoTiff(
-    path,
-    {
-      width,
-      height,
-      sampleType: 'float32',
-      tileSizePx: 16,
-      crs: 'EPSG:4326',
-      transform: { originX: westDeg, originY: northDeg, cellWidth: cellDeg, cellHeight: cellDeg },
-      pixelIs: 'area',
-      nodata: -9999,
-      bands: [{ name: 'humidity', unit: '%', longName: 'invented humidity' }],
-      items: {},
-      software: 'test',
-    },
-    (first, count) => [cells.subarray(first * width, (first + count) * width)],
-  );
 }
 
 /** The invented network with the covariate's effect in its values: station table as CSV text. */

@@ -1,6 +1,7 @@
 import { RainprintError } from '../../errors.js';
 import type { CovariateFile } from '../../jobs/covariate-files.js';
 import { parseCovariates } from '../covariate-options.js';
+import { requireDistinct } from '../run-outputs.js';
 import { parseLevel } from '../sites/sites-options.js';
 
 /** Options of `rainprint area` as commander hands them over. */
@@ -36,15 +37,7 @@ export interface AreaOptions {
 export function readAreaOptions(flags: AreaFlags): AreaOptions {
   const outputPath = flags.output ?? null;
   const recordPath = flags.record ?? (outputPath === null ? null : `${outputPath}.run.json`);
-  if (outputPath !== null && outputPath === recordPath) {
-    throw new RainprintError(
-      'OPTION_INVALID',
-      `${outputPath} is named for two outputs; each needs its own file`,
-      {
-        path: outputPath,
-      },
-    );
-  }
+  requireDistinct([outputPath, recordPath]);
   return {
     level: parseLevel(flags.level),
     format: formatOf(flags.format, outputPath),

@@ -1,6 +1,7 @@
 import { basename } from 'node:path';
 import type { Isoscape } from '../../isoscape/index.js';
 import { AREA_POINTS, AREA_STABILITY } from '../../jobs/area-average.js';
+import { isoscapeRecord } from '../isoscape-record.js';
 import type { AreaSourceNames } from './area-columns.js';
 import type { AreaOptions } from './area-options.js';
 
@@ -25,15 +26,7 @@ export function areaRecord(facts: AreaRunFacts, options: AreaOptions): string {
     tool: 'rainprint',
     tool_version: facts.toolVersion,
     verb: 'area',
-    isoscape: {
-      id: isoscape.id,
-      file: basename(facts.isoscapePath),
-      sha256: facts.isoscapeSha256,
-      network: isoscape.networkName,
-      season: isoscape.season.label,
-      isotopes: isoscape.isotopes,
-      algorithm_version: isoscape.algorithmVersion,
-    },
+    isoscape: isoscapeRecord(isoscape, facts.isoscapePath, facts.isoscapeSha256),
     options: {
       target: 'field',
       level: options.level,

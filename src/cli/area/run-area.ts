@@ -7,9 +7,9 @@ import { parseAreaShape } from '../../jobs/area-shape.js';
 import type { CliContext } from '../context.js';
 import { readInputText } from '../input-file.js';
 import { createProgress } from '../progress.js';
+import { openRunOutputs } from '../run-outputs.js';
 import { areaProblemValues, areaValues } from './area-columns.js';
 import type { AreaOptions } from './area-options.js';
-import { openAreaOutputs } from './area-outputs.js';
 import { areaRecord } from './area-record.js';
 import { type OpenAreaSources, openAreaSources } from './area-sources.js';
 import { AreaTally } from './area-tally.js';
@@ -55,7 +55,10 @@ export async function runArea(call: AreaCall, context: CliContext): Promise<void
   try {
     for (const note of sources.notes) context.stderr.write(`rainprint: note: ${note}\n`);
     const inputs = [call.isoscapePath, call.areasPath, ...sources.paths];
-    const outputs = await openAreaOutputs(options, inputs, context);
+    const outputs = await openRunOutputs(options, inputs, context, async (run) => {
+      await run.openRecord();
+      return run;
+    });
     try {
       const work = { isoscape, support: createSupport(isoscape), sources, options };
       await writeAreas(work, features, outputs.write, tally, context);

@@ -1,5 +1,6 @@
 import { basename } from 'node:path';
 import type { GridResult } from '../../jobs/index.js';
+import { isoscapeRecord } from '../isoscape-record.js';
 import { nearestErrorRecord } from '../nearest-note.js';
 import type { GridCall } from './run-grid.js';
 
@@ -11,15 +12,7 @@ export function gridRecord(call: GridCall, result: GridResult, toolVersion: stri
     tool: 'rainprint',
     tool_version: toolVersion,
     verb: 'grid',
-    isoscape: {
-      id: isoscape.id,
-      file: basename(isoscapePath),
-      sha256: isoscapeSha256,
-      network: isoscape.networkName,
-      season: isoscape.season.label,
-      isotopes: isoscape.isotopes,
-      algorithm_version: isoscape.algorithmVersion,
-    },
+    isoscape: isoscapeRecord(isoscape, isoscapePath, isoscapeSha256),
     options: {
       ...frameOptions(options.frame),
       land: options.land,

@@ -2,6 +2,7 @@ import { createHash } from 'node:crypto';
 import { basename } from 'node:path';
 import type { Isoscape, NearestError } from '../../isoscape/index.js';
 import type { ColumnOverrides } from '../../stations/index.js';
+import { isoscapeRecord } from '../isoscape-record.js';
 import { nearestErrorRecord } from '../nearest-note.js';
 import type { SitesOptions } from './sites-options.js';
 
@@ -32,15 +33,7 @@ export function runRecord(facts: RunFacts, options: SitesOptions): string {
     tool: 'rainprint',
     tool_version: facts.toolVersion,
     verb: 'sites',
-    isoscape: {
-      id: isoscape.id,
-      file: basename(facts.isoscapePath),
-      sha256: facts.isoscapeSha256,
-      network: isoscape.networkName,
-      season: isoscape.season.label,
-      isotopes: isoscape.isotopes,
-      algorithm_version: isoscape.algorithmVersion,
-    },
+    isoscape: isoscapeRecord(isoscape, facts.isoscapePath, facts.isoscapeSha256),
     options: {
       target: options.target,
       level: options.level,

@@ -1,8 +1,8 @@
-import { resolve } from 'node:path';
 import { RainprintError } from '../../errors.js';
 import type { StationsUsed } from '../../isoscape/index.js';
 import type { CovariateFile } from '../../jobs/covariate-files.js';
 import { parseCovariates } from '../covariate-options.js';
+import { requireDistinct } from '../run-outputs.js';
 import type { SitesFormat } from './site-writers.js';
 
 /** Options of `rainprint sites` as commander hands them over. */
@@ -59,7 +59,8 @@ export function readSitesOptions(flags: SitesFlags): SitesOptions {
     recordAsked: flags.record !== undefined,
     explain: explainTarget(flags.explain, outputPath),
   };
-  assertDistinct(options);
+  const explainPath = options.explain !== null && options.explain !== 'stderr' ? options.explain.path : null;
+  requireDistinct([options.outputPath, options.jointPath, options.recordPath, explainPath]);
   return options;
 }
 
@@ -82,18 +83,4 @@ function oneOf<T extends string>(flag: string, value: string, allowed: readonly 
   const found = allowed.find((each) => each === value);
   if (found !== undefined) return found;
   throw new RainprintError('OPTION_INVALID', `${flag} ${value}: use ${allowed.join(' or ')}`, { value });
-}
-
-function assertDistinct(options: SitesOptions): void {
-  const explainPath = options.explain !== null && options.explain !== 'stderr' ? options.explain.path : null;
-  const paths = [options.outputPath, options.jointPath, options.recordPath, explainPath].filter(
-    (p) => p !== null,
-  );
-  const resolved = paths.map((path) => resolve(path));
-  const twice = paths.find((_, i) => resolved.indexOf(resolved[i]) !== i);
-  if (twice !== undefined) {
-    throw new RainprintError('OPTION_INVALID', `${twice} is named for two outputs; each needs its own file`, {
-      path: twice,
-    });
-  }
 }

@@ -1,18 +1,14 @@
-import { createHash } from 'node:crypto';
 import type { CliContext } from '../context.js';
-import { type OutputFile, openOutput } from '../output-file.js';
+import type { OutputFile } from '../output-file.js';
+import { openRunOutputs, type RunOutputs } from '../run-outputs.js';
 import { writeText } from '../stream-write.js';
 import type { SitesOptions } from './sites-options.js';
 
 /** Where a run writes; files appear under their names only at `commit`. */
-export interface SitesOutputs {
+export interface SitesOutputs extends Pick<RunOutputs, 'commit' | 'abort'> {
   readonly main: TextOutput;
   readonly explain: TextOutput | null;
   readonly joint: OutputFile | null;
-  /** Gives all files their names; the record is made from the SHA-256 of the main output. */
-  commit(record: (outputSha256: string) => string): Promise<void>;
-  /** Leaves no half-written file; harmless after `commit`. */
-  abort(): Promise<void>;
 }
 
 export interface TextOutput {
@@ -26,42 +22,18 @@ export async function openSitesOutputs(
   inputs: readonly string[],
   context: CliContext,
 ): Promise<SitesOutputs> {
-  const files: OutputFile[] = [];
-  const abort = async () => {
-    for (const file of files) await file.abort();
-  };
-  const opened = async (path: string): Promise<OutputFile> => {
-    const file = await openOutput(path, inputs);
-    files.push(file);
-    return file;
-  };
-  try {
-    const main = options.outputPath === null ? null : await opened(options.outputPath);
-    const stdoutHash = createHash('sha256');
-    const toStdout = async (text: string) => {
-      stdoutHash.update(text);
-      await writeText(context.stdout, text);
-    };
-    const joint = options.jointPath === null ? null : await opened(options.jointPath);
-    // By default the record stands beside the output: nothing can stand beside a device or a pipe.
-    const recorded = options.recordAsked || main?.regular === true;
-    const record = recorded && options.recordPath !== null ? await opened(options.recordPath) : null;
-    const explain = await explainOutput(options, context, opened);
+  return openRunOutputs(options, inputs, context, async (run) => {
+    const joint = options.jointPath === null ? null : await run.open(options.jointPath);
+    await run.openRecord();
+    const explain = await explainOutput(options, context, run.open);
     return {
-      main: { forPeople: false, write: main === null ? toStdout : (text) => main.write(text) },
+      main: { forPeople: false, write: run.write },
       explain,
       joint,
-      abort,
-      async commit(textOf) {
-        const mainHash = main === null ? stdoutHash.digest('hex') : await main.commit();
-        await record?.write(textOf(mainHash));
-        for (const file of files) if (file !== main) await file.commit();
-      },
+      commit: run.commit,
+      abort: run.abort,
     };
-  } catch (error) {
-    await abort();
-    throw error;
-  }
+  });
 }
 
 async function explainOutput(

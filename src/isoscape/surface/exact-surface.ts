@@ -1,6 +1,6 @@
 import type { Isoscape } from '../isoscape.js';
 import type { StationsUsed } from '../large-network.js';
-import { createPlaces, createPredictions, type Places, type Predictions } from '../places.js';
+import { createPredictions, type Predictions, pickPlaces } from '../places.js';
 import { predictPlaces } from '../predict.js';
 import type { Surface, SurfaceOptions } from './surface.js';
 
@@ -21,7 +21,7 @@ export function createExactSurface(
     predictWindow(_window, places, wanted, out) {
       const cells: number[] = [];
       const flush = () => {
-        const part = gather(places, cells);
+        const part = pickPlaces(places, cells);
         const answers = createPredictions(cells.length);
         predictPlaces(isoscape, part, answers, { plugIn, target, stations });
         scatter(answers, cells, out);
@@ -34,18 +34,6 @@ export function createExactSurface(
       if (cells.length > 0) flush();
     },
   };
-}
-
-/** The places of some cells, in their order. */
-function gather(places: Places, cells: readonly number[]): Places {
-  const part = createPlaces(cells.length, places.covariates.length);
-  for (const name of ['lonDeg', 'latDeg', 'elevationM', 'elevationVarM2'] as const) {
-    for (let j = 0; j < cells.length; j++) part[name][j] = places[name][cells[j]];
-  }
-  for (const [c, column] of part.covariates.entries()) {
-    for (let j = 0; j < cells.length; j++) column[j] = places.covariates[c][cells[j]];
-  }
-  return part;
 }
 
 function scatter(answers: Predictions, cells: readonly number[], out: Predictions): void {

@@ -11,6 +11,7 @@ import type { Scratch } from './scratch.js';
 import type { Locate, SurfaceWindow } from './surface.js';
 import type { SystemFacts } from './system-facts.js';
 import type { TileExpansions } from './tile-expansions.js';
+import { anyWanted, forEachRow } from './window-part.js';
 
 /** Nodes along a side for the difference between averaged and heaviest-node answers. */
 const DIFFERENCE_ORDER = 6;
@@ -152,24 +153,6 @@ function subtract(a: Moments, b: Moments, count: number): Moments {
   }
   for (const [i, linear] of out.variance1.entries()) write(linear, a.variance1[i], b.variance1[i]);
   return out;
-}
-
-/** Calls `copy` with where each row of a strip begins in its window and in the strip, and its length. */
-function forEachRow(
-  strip: SurfaceWindow,
-  window: SurfaceWindow,
-  copy: (inWindow: number, inStrip: number) => void,
-): void {
-  const first = (strip.firstRow - window.firstRow) * window.width + strip.firstColumn - window.firstColumn;
-  for (let row = 0; row < strip.height; row++) copy(first + row * window.width, row * strip.width);
-}
-
-function anyWanted(strip: SurfaceWindow, window: SurfaceWindow, wanted: Uint8Array): boolean {
-  let found = false;
-  forEachRow(strip, window, (start) => {
-    found ||= wanted.subarray(start, start + strip.width).includes(1);
-  });
-  return found;
 }
 
 /** The places of a strip's cells. */

@@ -11,6 +11,7 @@ import { systemFacts } from './system-facts.js';
 import { quarters, type Tile, tileInWindow, tileKey, tileRect, topTile } from './tile.js';
 import { TileCache } from './tile-cache.js';
 import { Expander, type TileExpansions } from './tile-expansions.js';
+import { anyWanted, wantedIn } from './window-part.js';
 
 /** Widest leaf whose cells may all be evaluated for every node; wider ones need an interpolated difference. */
 const PLAIN_LEAF_SIZE = 16;
@@ -66,7 +67,7 @@ export class NearFarSurface implements Surface {
       if (part === null || !anyWanted(part, window, wanted)) return;
       const best = this.#bestExpansions(tile, source) ?? source;
       if (best === null && tile.size === 1) {
-        this.#exact.predictWindow(window, places, only(part, window, wanted), out);
+        this.#exact.predictWindow(window, places, wantedIn(part, window, wanted), out);
         return;
       }
       const leaf = best === null ? null : this.#asLeaf(tile, best);
@@ -101,24 +102,4 @@ export class NearFarSurface implements Surface {
     const difference = this.#leaves.difference(tileRect(tile, this.#grid), best);
     return difference === null && tile.size > PLAIN_LEAF_SIZE ? null : { difference };
   }
-}
-
-function anyWanted(part: SurfaceWindow, window: SurfaceWindow, wanted: Uint8Array): boolean {
-  for (let row = 0; row < part.height; row++) {
-    const start =
-      (part.firstRow + row - window.firstRow) * window.width + part.firstColumn - window.firstColumn;
-    if (wanted.subarray(start, start + part.width).includes(1)) return true;
-  }
-  return false;
-}
-
-/** The wanted cells of a window that lie in a part of it. */
-function only(part: SurfaceWindow, window: SurfaceWindow, wanted: Uint8Array): Uint8Array {
-  const out = new Uint8Array(wanted.length);
-  for (let row = 0; row < part.height; row++) {
-    const start =
-      (part.firstRow + row - window.firstRow) * window.width + part.firstColumn - window.firstColumn;
-    out.set(wanted.subarray(start, start + part.width), start);
-  }
-  return out;
 }
